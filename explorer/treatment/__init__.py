@@ -1,0 +1,1 @@
+"""Water treatment as arithmetic on conserved totals: analyses, blending, chemicals, steps, units."""
