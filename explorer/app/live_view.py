@@ -1,0 +1,154 @@
+"""A view as plain data: Python says what is on the page, one small script keeps the page to it.
+
+A view is a tree of :class:`Node`. :class:`LiveView` compares every new tree with the one on the page. While
+the shape is the same only the texts and attributes that differ are sent, so typing, focus and scrolling are
+never disturbed; another shape is matched piece by piece by key. Text reaches the page as text, never as
+markup: a name from a file cannot become HTML.
+"""
+
+import json
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass, field
+from pathlib import Path
+from typing import Any
+
+import param
+from panel.custom import JSComponent
+
+FOLDER = Path(__file__).parent
+
+Handler = Callable[[Any], None]
+"""What a node does with the value the page reports: a text, a number, a truth value, or None for a press."""
+
+
+@dataclass(slots=True)
+class Node:
+    """One element: ``tag`` is its HTML name, ``key`` its name among its siblings and for reports from the page.
+
+    ``properties`` are HTML attributes; ``value`` is what an input shows, ``checked`` whether a box is ticked,
+    and ``colour`` sets the CSS variable of that name. None and False leave an attribute out.
+    """
+
+    tag: str
+    key: str = ""
+    properties: dict[str, Any] = field(default_factory=dict)
+    children: list["Node"] = field(default_factory=list)
+    on: Handler | None = None
+
+    def walk(self) -> Iterable["Node"]:
+        """This node and all below it, parents first, in reading order."""
+        yield self
+        for child in self.children:
+            yield from child.walk()
+
+    def find(self, key: str) -> "Node":
+        """The node with this key, here or below; KeyError when there is none."""
+        for node in self.walk():
+            if node.key == key:
+                return node
+        raise KeyError(key)
+
+    def words(self) -> str:
+        """All text of this node and below, as it is read, joined by blanks."""
+        return " ".join(str(node.properties["text"]) for node in self.walk() if node.properties.get("text"))
+
+
+def node(
+    tag: str,
+    look: str = "",
+    *children: Node | None,
+    text: str | None = None,
+    key: str = "",
+    on: Handler | None = None,
+    **properties: Any,
+) -> Node:
+    """A node with CSS classes ``look``; ``aria_label`` becomes ``aria-label``; children that are None are left out."""
+    wanted = {name.strip("_").replace("_", "-"): value for name, value in properties.items()}
+    if look:
+        wanted["class"] = look
+    if text is not None:
+        wanted["text"] = text
+    wanted = {name: value for name, value in wanted.items() if value is not None and value is not False}
+    return Node(tag, key, wanted, [child for child in children if child is not None], on)
+
+
+def _wire(item: Node) -> list[Any]:
+    properties = item.properties if item.on is None else item.properties | {"data-on": True}
+    return [item.tag, item.key, properties, [_wire(child) for child in item.children]]
+
+
+def _shape(nodes: list[Node]) -> list[tuple[str, str, int, bool]]:
+    return [(item.tag, item.key, len(item.children), item.on is None) for item in nodes]
+
+
+class LiveView(JSComponent):
+    """Shows a tree of nodes and brings what the user does to the nodes' handlers.
+
+    ``tree`` is the whole tree as JSON text, ``patch`` everything that has changed in place since: for each
+    node, by its position in reading order, the attributes with their new values (null: taken away).
+    """
+
+    tree = param.String(default="[]")
+    patch = param.String(default="{}")
+
+    _esm = "live_view.js"
+
+    def __init__(self, **settings: Any) -> None:
+        self._nodes: list[Node] = []
+        self._changes: dict[int, dict[str, Any]] = {}
+        self._handlers: dict[str, Handler] = {}
+        super().__init__(**settings)
+
+    def describe(self) -> Node:
+        """The tree to show now; subclasses say what it is."""
+        raise NotImplementedError
+
+    def refresh(self, answered: str = "") -> None:
+        """Bring the page to what :meth:`describe` says now.
+
+        answered: key of a field whose shown value is sent even if it is the old one, because the user has
+        typed another there meanwhile.
+        """
+        root = self.describe()
+        nodes = list(root.walk())
+        self._handlers = {item.key: item.on for item in nodes if item.on is not None}
+        if _shape(nodes) != _shape(self._nodes):
+            self._nodes, self._changes = nodes, {}
+            self.param.update(tree=json.dumps(_wire(root), ensure_ascii=False), patch="{}")
+            return
+        changed = False
+        for position, (old, new) in enumerate(zip(self._nodes, nodes, strict=True)):
+            names = {name for name in old.properties.keys() | new.properties.keys()
+                     if old.properties.get(name) != new.properties.get(name)}
+            if answered and new.key == answered:
+                names |= {"value", "checked"} & new.properties.keys()
+            if names:
+                changed = True
+                self._changes.setdefault(position, {}).update({n: new.properties.get(n) for n in names})
+        self._nodes = nodes
+        if changed:
+            # The serial makes a repeated answer a new value, which otherwise would not be sent.
+            serial = json.loads(self.patch).get("serial", 0) + 1
+            self.patch = json.dumps({"serial": serial, "changes": self._changes}, ensure_ascii=False)
+
+    def node(self, key: str) -> Node:
+        """The node on the page with this key; KeyError when there is none."""
+        return next(item for item in self._nodes if item.key == key) if key in self else _missing(key)
+
+    def __contains__(self, key: str) -> bool:
+        return any(item.key == key for item in self._nodes)
+
+    def report(self, key: str, value: Any = None) -> None:
+        """The user has pressed, entered or chosen something; a key that is no longer there is passed over."""
+        handler = self._handlers.get(key)
+        if handler is not None:
+            handler(value)
+            self.refresh(answered=key)
+
+    def _handle_msg(self, data: Any) -> None:
+        if isinstance(data, dict) and isinstance(data.get("key"), str):
+            self.report(data["key"], data.get("value"))
+
+
+def _missing(key: str) -> Node:
+    raise KeyError(key)

@@ -1,0 +1,320 @@
+"""The working state of one browser tab: scenario, results, history. No widget lives here.
+
+Views read a :class:`Session` and watch its parameters; they change the scenario only through ``turn`` (one
+dial), ``edit`` (anything structural), ``choose_season``, ``set_sweep``, ``replace``, ``undo`` and ``redo``.
+A view never writes to another view.
+
+==============  =====================================================================================
+parameter       when it changes
+==============  =====================================================================================
+``values``      at once after any change of dial values (move sliders and number fields; no rebuild)
+``structure``   waters, steps, season, units, names or targets changed: rebuild what is drawn from them
+``point``       the operating point has been solved (``Outcome``, scalar shape)
+``swept``       the sweep has been solved (``Sweep``), always together with ``point``
+``message``     one sentence the user has to read, "" when there is none
+``stale``       True while the results on screen belong to inputs that could not be solved
+==============  =====================================================================================
+"""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass, field
+from typing import Any, Protocol
+
+import param
+from explorer.scenario.dials import Dial, dials, get_value, turn
+from explorer.scenario.evaluate import Outcome, evaluate
+from explorer.scenario.model import Scenario
+from explorer.studies.sweep import Sweep, sweep
+
+MERGE_SECONDS = 0.8  # turns of one dial that follow each other faster than this are one undo step
+HISTORY_LIMIT = 200
+
+Change = Callable[[Scenario], None]
+
+
+@dataclass(frozen=True)
+class Results:
+    """What one calculation brought: both results, or the sentence that says why there are none."""
+
+    point: Outcome | None
+    swept: Sweep | None
+    message: str = ""
+
+
+class Runner(Protocol):
+    """Runs calculations; may drop a waiting one when a newer one arrives, never applies them out of order."""
+
+    def submit(self, compute: Callable[[], Results], apply: Callable[[Results], None]) -> None: ...
+
+
+class Immediate:
+    """Runner without a queue: computes and applies before ``submit`` returns (tests, headless use)."""
+
+    def submit(self, compute: Callable[[], Results], apply: Callable[[Results], None]) -> None:
+        apply(compute())
+
+
+@dataclass
+class Step:
+    """One undo step: its name, what it merges with, and the scenario before it."""
+
+    label: str
+    key: str
+    before: dict[str, Any]
+    at: float
+
+
+@dataclass
+class Work:
+    """The plain record behind a session: what has to survive a reload of the tab."""
+
+    scenario: Scenario
+    file_name: str = "scenario.json"
+    saved: dict[str, Any] | None = None
+    past: list[Step] = field(default_factory=list)
+    future: list[Step] = field(default_factory=list)
+
+    def copy(self) -> Work:
+        """Independent record: the scenario is copied, history entries are never mutated and may be shared."""
+        return Work(self.scenario.copy(), self.file_name, self.saved, list(self.past), list(self.future))
+
+
+def solve(scenario: Scenario, wanted: Iterable[str] = ()) -> Results:
+    """Solve the operating point and the sweep of ``scenario`` and warm the ``wanted`` readouts.
+
+    Never raises for something the user can mend: the sentence comes back in ``Results.message``.
+    """
+    try:
+        point = evaluate(scenario)
+        swept = sweep(scenario)
+        for key in wanted:
+            point.readout(key)
+            swept.outcome.readout(key)
+    except ValueError as error:
+        return Results(None, None, str(error))
+    return Results(point, swept)
+
+
+class Session(param.Parameterized):
+    """State of one browser tab, apart from all widgets.
+
+    Parameters
+    ----------
+    work
+        A ``Scenario`` to start from, or the ``Work`` record of an earlier session of the same tab.
+    runner
+        Runs the calculations; the default computes at once.
+    clock
+        Seconds, monotonic; only for merging turns into one undo step.
+    """
+
+    scenario = param.Parameter(doc="the working Scenario; replaced by edits, turned in place by dials")
+    point = param.Parameter(doc="Outcome at the operating point, None before the first success")
+    swept = param.Parameter(doc="Sweep of the scenario's chosen dial, None before the first success")
+    structure = param.Integer(0, doc="bumped when views drawn from the structure must be rebuilt")
+    values = param.Integer(0, doc="bumped at once when dial values changed")
+    message = param.String("", doc="sentence for the message line")
+    stale = param.Boolean(False, doc="results on screen belong to earlier inputs")
+    unsaved = param.Boolean(False)
+    can_undo = param.Boolean(False)
+    can_redo = param.Boolean(False)
+
+    def __init__(
+        self,
+        work: Scenario | Work,
+        runner: Runner | None = None,
+        clock: Callable[[], float] = time.monotonic,
+    ) -> None:
+        record = work if isinstance(work, Work) else Work(work)
+        super().__init__(scenario=record.scenario)
+        self.work = record
+        self.runner: Runner = runner or Immediate()
+        self._clock = clock
+        self._wanted: dict[str, tuple[str, ...]] = {}
+        self._dials: dict[str, Dial] | None = None
+        if record.saved is None:
+            record.saved = record.scenario.to_dict()
+        self._refresh_marks()
+
+    # ---- reading -------------------------------------------------------------------------------------
+
+    @property
+    def file_name(self) -> str:
+        return self.work.file_name
+
+    @property
+    def season(self) -> str:
+        return self.scenario.season
+
+    @property
+    def undo_label(self) -> str:
+        return self.work.past[-1].label if self.work.past else ""
+
+    @property
+    def redo_label(self) -> str:
+        return self.work.future[-1].label if self.work.future else ""
+
+    @property
+    def dials(self) -> dict[str, Dial]:
+        """Every dial of the scenario in the chosen season by address, with current values."""
+        if self._dials is None:
+            self._dials = dials(self.scenario)
+        return self._dials
+
+    def value(self, address: str) -> float:
+        """Current value of the dial at ``address`` in its entered unit."""
+        return get_value(self.scenario, address)
+
+    # ---- changing ------------------------------------------------------------------------------------
+
+    def turn(self, address: str, value: float) -> str:
+        """Turn one dial and recalculate; "" or the sentence that says why the value is refused."""
+        merge = self._merges(address)
+        before = None if merge else self.scenario.to_dict()
+        label = self.dials[address].label if address in self.dials else address
+        try:
+            turn(self.scenario, address, value)
+        except ValueError as error:
+            return str(error)
+        if before is None:
+            self.work.past[-1].at = self._clock()
+            self.work.future.clear()
+        else:
+            self._remember(Step(label, address, before, self._clock()))
+        self._dials = None
+        self.param.update(unsaved=True, can_undo=True, can_redo=False, values=self.values + 1)
+        self.calculate()
+        return ""
+
+    def edit(self, label: str, change: Change, key: str = "", rebuild: bool = True) -> str:
+        """Apply a structural change to a copy, validate it and take it over.
+
+        Parameters
+        ----------
+        label
+            Name of the undo step, e.g. "Add a source water".
+        change
+            Function that alters the scenario it is given.
+        key
+            Edits with the same non-empty key that follow each other quickly merge into one undo step.
+        rebuild
+            False when nothing drawn from the structure changes (``structure`` is then not bumped).
+
+        Returns
+        -------
+        str
+            "" when taken over, else one sentence; the old state stays.
+        """
+        before = self.scenario.to_dict()
+        try:
+            draft = self.scenario.copy()
+            change(draft)
+            _mend_sweep(draft)
+            draft = Scenario.from_dict(draft.to_dict())
+        except ValueError as error:
+            return str(error)
+        if key and self._merges(key):
+            self.work.past[-1].at = self._clock()
+            self.work.future.clear()
+        else:
+            self._remember(Step(label, key, before, self._clock()))
+        self._take(draft, rebuild)
+        return ""
+
+    def choose_season(self, name: str) -> str:
+        """Switch to another season of the scenario."""
+
+        def change(scenario: Scenario) -> None:
+            scenario.season = name
+
+        return self.edit(f"Season {name}", change)
+
+    def set_sweep(self, **plan: Any) -> str:
+        """Change the sweep: any of ``dial``, ``start``, ``stop``, ``points``."""
+
+        def change(scenario: Scenario) -> None:
+            scenario.sweep = {**(scenario.sweep or {}), **plan}
+
+        return self.edit("Sweep", change, key="sweep", rebuild=False)
+
+    def replace(self, scenario: Scenario, file_name: str = "scenario.json") -> None:
+        """Start afresh from an opened scenario; history begins anew and nothing is unsaved."""
+        self.work.file_name = file_name
+        self.work.saved = scenario.to_dict()
+        self.work.past.clear()
+        self.work.future.clear()
+        self._take(scenario)
+
+    def undo(self) -> None:
+        """Go back one step; nothing happens when there is none."""
+        self._travel(self.work.past, self.work.future)
+
+    def redo(self) -> None:
+        """Take back the last undo; nothing happens when there is none."""
+        self._travel(self.work.future, self.work.past)
+
+    def mark_saved(self) -> None:
+        """The scenario as it stands has been written to a file."""
+        self.work.saved = self.scenario.to_dict()
+        self._refresh_marks()
+
+    # ---- calculating ---------------------------------------------------------------------------------
+
+    def want(self, view: str, readouts: Iterable[str]) -> None:
+        """Tell which readouts a view will ask for, so that they are computed off the event loop."""
+        self._wanted[view] = tuple(readouts)
+
+    def calculate(self) -> None:
+        """Solve the scenario as it stands; results arrive in ``point`` and ``swept``."""
+        snapshot = self.scenario.copy()
+        wanted = {key for keys in self._wanted.values() for key in keys}
+        self.runner.submit(lambda: solve(snapshot, wanted), self._apply)
+
+    def _apply(self, results: Results) -> None:
+        if results.point is None:
+            self.param.update(message=results.message, stale=self.point is not None)
+        else:
+            self.param.update(point=results.point, swept=results.swept, message="", stale=False)
+
+    # ---- history -------------------------------------------------------------------------------------
+
+    def _merges(self, key: str) -> bool:
+        past = self.work.past
+        return bool(past) and past[-1].key == key and self._clock() - past[-1].at < MERGE_SECONDS
+
+    def _remember(self, step: Step) -> None:
+        self.work.past.append(step)
+        del self.work.past[:-HISTORY_LIMIT]
+        self.work.future.clear()
+
+    def _travel(self, source: list[Step], destination: list[Step]) -> None:
+        if not source:
+            return
+        step = source.pop()
+        # No key: a turn right after an undo must not merge into the step that was undone.
+        destination.append(Step(step.label, "", self.scenario.to_dict(), 0.0))
+        self._take(Scenario.from_dict(step.before))
+
+    def _take(self, scenario: Scenario, rebuild: bool = True) -> None:
+        self.work.scenario = scenario
+        self._dials = None
+        with param.parameterized.batch_call_watchers(self):
+            self.scenario = scenario
+            self.structure += int(rebuild)
+            self.values += 1
+            self._refresh_marks()
+        self.calculate()
+
+    def _refresh_marks(self) -> None:
+        self.param.update(
+            unsaved=self.scenario.to_dict() != self.work.saved,
+            can_undo=bool(self.work.past),
+            can_redo=bool(self.work.future),
+        )
+
+
+def _mend_sweep(scenario: Scenario) -> None:
+    """Point the sweep at a dial that exists: a removed water or step takes its dials with it."""
