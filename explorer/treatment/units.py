@@ -81,6 +81,14 @@ def amount_units(
     return MappingProxyType({default: units[default]} | units)
 
 
+def substance_units(molar_mass: float) -> Units:
+    """Units of a substance known by its molar mass [g/mol] only, such as a weak acid of the user."""
+    mass = 1000 * molar_mass
+    return MappingProxyType(
+        {"mg/L": Unit(mass), "µg/L": Unit(1000 * mass), "mmol/L": Unit(1000.0), "mol/L": Unit(1.0)}
+    )
+
+
 def _plain_units(**per_base: float) -> Units:
     return MappingProxyType({unit: Unit(factor) for unit, factor in per_base.items()})
 
@@ -120,8 +128,8 @@ _QUANTITIES: dict[str, Units] = {
     "monochloramine": amount_units("mg/L as Cl2", "Cl2", "Cl2", "N"),
     "sulfite": amount_units("mg/L", "SO3", "S"),
     "thiosulfate": amount_units("mg/L", "S2O3", "S"),
-    "acetate": amount_units("mg/L", "C2H3O2"),
-    "citrate": amount_units("mg/L", "C6H5O7"),
+    "acetate": amount_units("mg/L", "C2H4O2"),
+    "citrate": amount_units("mg/L", "C6H8O7"),
     "aluminium": _ALUMINIUM,
     "dissolved_aluminium": _ALUMINIUM,
     "iron": _IRON,
