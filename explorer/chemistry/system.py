@@ -1,0 +1,145 @@
+"""A chemical system: its components, and the one question asked of it.
+
+``System.solve`` answers, for many waters at once: given the conserved totals and a temperature, what is the
+equilibrium?
+"""
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from functools import cached_property, lru_cache
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from . import equilibrium
+from .activity import debye_hueckel_slope
+from .components import COMPONENT, COMPONENTS, WeakAcid
+from .network import Network
+from .newton import Newton, Problem
+from .organics import equivalents_per_mole
+from .solution import Solution
+from .start import Ladder
+
+USUAL_ORGANIC_CHARGE_DENSITY = 10.0
+"""µeq per mg C."""
+
+
+@dataclass(frozen=True)
+class Kernel:
+    """The part of a system that matters where some masters are absent: rows of its species and masters in
+    the network, the iteration and the ladder of acids for them."""
+
+    species: NDArray
+    masters: NDArray
+    newton: Newton
+    ladder: Ladder
+
+
+class System:
+    """Components and reactions; hold one for a scenario.
+
+    ``acids``: user-defined weak acids, each a further row of the totals. ``organic_charge_density``: acid
+    groups of natural organic carbon [µeq/mg C]. ``pairs`` False drops all metal–ligand pairs, to show what
+    they do.
+    """
+
+    def __init__(
+        self,
+        acids: Sequence[WeakAcid] = (),
+        organic_charge_density: float = USUAL_ORGANIC_CHARGE_DENSITY,
+        *,
+        pairs: bool = True,
+    ) -> None:
+        self.acids = tuple(acids)
+        self.keys: tuple[str, ...] = COMPONENTS + tuple(acid.id for acid in self.acids)
+        self.index: dict[str, int] = {key: row for row, key in enumerate(self.keys)}
+        self.network = Network(self.acids, pairs=pairs)
+        self.organic_equivalents = equivalents_per_mole(organic_charge_density)
+        self._rows = np.array([self.index[key] for key in self.network.master_of])
+        inert = [c for c in COMPONENT.values() if c.master is None and c.charge]
+        self._inert_rows = np.array([self.index[c.key] for c in inert])
+        self._inert_charges = np.array([c.charge for c in inert], dtype=float)
+
+    def zeros(self, shape: int | tuple[int, ...] = ()) -> NDArray:
+        """Totals of pure water: (components, *shape), mol/L."""
+        shape = (shape,) if isinstance(shape, int) else shape
+        return np.zeros((len(self.keys), *shape))
+
+    def totals(self, **amounts: ArrayLike) -> NDArray:
+        """Totals from keyword amounts in mol/L (alkalinity eq/L); the arrays broadcast."""
+        arrays = np.broadcast_arrays(*amounts.values()) if amounts else []
+        result = self.zeros(arrays[0].shape if arrays else ())
+        for key, value in zip(amounts, arrays, strict=True):
+            result[self.index[key]] = value
+        return result
+
+    def solve(self, totals: ArrayLike, temperature: ArrayLike, *, ph: ArrayLike | None = None) -> Solution:
+        """Equilibrium of closed waters.
+
+        ``totals`` (components, *shape) in mol/L, ``temperature`` in °C, broadcastable to ``shape``. With
+        ``ph`` given (activity scale) the alkalinity row is ignored and filled in from the answer.
+
+        Points that have no solution (not finite, a negative total, no convergence) are not ``solved``: their
+        values are nan and they carry a reason. Never raises for a number; ValueError for a wrong first axis.
+        """
+        totals, temperature, ph, shape = self._broadcast(totals, temperature, ph)
+        return Solution(self, equilibrium.solve(self, totals, temperature, ph), shape)
+
+    def _broadcast(
+        self, totals: ArrayLike, temperature: ArrayLike, ph: ArrayLike | None
+    ) -> tuple[NDArray, NDArray, NDArray | None, tuple[int, ...]]:
+        totals = np.asarray(totals, dtype=float)
+        if totals.ndim == 0 or totals.shape[0] != len(self.keys):
+            raise ValueError(f"totals need {len(self.keys)} rows, one a component; got shape {totals.shape}")
+        others = [np.asarray(temperature, dtype=float)] + ([] if ph is None else [np.asarray(ph, dtype=float)])
+        shape = np.broadcast_shapes(totals.shape[1:], *(a.shape for a in others))
+        flat = [np.broadcast_to(a, shape).ravel() for a in others]
+        extra = len(shape) - (totals.ndim - 1)
+        totals = totals.reshape(totals.shape[:1] + (1,) * extra + totals.shape[1:])
+        totals = np.broadcast_to(totals, (len(self.keys), *shape)).reshape(len(self.keys), -1).copy()
+        return totals, flat[0], flat[1] if ph is not None else None, shape
+
+    def masters_in(self, totals: NDArray) -> NDArray:
+        """Totals (components, N) as balances of the masters (masters, N): the proton row is −alkalinity."""
+        masters = totals[self._rows]
+        masters[0] = -masters[0]
+        return masters
+
+    def inert_charge(self, totals: NDArray) -> NDArray:
+        """Charge [eq/L] of the ions that form no species, for totals (components, N)."""
+        return self._inert_charges @ totals[self._inert_rows]
+
+    def problem(self, totals: NDArray, temperature: NDArray, ph: NDArray | None = None) -> Problem:
+        """The flat batch as the iteration wants it, over all masters."""
+        return Problem(
+            log_k=self.log_k(temperature),
+            totals=self.masters_in(totals),
+            slope=debye_hueckel_slope(temperature),
+            inert=0.5 * self._inert_charges**2 @ totals[self._inert_rows],
+            organic=self.organic_equivalents * totals[self.index["organic_carbon"]],
+            ph=ph,
+        )
+
+    def log_k(self, temperature: NDArray) -> NDArray:
+        """ln K of every species; one temperature for the whole batch is worked out once."""
+        if temperature.size and (temperature == temperature[0]).all():
+            column = self._log_k_at(float(temperature[0]))
+            return np.broadcast_to(column[:, None], (len(column), temperature.size))
+        return self.network.log_k(temperature)
+
+    @cached_property
+    def _log_k_at(self) -> Callable[[float], NDArray]:
+        return lru_cache(maxsize=256)(lambda temperature: self.network.log_k(np.array(temperature)))
+
+    @cached_property
+    def kernel(self) -> Callable[[tuple[bool, ...]], Kernel]:
+        """``kernel(present)`` for the masters that are present."""
+        return lru_cache(maxsize=64)(self._kernel)
+
+    def _kernel(self, present: tuple[bool, ...]) -> Kernel:
+        masters = np.flatnonzero(present)
+        absent = ~np.array(present)
+        species = np.flatnonzero(~(self.network.counts[:, absent] != 0.0).any(axis=1))
+        newton = Newton(self.network.counts[np.ix_(species, masters)], self.network.charges[species])
+        ladder = Ladder(self.network, {self.network.masters[m]: row for row, m in enumerate(masters)})
+        return Kernel(species, masters, newton, ladder)
