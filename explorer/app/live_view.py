@@ -10,12 +10,16 @@ import json
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass, field
 from pathlib import Path
-from typing import Any
+from typing import Any, ClassVar
 
 import param
 from panel.custom import JSComponent
 
+from explorer.app.text import plain
+
 FOLDER = Path(__file__).parent
+LONGEST_TEXT = 400
+"""Characters of one text on the page; longer ones end in an ellipsis."""
 
 Handler = Callable[[Any], None]
 """What a node does with the value the page reports: a text, a number, a truth value, or None for a press."""
@@ -23,7 +27,7 @@ Handler = Callable[[Any], None]
 
 @dataclass(slots=True)
 class Node:
-    """One element: ``tag`` is its HTML name, ``key`` its name among its siblings and for reports from the page.
+    """One element: ``tag`` is its HTML name, ``key`` its name on the page and in reports from there.
 
     ``properties`` are HTML attributes; ``value`` is what an input shows, ``checked`` whether a box is ticked,
     and ``colour`` sets the CSS variable of that name. None and False leave an attribute out.
@@ -62,12 +66,15 @@ def node(
     on: Handler | None = None,
     **properties: Any,
 ) -> Node:
-    """A node with CSS classes ``look``; ``aria_label`` becomes ``aria-label``; children that are None are left out."""
+    """A node with CSS classes ``look``.
+
+    ``aria_label`` becomes ``aria-label``; children and properties that are None are left out.
+    """
     wanted = {name.strip("_").replace("_", "-"): value for name, value in properties.items()}
     if look:
         wanted["class"] = look
     if text is not None:
-        wanted["text"] = text
+        wanted["text"] = plain(text, LONGEST_TEXT)
     wanted = {name: value for name, value in wanted.items() if value is not None and value is not False}
     return Node(tag, key, wanted, [child for child in children if child is not None], on)
 
@@ -93,11 +100,15 @@ class LiveView(JSComponent):
 
     _esm = "live_view.js"
 
+    css: ClassVar[tuple[str, ...]] = ("live_view.css",)
+    """Style files beside this module: page styles stop at a shadow root, so each view carries its own."""
+
     def __init__(self, **settings: Any) -> None:
         self._nodes: list[Node] = []
         self._changes: dict[int, dict[str, Any]] = {}
         self._handlers: dict[str, Handler] = {}
-        super().__init__(**settings)
+        styles = [(FOLDER / name).read_text(encoding="utf-8") for name in self.css]
+        super().__init__(**({"stylesheets": styles} | settings))
 
     def describe(self) -> Node:
         """The tree to show now; subclasses say what it is."""
@@ -118,8 +129,11 @@ class LiveView(JSComponent):
             return
         changed = False
         for position, (old, new) in enumerate(zip(self._nodes, nodes, strict=True)):
-            names = {name for name in old.properties.keys() | new.properties.keys()
-                     if old.properties.get(name) != new.properties.get(name)}
+            names = {
+                name
+                for name in old.properties.keys() | new.properties.keys()
+                if old.properties.get(name) != new.properties.get(name)
+            }
             if answered and new.key == answered:
                 names |= {"value", "checked"} & new.properties.keys()
             if names:
@@ -131,9 +145,9 @@ class LiveView(JSComponent):
             serial = json.loads(self.patch).get("serial", 0) + 1
             self.patch = json.dumps({"serial": serial, "changes": self._changes}, ensure_ascii=False)
 
-    def node(self, key: str) -> Node:
-        """The node on the page with this key; KeyError when there is none."""
-        return next(item for item in self._nodes if item.key == key) if key in self else _missing(key)
+    def shown(self, key: str) -> Node:
+        """The node with this key as it is on the page; KeyError when there is none."""
+        return self._nodes[0].find(key)
 
     def __contains__(self, key: str) -> bool:
         return any(item.key == key for item in self._nodes)
@@ -148,7 +162,3 @@ class LiveView(JSComponent):
     def _handle_msg(self, data: Any) -> None:
         if isinstance(data, dict) and isinstance(data.get("key"), str):
             self.report(data["key"], data.get("value"))
-
-
-def _missing(key: str) -> Node:
-    raise KeyError(key)

@@ -1,0 +1,223 @@
+// Keeps the page to a tree of plain data (see live_view.py) and reports what the user does.
+// Every text goes in as text: nothing here reads markup.
+
+const TAGS = new Set(["div", "section", "span", "p", "h2", "h3", "h4", "ol", "ul", "li", "label", "button", "input",
+  "select", "option", "optgroup", "table", "thead", "tbody", "tr", "th", "td", "strong", "small"])
+const ATTRIBUTE = /^(class|id|title|type|role|tabindex|placeholder|min|max|step|disabled|hidden|list|for|label|selected|scope|colspan|autocomplete|inputmode|maxlength|size|autofocus|popover|popovertarget|aria-[a-z]+|data-[a-z]+)$/
+const HELD_MS = 300   // a slider just moved by hand is not moved by an answer to an earlier position
+
+export function render({ model, el }) {
+  const view = document.createElement("div")
+  view.className = "live-view"
+  let order = []      // elements in reading order: a patch addresses them by position
+  const held = new Map()   // slider -> time until which answers wait
+
+  const scope = () => view.getRootNode()
+  const tell = (element, value) => model.send_msg({ key: element._key, value: value ?? null })
+
+  // ---- tree -> page ------------------------------------------------------------------------------
+
+  function setValue(element, value) {
+    if (element.type === "checkbox") return
+    const text = value ?? ""
+    if (element.tagName === "INPUT" && element.type !== "range") {
+      const typing = scope().activeElement === element && element.value !== element._known
+      element._known = text
+      if (typing && element._sent !== element.value) return
+      element._sent = null
+      const selected = scope().activeElement === element
+      element.value = text
+      if (selected) element.select()
+    } else if (element.type === "range" && (held.get(element) ?? 0) > performance.now()) {
+      element._waiting = text
+    } else {
+      element.value = text
+      paint(element)
+    }
+  }
+
+  function paint(slider) {
+    if (slider.type !== "range") return
+    const low = Number(slider.min), high = Number(slider.max)
+    const part = high > low ? (Number(slider.value) - low) / (high - low) : 0
+    slider.style.setProperty("--filled", `${100 * Math.min(1, Math.max(0, part))}%`)
+  }
+
+  function setProperty(element, name, value) {
+    if (name === "text") element.textContent = value ?? ""
+    else if (name === "checked") element.checked = Boolean(value)
+    else if (name === "colour") element.style.setProperty("--colour", value ?? "")
+    else if (name === "value") element._late = value ?? ""
+    else if (!ATTRIBUTE.test(name)) console.warn(`attribute ${name} is not shown`)
+    else if (value === null || value === undefined) element.removeAttribute(name)
+    else element.setAttribute(name, value === true ? "" : value)
+  }
+
+  function finish(element) {      // the value last: options and limits have to be there first
+    if ("_late" in element) { setValue(element, element._late); delete element._late }
+    else paint(element)
+  }
+
+  function dress(element, properties) {
+    for (const name of Object.keys(element._properties))
+      if (!(name in properties)) setProperty(element, name, null)
+    for (const [name, value] of Object.entries(properties))
+      if (element._properties[name] !== value || name === "checked" || name === "value") setProperty(element, name, value)
+    element._properties = { ...properties }
+  }
+
+  function fit(parent, specs) {
+    const old = new Map(), seen = new Map()
+    const nameOf = (tag, key, count) => {
+      if (key) return `${tag} ${key}`
+      const number = count.get(tag) ?? 0
+      count.set(tag, number + 1)
+      return `${tag}#${number}`
+    }
+    const before = new Map()
+    for (const child of [...parent.children]) old.set(nameOf(child._tag, child._key, before), child)
+    let place = parent.firstElementChild
+    for (const [tag, key, properties, children] of specs) {
+      const name = nameOf(tag, key, seen)
+      let child = old.get(name)
+      old.delete(name)
+      const fresh = !child
+      if (fresh) {
+        child = document.createElement(TAGS.has(tag) ? tag : "span")
+        Object.assign(child, { _tag: tag, _key: key, _properties: {} })
+      }
+      if (child === place) place = place.nextElementSibling
+      else parent.insertBefore(child, place)
+      order.push(child)
+      // Text and children exclude each other; a node that changes from one to the other starts empty.
+      if (children.length && child._properties.text !== undefined) child.textContent = ""
+      dress(child, properties)
+      if (properties.text === undefined) fit(child, children)
+      finish(child)
+      if (fresh && properties.autofocus !== undefined && !child.closest("[popover]"))
+        queueMicrotask(() => { child.focus(); child.select?.() })
+      if (fresh && "data-reveal" in properties)
+        requestAnimationFrame(() => child.scrollIntoView({ block: "nearest" }))
+    }
+    for (const child of old.values()) child.remove()
+  }
+
+  function showTree() {
+    const focused = scope().activeElement?._key
+    order = []
+    const root = JSON.parse(model.tree)
+    fit(view, root.length ? [root] : [])
+    if (focused && scope().activeElement?._key !== focused)
+      order.find((element) => element._key === focused)?.focus()
+  }
+
+  function showPatch() {
+    for (const [position, properties] of Object.entries(JSON.parse(model.patch).changes ?? {})) {
+      const element = order[Number(position)]
+      if (!element) continue
+      for (const [name, value] of Object.entries(properties)) {
+        const same = element._properties[name] === value
+        if (same && name !== "value" && name !== "checked") continue
+        if (value === null) delete element._properties[name]
+        else element._properties[name] = value
+        setProperty(element, name, value)
+      }
+      finish(element)
+    }
+  }
+
+  // ---- page -> Python ----------------------------------------------------------------------------
+
+  const waiting = new Map()      // slider -> newest value, sent once a frame
+  view.addEventListener("input", (event) => {
+    const element = event.target
+    if (element.hasAttribute("data-filter")) return filter(element)
+    if (element.type !== "range") return
+    paint(element)
+    held.set(element, performance.now() + HELD_MS)
+    if (!waiting.has(element)) requestAnimationFrame(() => {
+      tell(element, Number(waiting.get(element)))
+      waiting.delete(element)
+      setTimeout(() => release(element), HELD_MS + 20)
+    })
+    waiting.set(element, element.value)
+  })
+  function release(slider) {
+    if ((held.get(slider) ?? 0) > performance.now() || slider._waiting === undefined) return
+    slider.value = slider._waiting
+    slider._waiting = undefined
+    paint(slider)
+  }
+  view.addEventListener("change", (event) => {
+    const element = event.target
+    if (!element.hasAttribute("data-on") || element.type === "range") return
+    if (element.type === "checkbox") return tell(element, element.checked)
+    element._sent = element.value
+    tell(element, element.value)
+  })
+  view.addEventListener("click", (event) => {
+    const button = event.target.closest("button")
+    if (!button) return
+    const sheet = button.closest("[popover]")
+    if (button.hasAttribute("data-on")) tell(button)
+    if (sheet && !button.hasAttribute("popovertarget")) sheet.hidePopover()
+  })
+
+  // ---- keys, menus and searchable lists ----------------------------------------------------------
+
+  view.addEventListener("keydown", (event) => {
+    const element = event.target
+    const sheet = element.closest("[popover]")
+    if (event.key === "Escape" && element.tagName === "INPUT" && !sheet && element._known !== undefined) {
+      element.value = element._known
+      element.select()
+    }
+    if (!sheet) return
+    const choices = [...sheet.querySelectorAll("button")].filter((button) => button.offsetParent)
+    const at = choices.indexOf(element)
+    const step = { ArrowDown: 1, ArrowUp: -1 }[event.key]
+    if (step && choices.length) {
+      event.preventDefault()
+      choices[(at + step + choices.length + (at < 0 && step < 0 ? 1 : 0)) % choices.length].focus()
+    } else if (event.key === "Enter" && element.hasAttribute("data-filter")) {
+      event.preventDefault()
+      choices[0]?.click()
+    }
+  })
+
+  function filter(search) {
+    const words = search.value.toLowerCase().split(/\s+/).filter(Boolean)
+    const sheet = search.closest("[popover]")
+    for (const choice of sheet.querySelectorAll("[data-words]"))
+      choice.hidden = !words.every((word) => choice.dataset.words.includes(word))
+    for (const group of sheet.querySelectorAll("[data-group]"))
+      group.hidden = !group.querySelector("[data-words]:not([hidden])")
+    for (const none of sheet.querySelectorAll("[data-none]"))
+      none.hidden = Boolean(sheet.querySelector("[data-words]:not([hidden])"))
+  }
+
+  const GAP = 4
+  view.addEventListener("toggle", (event) => {
+    const sheet = event.target
+    const opener = [...view.querySelectorAll("[popovertarget]")].find((b) => b.getAttribute("popovertarget") === sheet.id)
+    opener?.setAttribute("aria-expanded", String(event.newState === "open"))
+    if (event.newState !== "open" || !opener) return
+    const from = opener.getBoundingClientRect(), size = sheet.getBoundingClientRect()
+    const below = window.innerHeight - from.bottom - 2 * GAP, above = from.top - 2 * GAP
+    const up = size.height > below && above > below
+    sheet.style.maxHeight = `${Math.max(120, up ? above : below)}px`
+    const height = Math.min(size.height, up ? above : below)
+    sheet.style.top = `${up ? from.top - GAP - height : from.bottom + GAP}px`
+    const left = sheet.dataset.side === "left" ? from.left : from.right - size.width
+    sheet.style.left = `${Math.min(Math.max(GAP, left), window.innerWidth - size.width - GAP)}px`
+    const search = sheet.querySelector("[data-filter]")
+    if (search) { search.value = ""; filter(search) }
+    const first = search ?? sheet.querySelector("button")
+    first?.focus()
+  }, true)
+
+  model.on("tree", showTree)
+  model.on("patch", showPatch)
+  queueMicrotask(() => { showTree(); showPatch() })
+  return view
+}
