@@ -6,7 +6,7 @@ of the catalogue and those a user defines are read by the same function.
 """
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from types import MappingProxyType
 from typing import Any
 
@@ -59,7 +59,7 @@ class Chemical:
     default_unit: str
     units: Mapping[str, float]
     hazards: tuple[str, ...] = ()
-    sources: Mapping[str, str] = MappingProxyType({})
+    sources: Mapping[str, str] = field(default_factory=dict)
     note: str = ""
     plain: str = ""
     densities: tuple[tuple[float, float], ...] = ()
