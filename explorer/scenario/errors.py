@@ -1,0 +1,61 @@
+"""The one error a user of scenario files can meet, and the words it is made of."""
+
+import difflib
+import json
+import unicodedata
+from collections.abc import Iterable
+from typing import Any
+
+SHOWN_LENGTH = 40
+"""Characters of a foreign text that are quoted in a sentence."""
+
+
+class ScenarioError(ValueError):
+    """Something in a scenario that cannot be accepted.
+
+    ``path`` is the field (``waters[1].analyses.winter.ph.value``), "" for the scenario as a whole;
+    ``message`` says what is wrong and what is allowed. As text both make one sentence.
+    """
+
+    def __init__(self, path: str, message: str) -> None:
+        self.path, self.message = path, message
+        super().__init__(f"{path}: {message}" if path else message)
+
+
+def join(path: str, key: str | int) -> str:
+    """Path of the part ``key`` (a name, or a position in a list) of what is at ``path``."""
+    if isinstance(key, int):
+        return f"{path}[{key}]"
+    return f"{path}.{clipped(key)}" if path else clipped(key)
+
+
+def clipped(text: str) -> str:
+    """A foreign text made fit for a sentence: no control characters, at most ``SHOWN_LENGTH`` long."""
+    clean = "".join("\ufffd" if unicodedata.category(character)[0] == "C" else character for character in text)
+    return clean if len(clean) <= SHOWN_LENGTH else clean[: SHOWN_LENGTH - 1] + "…"
+
+
+def shown(value: Any) -> str:
+    """A JSON value as a reader would name it: numbers as written, texts quoted, parts by their kind."""
+    if isinstance(value, str):
+        return f'"{clipped(value)}"'
+    if isinstance(value, dict):
+        return "an object"
+    if isinstance(value, list | tuple):
+        return "a list"
+    if value is None or isinstance(value, bool | float):
+        return json.dumps(value)
+    return clipped(str(value)) if isinstance(value, int) else type(value).__name__
+
+
+def listed(allowed: Iterable[str]) -> str:
+    """Allowed words in one line."""
+    return ", ".join(allowed) or "none"
+
+
+def unknown(word: Any, what: str, allowed: Iterable[str]) -> str:
+    """Message for a word outside its list, with the word that was probably meant."""
+    allowed = tuple(allowed)
+    close = difflib.get_close_matches(word, allowed, n=1) if isinstance(word, str) else []
+    guess = f" (perhaps {close[0]})" if close else ""
+    return f"{shown(word)} is not {what}{guess}; allowed: {listed(allowed)}"
