@@ -22,8 +22,10 @@ from .organics import END_POINT_FRACTION, dissociated
 
 STEP_TOLERANCE = 2e-7
 """Largest change of any ln activity in the last step; the error after it is of the order of its square."""
-MAX_STEP = 4.0
+MAX_STEP = 2.0
 """Largest change of any ln activity in one step."""
+NEAR = 0.3
+"""Largest change of any ln activity for which the ionic strength is changed with Newton too."""
 MAX_ITERATIONS = 60
 CHUNK = 1024
 """Points worked on together, so that the arrays of one step stay in the processor's cache."""
@@ -177,15 +179,22 @@ class Newton:
             target[1:] += problem.saturation - phases @ state.x
             extra = np.linalg.solve(np.moveaxis(products[:, 1:], -1, 0), target.T[..., None])[..., 0].T
         else:
-            extra = target / products[:, 1]
+            extra = target / np.where(products[:, 1] == 0.0, 1e-300, products[:, 1])
         change = columns[:, 0] + np.einsum("mrn,rn->mn", columns[:, 1:], extra)
         largest = np.abs(change).max(axis=0)
-        damping = np.minimum(1.0, MAX_STEP / np.maximum(largest, 1e-300))
-        state.x += damping * change
-        grown = state.strength + damping * extra[0]
-        state.strength = np.clip(grown, 0.2 * state.strength, 5.0 * state.strength + 1e-8)
-        state.formed += damping * extra[1:]
-        return np.where(np.isfinite(largest), largest, np.inf)
+        largest = np.where(np.isfinite(largest), largest, np.inf)
+        state.x += np.minimum(1.0, MAX_STEP / np.maximum(largest, 1e-300)) * change
+        near = largest < NEAR
+        # far from the solution the Newton change of the ionic strength means nothing: go half way (in ln) to
+        # the ionic strength of the species at hand
+        found = np.clip(state.strength - linear.strength_residual, 1e-9, 1.0)
+        state.strength = np.where(
+            near,
+            np.clip(state.strength + extra[0], 0.2 * state.strength, 5.0 * state.strength),
+            np.sqrt(state.strength * found),
+        )
+        state.formed += extra[1:]
+        return np.maximum(largest, np.abs(extra[0]) / state.strength)
 
     def proton_response(self, problem: Problem, state: State) -> NDArray:
         """Change of ln activity of H+ per unit of proton total at a solution; (N,)."""

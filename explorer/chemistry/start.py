@@ -14,6 +14,9 @@ ORGANIC_PKA = 4.2
 """Mean pKa of natural organic acids near their alkalinity end point, for the first guess only."""
 
 
+PASSES = 5
+
+
 class Ladder:
     """The acids of a system in order of pKa.
 
@@ -67,10 +70,11 @@ def first_state(newton: Newton, problem: Problem, ph: NDArray) -> State:
     strength = np.clip(problem.inert + problem.totals[1:].sum(axis=0), 1e-7, 0.5)
     phases = 0 if problem.phases is None else len(problem.phases)
     state = State(x, strength, np.zeros((phases, len(problem))))
-    for _ in range(2):
+    power = 1.0 / np.maximum(newton.counts[:, 1:].max(axis=0), 1.0)[:, None]
+    for _ in range(PASSES):
         c = newton.concentrations(problem, state)
         balance = newton.counts[:, 1:].T @ c
         scale = np.where(absent[1:] | (balance <= 0.0), 1.0, floor[1:] / np.where(balance > 0.0, balance, 1.0))
-        state.x[1:] += np.clip(np.log(scale), -60.0, 60.0)
+        state.x[1:] += power * np.clip(np.log(scale), -60.0, 60.0)
         state.strength = np.clip(0.5 * newton.charges**2 @ c + problem.inert, 1e-8, 1.0)
     return state
