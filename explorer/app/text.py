@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import html
+import re
 
 # Control characters, and the marks that turn the direction of the text that follows them.
 _UNWANTED = (*range(32), *range(127, 160), *range(0x202A, 0x202F), *range(0x2066, 0x206A))
@@ -18,3 +19,27 @@ def plain(text: object, limit: int = 120) -> str:
 def esc(text: object, limit: int = 120) -> str:
     """``plain`` text with the characters HTML gives a meaning to escaped; for every sink that reads HTML."""
     return html.escape(plain(text, limit))
+
+
+_NAMED_AFTER = ("Langelier", "Larson", "Ryznar")
+
+
+def in_sentence(label: str) -> str:
+    """A label as it stands inside a sentence: small first letter unless a person, formula or sign (pH, HOCl)."""
+    first = label.split(" ", 1)[0]
+    if first in _NAMED_AFTER or any(letter.isupper() or not letter.isalpha() for letter in first[1:] if letter != "-"):
+        return label
+    return label[:1].lower() + label[1:]
+
+
+_SUBSCRIPT = str.maketrans("0123456789", "₀₁₂₃₄₅₆₇₈₉")
+_SUPERSCRIPT = str.maketrans("0123456789+-", "⁰¹²³⁴⁵⁶⁷⁸⁹⁺⁻")
+_CHARGED = re.compile(r"(.+?)([+-])(\d*)")
+
+
+def formula_text(name: str) -> str:
+    """A species name as chemists write it: "HCO3-" → "HCO₃⁻", "Ca+2" → "Ca²⁺"."""
+    charged = _CHARGED.fullmatch(name)
+    body, sign, number = charged.groups() if charged else (name, "", "")
+    written = re.sub(r"(?<=[A-Za-z)\]])\d+", lambda digits: digits[0].translate(_SUBSCRIPT), body)
+    return written + (number + sign).translate(_SUPERSCRIPT)

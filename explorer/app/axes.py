@@ -1,0 +1,145 @@
+"""What the plots need of arithmetic: calm axis limits, label places, gaps, number texts. Pure functions."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+
+import numpy as np
+
+MINUS = "−"
+_NICE = (1.0, 2.0, 2.5, 5.0, 10.0)
+_KEEP_ABOVE = 0.4  # limits stay while the data fill at least this part of them
+
+Limits = tuple[float, float]
+
+
+def nice_step(span: float, intervals: int = 4) -> float:
+    """Smallest step of the form 1, 2, 2.5 or 5 × 10ⁿ that covers ``span`` in ``intervals`` steps."""
+    raw = span / intervals
+    power = 10.0 ** math.floor(math.log10(raw))
+    return next(factor * power for factor in _NICE if factor * power >= raw * (1 - 1e-9))
+
+
+def outward(low: float, high: float) -> Limits:
+    """Limits snapped outwards to multiples of a nice step; ``low < high``."""
+    step = nice_step(high - low)
+    return math.floor(low / step + 1e-9) * step, math.ceil(high / step - 1e-9) * step
+
+
+def steady_limits(
+    values: Sequence[float] | np.ndarray,
+    previous: Limits | None = None,
+    least_span: float = 1.0,
+    marks: Sequence[float] = (),
+) -> Limits:
+    """Axis limits that do not dance while the data move a little.
+
+    Parameters
+    ----------
+    values
+        Everything drawn along the axis, any shape, nan ignored.
+    previous
+        Limits in use; kept while the data stay inside and fill at least 40 % of them.
+    least_span
+        The axis never spans less, so that rounding noise does not look like a curve.
+    marks
+        Target bounds worth seeing; taken in unless they would squeeze the data to under a third of the axis.
+
+    Returns
+    -------
+    tuple
+        (low, high) with low < high; ``previous`` or (0, least_span) when there are no data.
+    """
+    array = np.asarray(values, float)
+    finite = array[np.isfinite(array)]
+    if finite.size == 0:
+        return previous or (0.0, least_span)
+    low, high = float(finite.min()), float(finite.max())
+    span = max(high - low, least_span)
+    for mark in sorted(marks, key=lambda mark: max(low - mark, mark - high)):
+        wider = max(high, mark) - min(low, mark)
+        if wider <= 3 * span:
+            low, high = min(low, mark), max(high, mark)
+    if high - low < least_span:
+        middle, floor_at_zero = (low + high) / 2, low >= 0
+        low, high = middle - least_span / 2, middle + least_span / 2
+        if floor_at_zero and low < 0:
+            low, high = 0.0, least_span
+    if previous is not None:
+        width = previous[1] - previous[0]
+        slack = 1e-9 * width
+        if previous[0] - slack <= low and high <= previous[1] + slack and high - low >= _KEEP_ABOVE * width:
+            return previous
+    return outward(low, high)
+
+
+def spread(places: Sequence[float], gap: float, low: float, high: float) -> list[float]:
+    """Label places moved apart to at least ``gap``, in the same order, inside ``low`` … ``high`` if they fit.
+
+    Each place moves as little as the others allow: overlapping labels share their middle.
+    """
+    order = sorted(range(len(places)), key=lambda index: places[index])
+    groups: list[list[float]] = []  # [sum of wanted tops, count]
+    for position, index in enumerate(order):
+        groups.append([places[index] - gap * position, 1.0])
+        while len(groups) > 1 and groups[-2][0] / groups[-2][1] > groups[-1][0] / groups[-1][1]:
+            total, count = groups.pop()
+            groups[-1][0] += total
+            groups[-1][1] += count
+    room = high - gap * max(0, len(places) - 1)
+    moved, position = [0.0] * len(places), 0
+    for total, count in groups:
+        base = min(max(total / count, low), max(room, low))
+        for _ in range(int(count)):
+            moved[order[position]] = base + gap * position
+            position += 1
+    return moved
+
+
+def gaps(x: np.ndarray, reasons: np.ndarray) -> list[tuple[float, float, str]]:
+    """Stretches of ``x`` that could not be solved: (from, to, reason), half a step wider than their points.
+
+    ``reasons`` holds "" where the point was solved.
+    """
+    edges = np.concatenate([[x[0]], (x[1:] + x[:-1]) / 2, [x[-1]]])
+    found: list[tuple[float, float, str]] = []
+    for index, reason in enumerate(str(reason) for reason in reasons):
+        if not reason:
+            continue
+        start, stop = float(edges[index]), float(edges[index + 1])
+        if found and found[-1][1] == start and found[-1][2] == reason:
+            start = found.pop()[0]
+        found.append((start, stop, reason))
+    return found
+
+
+def number_text(value: float, digits: int, signed: bool = False) -> str:
+    """``value`` with ``digits`` decimals and a real minus; "–" where there is no value.
+
+    signed: positive values carry a plus. A value that rounds to zero has no sign.
+    """
+    if not math.isfinite(value):
+        return "–"
+    text = f"{abs(value):.{digits}f}"
+    if not float(text):
+        return text
+    return (MINUS if value < 0 else "+" if signed else "") + text
+
+
+def short_number(value: float) -> str:
+    """A bound as people write it: no trailing zeros, real minus."""
+    text = f"{abs(value):.6g}"
+    return (MINUS if value < 0 and float(text) else "") + text
+
+
+def range_text(low: float | None, high: float | None, unit: str = "") -> str:
+    """A target in words: "7.4 to 8.5", "at least 0.3", "at most 50 mg/L"."""
+    after = f" {unit}" if unit else ""
+    if low is not None and high is not None:
+        return f"{short_number(low)} to {short_number(high)}{after}"
+    if low is not None:
+        return f"at least {short_number(low)}{after}"
+    if high is not None:
+        return f"at most {short_number(high)}{after}"
+    return "no bounds"

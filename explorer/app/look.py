@@ -1,0 +1,181 @@
+"""The look in one place: colours, page and view styles, Bokeh themes, line colours, dashes and markers.
+
+A palette names each colour by what it means. The page reads it as CSS variables (``--ink``, ``--accent`` …),
+which reach into every shadow root; plots, being canvases, get it through :func:`bokeh_theme` and the columns of
+their sources. Text colours keep a contrast of at least 4.5:1 on ``card`` in both palettes (tested).
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, fields
+from pathlib import Path
+from typing import Any
+
+from bokeh.themes import Theme
+
+FOLDER = Path(__file__).parent
+
+FONT = 'system-ui, -apple-system, "Segoe UI", Roboto, "DejaVu Sans", sans-serif'
+
+
+@dataclass(frozen=True)
+class Palette:
+    """Colours by meaning. ``series`` orders line and label colours so that neighbours stay apart for colour-blind
+    readers; each comes with a dash of its own (``DASHES``), so colour never speaks alone."""
+
+    scheme: str
+    bg: str
+    rail: str
+    card: str
+    field: str
+    ink: str
+    soft: str
+    line: str
+    grid: str
+    track: str
+    bar: str
+    bar_ink: str
+    accent: str
+    accent_soft: str
+    on_accent: str
+    ok: str
+    ok_soft: str
+    warn: str
+    warn_soft: str
+    bad: str
+    bad_soft: str
+    shadow: str
+    series: tuple[str, ...]
+    waters: tuple[str, ...]
+
+
+LIGHT = Palette(
+    scheme="light",
+    bg="#f3f4f1",
+    rail="#fafbf9",
+    card="#ffffff",
+    field="#ffffff",
+    ink="#1c2b30",
+    soft="#56666b",
+    line="#d9dedb",
+    grid="#eceeec",
+    track="#e4e9e6",
+    bar="#16323a",
+    bar_ink="#ffffff",
+    accent="#0b6e69",
+    accent_soft="#e2f0ee",
+    on_accent="#ffffff",
+    ok="#1d7a46",
+    ok_soft="#bfe0cc",
+    warn="#a34a08",
+    warn_soft="#fbeedd",
+    bad="#b3261e",
+    bad_soft="#fbe7e5",
+    shadow="rgba(20, 40, 45, .16)",
+    series=("#0072b2", "#b84f00", "#7b4ea3", "#007d5c", "#a8497d", "#8a6400", "#3f6fd1", "#6b5d4f"),
+    waters=("#0072b2", "#d98c00", "#7b4ea3", "#009e73", "#cc5f9c", "#56a4d8", "#a0522d", "#6b7a80"),
+)
+
+DARK = Palette(
+    scheme="dark",
+    bg="#101719",
+    rail="#141c1f",
+    card="#192327",
+    field="#10191c",
+    ink="#e7edec",
+    soft="#a3b2b4",
+    line="#304046",
+    grid="#263338",
+    track="#304046",
+    bar="#0b2228",
+    bar_ink="#f2f6f5",
+    accent="#4fb8ae",
+    accent_soft="#1d3f3d",
+    on_accent="#08211f",
+    ok="#5cc98a",
+    ok_soft="#2c6647",
+    warn="#eda75f",
+    warn_soft="#3d2f1c",
+    bad="#f38d85",
+    bad_soft="#43211f",
+    shadow="rgba(0, 0, 0, .5)",
+    series=("#56b4e9", "#ff9457", "#bd9be6", "#43c79d", "#e79cc6", "#e8b93f", "#8fa8ff", "#c7b299"),
+    waters=("#3f9fdb", "#e5a32e", "#a983d1", "#2fb58c", "#d981b3", "#7cc3ee", "#c98a63", "#93a3a8"),
+)
+
+PALETTES = {palette.scheme: palette for palette in (LIGHT, DARK)}
+
+DASHES: tuple[list[int], ...] = ([], [8, 4], [2, 3], [9, 3, 2, 3], [14, 4], [5, 2, 1, 2, 1, 2], [4, 2], [1, 5])
+"""Dash of the n-th line of a plot, in pixels on and off; [] is solid."""
+
+LINE_WIDTH = 2.2
+CROSSING_MARKER = "diamond"
+POINT_MARKER = "circle"
+
+
+def water_colour(index: int) -> str:
+    """CSS colour of the swatch of the water at ``index`` (0-based; repeats after eight)."""
+    return f"var(--water-{index % len(LIGHT.waters)})"
+
+
+def css_variables(palette: Palette) -> str:
+    """The palette as CSS declarations, with the variables Panel's own widgets read."""
+    values = {
+        field.name.replace("_", "-"): getattr(palette, field.name)
+        for field in fields(palette)
+        if field.name not in {"scheme", "series", "waters"}
+    }
+    values |= {f"water-{index}": colour for index, colour in enumerate(palette.waters)}
+    values |= {
+        "panel-background-color": palette.bg,
+        "panel-on-background-color": palette.ink,
+        "panel-surface-color": palette.card,
+        "panel-on-surface-color": palette.ink,
+        "panel-border-color": palette.line,
+        "panel-primary-color": palette.accent,
+        "font": FONT,
+    }
+    return f"color-scheme:{palette.scheme};" + "".join(f"--{name}:{value};" for name, value in values.items())
+
+
+def page_css() -> str:
+    """Styles of the page itself: both palettes and the grid. Dark counts once the page says ``data-theme``."""
+    return (
+        f":root{{{css_variables(LIGHT)}}}\n:root[data-theme=dark]{{{css_variables(DARK)}}}\n"
+        + (FOLDER / "look.css").read_text(encoding="utf-8")
+    )
+
+
+VIEW_CSS = (FOLDER / "views.css").read_text(encoding="utf-8")
+"""Styles of the views, handed to each as a stylesheet because page styles stop at a shadow root."""
+
+
+def bokeh_theme(palette: Palette) -> Theme:
+    """Bokeh defaults of a palette. Applies to what a figure does not set itself."""
+    attrs: dict[str, dict[str, Any]] = {
+        "Plot": {
+            "background_fill_color": palette.card,
+            "border_fill_color": palette.card,
+            "outline_line_color": None,
+        },
+        "Axis": {
+            "axis_line_color": palette.line,
+            "major_tick_line_color": None,
+            "minor_tick_line_color": None,
+            "major_label_text_color": palette.soft,
+            "major_label_text_font": FONT,
+            "major_label_text_font_size": "11px",
+            "major_label_standoff": 6,
+            "axis_label_text_color": palette.soft,
+            "axis_label_text_font": FONT,
+            "axis_label_text_font_size": "11.5px",
+            "axis_label_text_font_style": "normal",
+            "axis_label_standoff": 3,
+        },
+        "Grid": {"grid_line_color": palette.grid},
+        "CrosshairTool": {"line_color": palette.soft, "line_alpha": 0.5},
+    }
+    return Theme(json={"attrs": attrs})
+
+
+THEMES = {palette.scheme: bokeh_theme(palette) for palette in (LIGHT, DARK)}

@@ -1,0 +1,275 @@
+"""What the sweep plots show, as plain data: no Bokeh here. ``plots`` draws it."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from explorer.app.axes import (
+    Limits,
+    gaps,
+    number_text,
+    range_text,
+    short_number,
+    steady_limits,
+)
+from explorer.app.text import formula_text, in_sentence
+
+MOST_LINES = 6
+"""Species drawn one by one; the rest of a family is drawn as their sum."""
+
+OTHERS = "others"
+
+
+@dataclass(frozen=True)
+class Line:
+    """One curve: ``name`` labels its end ("" for a plot with one curve), ``y`` has nan where nothing was solved."""
+
+    name: str
+    y: np.ndarray
+
+
+@dataclass(frozen=True)
+class Mark:
+    """A place on the plot worth a sign: where the curve crosses a bound of the target."""
+
+    x: float
+    y: float
+    text: str
+
+
+@dataclass(frozen=True)
+class Picture:
+    """Everything one plot shows."""
+
+    title: str
+    note: str
+    x: np.ndarray
+    lines: tuple[Line, ...]
+    limits: Limits
+    digits: int
+    unit: str = ""
+    signed: bool = False
+    band: tuple[float | None, float | None] | None = None
+    marks: tuple[Mark, ...] = ()
+    gaps: tuple[tuple[float, float, str], ...] = ()
+    words: str = ""
+    empty: str = ""
+
+
+@dataclass(frozen=True)
+class Axis:
+    """The dial along x: name, unit, and decimals worth printing."""
+
+    name: str
+    unit: str
+    digits: int
+
+    def at(self, x: float) -> str:
+        return number_text(x, self.digits) + (f" {self.unit}" if self.unit else "")
+
+
+def axis(name: str, unit: str, x: np.ndarray) -> Axis:
+    """Axis of a sweep; decimals follow from the range so that two neighbouring points differ."""
+    span = abs(float(x[-1] - x[0])) or 1.0
+    return Axis(name, unit, int(min(6, max(0, 2 - np.floor(np.log10(span) + 1e-9)))) if span < 100 else 0)
+
+
+def band_of(targets: Sequence[tuple[float | None, float | None]]) -> tuple[float | None, float | None] | None:
+    """The band that meets all of ``targets`` (low, high); None without targets or when they exclude each other."""
+    lows = [low for low, _ in targets if low is not None]
+    highs = [high for _, high in targets if high is not None]
+    low, high = max(lows, default=None), min(highs, default=None)
+    if (low is None and high is None) or (low is not None and high is not None and low > high):
+        return None
+    return low, high
+
+
+def crossing_marks(x: np.ndarray, y: np.ndarray, bounds: Sequence[float], along: Axis) -> tuple[Mark, ...]:
+    """Where the curve passes a bound, by linear interpolation between neighbouring solved points."""
+    marks = []
+    for bound in sorted(set(bounds)):
+        away = y - bound
+        with np.errstate(invalid="ignore"):
+            passing = np.nonzero(((away[:-1] < 0) & (away[1:] >= 0)) | ((away[:-1] >= 0) & (away[1:] < 0)))[0]
+        for index in passing:
+            part = away[index] / (away[index] - away[index + 1])
+            place = float(x[index] + part * (x[index + 1] - x[index]))
+            marks.append(Mark(place, bound, along.at(place)))
+    return tuple(marks)
+
+
+def least_span(digits: int, limit: float) -> float:
+    """Smallest span an axis may show: rounding noise stays flat, small numbers still fill the plot."""
+    return max(20 * 10.0**-digits, 1e-6 * abs(limit), 1e-12)
+
+
+@dataclass(frozen=True)
+class Quantity:
+    """A readout as the plots name it."""
+
+    label: str
+    unit: str
+    digits: int
+    signed: bool = False
+
+
+def readout_picture(
+    quantity: Quantity,
+    x: np.ndarray,
+    y: np.ndarray,
+    along: Axis,
+    targets: Sequence[tuple[float | None, float | None]] = (),
+    reasons: np.ndarray | None = None,
+    previous: Limits | None = None,
+) -> Picture:
+    """One readout against the swept dial, with its target band and the places where it crosses a bound."""
+    y = np.asarray(y, float)
+    bounds = [bound for target in targets for bound in target if bound is not None]
+    finite = y[np.isfinite(y)]
+    largest = float(np.abs(finite).max()) if finite.size else 1.0
+    limits = steady_limits(y, previous, least_span(quantity.digits, largest), bounds)
+    marks = crossing_marks(x, y, bounds, along)
+    notes = [quantity.unit] if quantity.unit else []
+    if targets:
+        band = band_of(targets)
+        notes.append("target " + range_text(*band) if band else "targets exclude each other")
+    missing = _gaps(x, y, reasons)
+    return Picture(
+        title=quantity.label,
+        note=" · ".join(notes),
+        x=x,
+        lines=(Line("", y),),
+        limits=limits,
+        digits=quantity.digits,
+        unit=quantity.unit,
+        signed=quantity.signed,
+        band=band_of(targets),
+        marks=marks,
+        gaps=missing,
+        words=_words(quantity, x, y, along, marks, missing),
+        empty="" if finite.size else _first_reason(missing),
+    )
+
+
+def species_picture(
+    family: str,
+    members: Mapping[str, np.ndarray],
+    x: np.ndarray,
+    along: Axis,
+    logarithmic: bool = False,
+    reasons: np.ndarray | None = None,
+    previous: Limits | None = None,
+) -> Picture:
+    """A family of species against the swept dial: percent of the family's sum, or log₁₀ of mol/L.
+
+    ``members`` maps species names to concentrations, mol/L, of the shape of ``x``.
+    """
+    amounts = {formula_text(name): np.asarray(amount, float) for name, amount in members.items()}
+    total = sum(amounts.values(), np.zeros(len(x)))
+    present = bool(np.any(total[np.isfinite(total)] > 0)) if amounts else False
+    label = f"{family[:1].upper()}{family[1:]} species"
+    missing = _gaps(x, total, reasons) if amounts else ()
+    note = "log₁₀ of mol/L" if logarithmic else "% of the family, by amount of substance"
+    if not present:
+        return Picture(label, note, x, (), previous or (0.0, 1.0), 0, gaps=missing,
+                       words=f"{label}: none in this water.", empty=f"No {family} in this water.")
+    lines: list[Line] = []
+    with np.errstate(divide="ignore", invalid="ignore"):
+        for name, amount in _foremost(amounts).items():
+            y = np.log10(amount) if logarithmic else 100.0 * amount / total
+            lines.append(Line(name, np.where(np.isfinite(y), y, np.nan)))
+    if logarithmic:
+        ys = np.array([line.y for line in lines])
+        top = np.nanmax(ys)
+        # A species of no account must not stretch the axis over tens of decades.
+        limits = steady_limits(ys[np.isfinite(ys) & (ys > top - 8)], previous, 1.0)
+    else:
+        limits = (0.0, 100.0)
+    ends = ", ".join(f"{line.name} {_span_words(line.y, 1 if logarithmic else 0)}" for line in lines)
+    return Picture(label, note, x, tuple(lines), limits, 2 if logarithmic else 1,
+                   unit="" if logarithmic else "%", gaps=missing,
+                   words=f"{label}, {note}, against {in_sentence(along.name)}: {ends}.")
+
+
+def _foremost(amounts: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
+    """The species worth a line of their own, largest first by their greatest amount; the others summed."""
+    def greatest(name: str) -> float:
+        finite = amounts[name][np.isfinite(amounts[name])]
+        return float(finite.max()) if finite.size else 0.0
+
+    names = sorted(amounts, key=greatest, reverse=True)
+    top = greatest(names[0])
+    kept = [name for name in names[:MOST_LINES] if greatest(name) >= 1e-12 * top]
+    rest = [name for name in names if name not in kept]
+    chosen = {name: amounts[name] for name in kept}
+    if len(names) > MOST_LINES and rest:
+        chosen[OTHERS] = np.sum([amounts[name] for name in rest], axis=0)
+    return chosen
+
+
+def _gaps(x: np.ndarray, y: np.ndarray, reasons: np.ndarray | None) -> tuple[tuple[float, float, str], ...]:
+    unsolved = ~np.isfinite(y)
+    if not unsolved.any():
+        return ()
+    given = np.array(["" if reason is None else str(reason) for reason in reasons]) if reasons is not None else None
+    texts = [
+        ((given[index] if given is not None else "") or "no solution") if unsolved[index] else ""
+        for index in range(len(x))
+    ]
+    return tuple(gaps(x, np.array(texts)))
+
+
+def _first_reason(missing: tuple[tuple[float, float, str], ...]) -> str:
+    return missing[0][2] if missing else "no solution"
+
+
+def _span_words(y: np.ndarray, digits: int) -> str:
+    finite = y[np.isfinite(y)]
+    if not finite.size:
+        return "not solved"
+    return f"from {number_text(float(finite[0]), digits)} to {number_text(float(finite[-1]), digits)}"
+
+
+def _words(
+    quantity: Quantity,
+    x: np.ndarray,
+    y: np.ndarray,
+    along: Axis,
+    marks: tuple[Mark, ...],
+    missing: tuple[tuple[float, float, str], ...],
+) -> str:
+    """The plot in one or two sentences, for screen readers."""
+    unit = f" {quantity.unit}" if quantity.unit else ""
+    solved = np.isfinite(y)
+    if not solved.any():
+        return f"{quantity.label} could not be calculated along this sweep: {_first_reason(missing)}."
+    first, last = np.nonzero(solved)[0][[0, -1]]
+    low, high = int(np.nanargmin(y)), int(np.nanargmax(y))
+
+    def at(index: int) -> str:
+        return f"{number_text(float(y[index]), quantity.digits)} at {along.at(float(x[index]))}"
+
+    text = f"{quantity.label}{',' + unit if unit else ''} against {in_sentence(along.name)}: {at(first)}, {at(last)}"
+    if low not in (first, last):
+        text += f", lowest {at(low)}"
+    if high not in (first, last):
+        text += f", highest {at(high)}"
+    for mark in marks:
+        text += f", crosses {short_number(mark.y)} at {mark.text}"
+    for start, stop, reason in missing:
+        text += f"; no result from {along.at(start)} to {along.at(stop)}: {reason}"
+    return text + "."
+
+
+@dataclass
+class Memory:
+    """Axis limits in use, by what the plot shows; so that limits stay while a slider moves."""
+
+    limits: dict[str, Limits] = field(default_factory=dict)
+
+    def keep(self, name: str, picture: Picture) -> Picture:
+        self.limits[name] = picture.limits
+        return picture

@@ -1,0 +1,287 @@
+"""Linked plots over one swept dial: figures are built once, afterwards only columns and ranges change.
+
+The operating point is one editable span shared by all plots. Curves come as ``multi_line`` rows, so that more
+curves never mean more models. Labels that follow the pointer, and the rings on the operating point, live in the
+page alone (``sweep.js``): moving the pointer costs no message to the server.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import replace
+from typing import Any
+
+from bokeh.events import MouseLeave, MouseMove, Pan, PanEnd, PanStart, Tap
+from bokeh.models import (
+    BasicTicker,
+    BoxAnnotation,
+    ColumnDataSource,
+    CrosshairTool,
+    CustomJS,
+    CustomJSTickFormatter,
+    PlainText,
+    Range1d,
+    Span,
+)
+from bokeh.plotting import figure
+
+from explorer.app.axes import number_text, spread
+from explorer.app.look import (
+    CROSSING_MARKER,
+    DASHES,
+    FOLDER,
+    FONT,
+    LIGHT,
+    LINE_WIDTH,
+    POINT_MARKER,
+    Palette,
+)
+from explorer.app.pictures import Axis, Picture
+
+_LABEL_GAP = 0.085  # least distance of two end labels, as part of the plot's height
+_SCRIPT = (FOLDER / "sweep.js").read_text(encoding="utf-8")
+_TICKS = """
+const text = Math.abs(tick) < 1e-12 ? "0" : String(Number(Math.abs(tick).toPrecision(6)))
+return (tick < 0 && text !== "0" ? "−" : "") + text + after
+"""
+
+
+def _ticks(after: str = "") -> CustomJSTickFormatter:
+    return CustomJSTickFormatter(code=_TICKS, args={"after": after})
+
+
+def _in_page(**columns: list[Any]) -> ColumnDataSource:
+    """A source that only the page writes; nothing of it travels."""
+    source = ColumnDataSource(data=columns)
+    source.syncable = False
+    return source
+
+
+class LinePlot:
+    """One figure: curves, target band, crossings, gaps, end labels, operating point."""
+
+    def __init__(self, name: str, x_range: Range1d, point: Span, cross: Span, labels_right: bool, x_label: bool) -> None:
+        self.name = name
+        self.picture: Picture | None = None
+        self.palette = LIGHT
+        self.y_range = Range1d(0, 1)
+        self.has_x_label = x_label
+        self.lines = ColumnDataSource(
+            data={key: [] for key in ("xs", "ys", "colour", "dash", "label", "digits", "signed")}
+        )
+        self.ends = ColumnDataSource(data={"x": [], "y": [], "text": [], "colour": []})
+        self.crossings = ColumnDataSource(data={"x": [], "y": [], "text": [], "dx": [], "align": []})
+        self.gaps = ColumnDataSource(data={"x0": [], "x1": [], "x": [], "text": []})
+        self.rings = _in_page(x=[], y=[], colour=[])
+        self.labels = _in_page(x=[], y=[], text=[], colour=[], dx=[], align=[])
+        self.figure = self._build(x_range, point, cross, labels_right)
+
+    def _build(self, x_range: Range1d, point: Span, cross: Span, labels_right: bool) -> figure:
+        fig = figure(
+            name=self.name, x_range=x_range, y_range=self.y_range, tools=[], toolbar_location=None,
+            sizing_mode="stretch_both", min_height=120, min_border_left=54, min_border_top=6,
+            min_border_right=74 if labels_right else 20, min_border_bottom=26, output_backend="canvas",
+            html_attributes={"role": "img", "aria-label": self.name},
+        )
+        fig.xgrid.grid_line_color = None
+        fig.xaxis.formatter, fig.yaxis.formatter = _ticks(), _ticks()
+        fig.yaxis.ticker = BasicTicker(desired_num_ticks=5)
+        fig.xaxis.ticker = BasicTicker(desired_num_ticks=6)
+        fig.yaxis.axis_line_color = None
+        self.band = BoxAnnotation(level="underlay", fill_alpha=0.1, line_alpha=0.35, line_dash=[2, 2], visible=False)
+        fig.add_layout(self.band)
+        self.gap = fig.vstrip(
+            x0="x0", x1="x1", source=self.gaps, level="underlay", line_alpha=0, fill_alpha=0.5,
+            hatch_pattern="right_diagonal_line", hatch_scale=8, hatch_weight=0.6, hatch_alpha=0.5,
+        )
+        self.curve = fig.multi_line(
+            xs="xs", ys="ys", source=self.lines, line_color="colour", line_dash="dash", line_width=LINE_WIDTH,
+            line_join="round",
+        )
+        self.crossing = fig.scatter(
+            x="x", y="y", source=self.crossings, marker=CROSSING_MARKER, size=9, line_width=1.2, level="annotation",
+        )
+        self.crossing_text = fig.text(
+            x="x", y="y", text="text", source=self.crossings, text_font=FONT, text_font_size="11px", x_offset="dx",
+            y_offset=-5, text_align="align", text_baseline="bottom", level="annotation",
+        )
+        self.end = fig.text(
+            x="x", y="y", text="text", source=self.ends, text_color="colour", text_font=FONT, x_offset=7,
+            text_font_size="12px", text_baseline="middle", level="overlay",
+        )
+        fig.add_layout(point)
+        self.ring = fig.scatter(
+            x="x", y="y", source=self.rings, marker=POINT_MARKER, size=9, line_width=LINE_WIDTH, line_color="colour",
+            level="overlay",
+        )
+        self.label = fig.text(
+            x="x", y="y", text="text", source=self.labels, text_color="colour", text_font=FONT,
+            text_font_size="12px", text_font_style="bold", x_offset="dx", text_align="align", text_baseline="middle",
+            background_fill_alpha=0.88, padding=3, border_radius=3, level="overlay",
+        )
+        fig.add_tools(CrosshairTool(overlay=[cross, Span(dimension="width", line_alpha=0)]))
+        return fig
+
+    # ---- drawing -------------------------------------------------------------------------------------
+
+    def show(self, picture: Picture, along: Axis) -> None:
+        """Bring the figure to ``picture``; call inside one hold for all plots."""
+        self.picture = picture
+        low, high = picture.limits
+        if (self.y_range.start, self.y_range.end) != (low, high):
+            self.y_range.update(start=low, end=high)
+        self.band.visible = picture.band is not None
+        if picture.band is not None:
+            bottom, top = picture.band
+            if (self.band.bottom, self.band.top) != (bottom, top):
+                self.band.update(bottom=bottom, top=top)
+        self._draw()
+        if self.has_x_label:
+            label = f"{along.name}, {along.unit}" if along.unit else along.name
+            if getattr(self.figure.xaxis[0].axis_label, "text", None) != label:
+                self.figure.xaxis[0].axis_label = PlainText(label)
+        self.figure.html_attributes = {"role": "img", "aria-label": picture.words}
+
+    def restyle(self, palette: Palette) -> None:
+        """Take the colours of another palette."""
+        self.palette = palette
+        self.band.update(fill_color=palette.ok, line_color=palette.ok)
+        self.gap.glyph.update(fill_color=palette.track, hatch_color=palette.soft)
+        self.crossing.glyph.update(fill_color=palette.card, line_color=palette.ink)
+        self.crossing_text.glyph.update(text_color=palette.soft)
+        self.ring.glyph.update(fill_color=palette.card)
+        self.label.glyph.update(background_fill_color=palette.card)
+        if self.picture is not None:
+            self._draw()
+
+    def _draw(self) -> None:
+        picture, palette = self.picture, self.palette
+        assert picture is not None
+        count = len(picture.lines)
+        colours = [palette.accent] if count == 1 else [palette.series[i % len(palette.series)] for i in range(count)]
+        self.lines.data = {
+            "xs": [picture.x] * count,
+            "ys": [line.y for line in picture.lines],
+            "colour": colours,
+            "dash": [DASHES[i % len(DASHES)] for i in range(count)],
+            "label": [line.name for line in picture.lines],
+            "digits": [picture.digits] * count,
+            "signed": [picture.signed] * count,
+        }
+        self.ends.data = self._end_labels(picture, colours)
+        width = float(picture.x[-1] - picture.x[0]) or 1.0
+        on_left = [(mark.x - float(picture.x[0])) / width > 0.8 for mark in picture.marks]
+        self.crossings.data = {
+            "x": [mark.x for mark in picture.marks],
+            "y": [mark.y for mark in picture.marks],
+            "text": [mark.text for mark in picture.marks],
+            "dx": [-6 if left else 6 for left in on_left],
+            "align": ["right" if left else "left" for left in on_left],
+        }
+        self.gaps.data = {
+            "x0": [gap[0] for gap in picture.gaps],
+            "x1": [gap[1] for gap in picture.gaps],
+            "x": [(gap[0] + gap[1]) / 2 for gap in picture.gaps],
+            "text": [gap[2] for gap in picture.gaps],
+        }
+
+    def _end_labels(self, picture: Picture, colours: list[str]) -> dict[str, list[Any]]:
+        """Names at the right ends of the curves, moved apart where they would overlap."""
+        low, high = picture.limits
+        ends: list[tuple[float, float, str, str]] = []
+        for line, colour in zip(picture.lines, colours, strict=True):
+            solved = line.y[line.y == line.y]
+            if line.name and solved.size:
+                ends.append((float(picture.x[-1]), min(max(float(solved[-1]), low), high), line.name, colour))
+        places = spread([end[1] for end in ends], _LABEL_GAP * (high - low), low, high)
+        return {
+            "x": [end[0] for end in ends],
+            "y": places,
+            "text": [end[2] for end in ends],
+            "colour": [end[3] for end in ends],
+        }
+
+
+class LinkedPlots:
+    """Several :class:`LinePlot` over one x axis, crosshair and operating point.
+
+    ``turned`` is called with the place the operating point was dragged or tapped to, in the dial's unit.
+    """
+
+    def __init__(self, names: list[str], turned: Callable[[float], None]) -> None:
+        self.turned = turned
+        self.x_range = Range1d(0, 1)
+        self.point = Span(
+            name="operating-point", dimension="height", location=0, editable=True, line_width=1.6, line_dash=[2, 3],
+            level="annotation",
+        )
+        cross = Span(dimension="height", line_width=1, line_alpha=0.6)
+        self.cross = cross
+        self.plots = {
+            name: LinePlot(name, self.x_range, self.point, cross, labels_right=index % 2 == 1, x_label=index >= 2)
+            for index, name in enumerate(names)
+        }
+        self._quiet = False
+        self.point.on_change("location", self._moved)
+        self._wire()
+
+    def _wire(self) -> None:
+        parts = [
+            {"lines": plot.lines, "rings": plot.rings, "labels": plot.labels, "y_range": plot.y_range,
+             "figure": plot.figure}
+            for plot in self.plots.values()
+        ]
+        script = CustomJS(args={"parts": parts, "point": self.point, "x_range": self.x_range}, code=_SCRIPT)
+        for plot in self.plots.values():
+            for event in (MouseMove, MouseLeave, Tap, PanStart, Pan, PanEnd):
+                plot.figure.js_on_event(event, script)
+            plot.lines.js_on_change("data", script)
+            plot.figure.js_on_change("inner_height", script)
+        self.point.js_on_change("location", script)
+        self.x_range.js_on_change("end", script)
+
+    def show(self, pictures: dict[str, Picture], along: Axis) -> None:
+        """Show all pictures (by plot name); they share ``x``."""
+        x = next(iter(pictures.values())).x
+        start, end = float(x[0]), float(x[-1])
+        if (self.x_range.start, self.x_range.end) != (start, end):
+            self.x_range.update(start=start, end=end)
+        for name, picture in pictures.items():
+            self.plots[name].show(picture, along)
+
+    def set_unit(self, unit: str) -> None:
+        """Unit behind every tick of the x axis where it is one sign wide; the axis label names it anyway."""
+        after = f" {unit}" if unit in {"%", "°C", "°F"} else ""
+        for plot in self.plots.values():
+            if plot.figure.xaxis[0].formatter.args["after"] != after:
+                plot.figure.xaxis[0].formatter = _ticks(after)
+
+    def set_point(self, x: float, step: float) -> None:
+        """Move the operating point unless it is there already, to within half a step of the dial."""
+        if self.point.location is None or abs(float(self.point.location) - x) > step / 2:
+            self._quiet = True
+            try:
+                self.point.location = x
+            finally:
+                self._quiet = False
+
+    def restyle(self, palette: Palette) -> None:
+        """Take the colours of another palette."""
+        self.point.line_color = palette.ink
+        self.cross.line_color = palette.soft
+        for plot in self.plots.values():
+            plot.restyle(palette)
+
+    def _moved(self, attr: str, old: Any, new: Any) -> None:
+        if not self._quiet and new is not None:
+            self.turned(float(new))
+
+
+def pinned(picture: Picture, limits: tuple[float, float]) -> Picture:
+    """The same picture on other axis limits."""
+    return replace(picture, limits=limits)
+
+
+def value_label(value: float, picture: Picture) -> str:
+    """A value as the labels in the page print it."""
+    return number_text(value, picture.digits, picture.signed)
