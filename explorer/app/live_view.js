@@ -47,6 +47,7 @@ export function render({ model, el }) {
     if (name === "text") element.textContent = value ?? ""
     else if (name === "checked") element.checked = Boolean(value)
     else if (name === "colour") element.style.setProperty("--colour", value ?? "")
+    else if (name.startsWith("--")) element.style.setProperty(name, value ?? "")
     else if (name === "value") element._late = value ?? ""
     else if (!ATTRIBUTE.test(name)) console.warn(`attribute ${name} is not shown`)
     else if (value === null || value === undefined) element.removeAttribute(name)
