@@ -212,9 +212,9 @@ def _inherit(data: dict[str, Any]) -> dict[str, Any]:
             if setting.name in data:
                 value = _number(data.pop(setting.name), setting.name, setting.low, setting.high)
                 base = setting.build(value)
-    for field in data:
-        if field not in allowed:
-            raise ChemicalError(field, f"is not a field of a chemical; allowed: {', '.join(sorted(allowed))}")
+    for given in data:
+        if given not in allowed:
+            raise ChemicalError(given, f"is not a field of a chemical; allowed: {', '.join(sorted(allowed))}")
     return {**base, **data}
 
 

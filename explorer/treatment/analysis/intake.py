@@ -11,10 +11,10 @@ from dataclasses import dataclass, field
 from types import MappingProxyType
 
 import numpy as np
-from explorer.chemistry.carbonate import complete
 from numpy.typing import ArrayLike
 
 from explorer.chemistry import System
+from explorer.chemistry.carbonate import complete
 from explorer.treatment.analysis.measured import ANALYSIS_KEYS, CARBONATE_KEYS, AnalysisError, Measured
 from explorer.treatment.notes import Note
 from explorer.treatment.units import UnitError, Units, find_unit, from_base, substance_units
