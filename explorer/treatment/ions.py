@@ -50,7 +50,7 @@ def charge_sums(solution: Solution) -> tuple[np.ndarray, np.ndarray]:
     return cations, cations - solution.charge
 
 
-def charge_balance(solution: Solution) -> np.ndarray:
+def balance_percent(solution: Solution) -> np.ndarray:
     """100 (cations − anions) / (cations + anions), percent; Standard Methods 1030E (from memory)."""
     cations, anions = charge_sums(solution)
     return 100 * (cations - anions) / (cations + anions)
