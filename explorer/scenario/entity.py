@@ -6,9 +6,8 @@ from typing import Any, ClassVar, Self
 import param
 
 from explorer.scenario.errors import ScenarioError, join, shown
-from explorer.scenario.fields import Field, Text, check_keys, object_fault, text_fault
+from explorer.scenario.fields import Field, Text, Value, check_keys, object_fault, text_fault
 from explorer.scenario.quantity import ordered
-
 
 OPTIONAL, REQUIRED = "optional", "required"
 
@@ -60,7 +59,8 @@ class Entity(param.Parameterized):
 
     def to_dict(self) -> dict[str, Any]:
         """JSON form: what the source wrote out, in its order, and whatever differs from the default."""
-        parts = dict(self.constants)
+        parts = {"id": None} if "id" in self.fields() else {}
+        parts |= self.constants
         for key, field in self.fields().items():
             value = getattr(self, key)
             if key in self._written or field.required or value != field.default:
@@ -107,22 +107,11 @@ def read_fields(fields: Mapping[str, Field], raw: Mapping[str, Any], path: str) 
             raise ScenarioError(where, f"null is not a value here; allowed {field.allowed}")
 
 
-class _Part(Field, param.Parameter):
+class _Part(Value):
     """Field made of entities of the class ``item``."""
 
-    __slots__ = ["item", "required"]
-    _slot_defaults = param.Parameter._slot_defaults | {"item": Entity, "required": False}
-
-    def __init__(
-        self,
-        default: Any = param.Undefined,
-        *,
-        item: Any = param.Undefined,
-        required: Any = param.Undefined,
-        **common: Any,
-    ) -> None:
-        self.item, self.required = item, required
-        super().__init__(default=default, **common)
+    __slots__ = ["item"]
+    _slot_defaults = Value._slot_defaults | {"item": Entity}
 
 
 class Child(_Part):
@@ -135,7 +124,9 @@ class Child(_Part):
         return "an object with named parts"
 
     def fault(self, value: Any) -> str:
-        return "" if isinstance(value, self.item) else f"{shown(value)} is not of the kind {self.item.__name__}"
+        return (
+            "" if isinstance(value, self.item) else f"{shown(value)} is not of the kind {self.item.__name__}"
+        )
 
     def read(self, raw: Any, path: str) -> Entity:
         return self.item.from_dict(raw, path)
@@ -152,10 +143,6 @@ class Children(_Part):
 
     __slots__ = ["most"]
     _slot_defaults = _Part._slot_defaults | {"most": 50}
-
-    def __init__(self, *, most: Any = param.Undefined, **common: Any) -> None:
-        self.most = most
-        super().__init__(**({"default": [], "instantiate": True} | common))
 
     @property
     def allowed(self) -> str:
@@ -185,9 +172,6 @@ class Table(_Part):
     """Entities by name."""
 
     __slots__ = []
-
-    def __init__(self, **common: Any) -> None:
-        super().__init__(**({"default": {}, "instantiate": True} | common))
 
     @property
     def allowed(self) -> str:

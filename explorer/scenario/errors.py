@@ -31,7 +31,9 @@ def join(path: str, key: str | int) -> str:
 
 def clipped(text: str) -> str:
     """A foreign text made fit for a sentence: no control characters, at most ``SHOWN_LENGTH`` long."""
-    clean = "".join("\ufffd" if unicodedata.category(character)[0] == "C" else character for character in text)
+    clean = "".join(
+        "\ufffd" if unicodedata.category(character)[0] == "C" else character for character in text
+    )
     return clean if len(clean) <= SHOWN_LENGTH else clean[: SHOWN_LENGTH - 1] + "…"
 
 

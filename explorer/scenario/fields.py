@@ -5,36 +5,54 @@ files, checking an edit, forms and dials all take what they need from that decla
 
 Every field offers
 
+====================  ==========================================================================
 ``fault(value)``      what is wrong with a value and what is allowed, "" when nothing is
 ``allowed``           the allowed values in words
 ``read(raw, path)``   the value from its JSON form; raises ScenarioError with the path
 ``write(value)``      the JSON form of a value
 ``duplicate(value)``  an independent copy of a value
+====================  ==========================================================================
 """
 
 import math
 import re
 import unicodedata
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from typing import Any
 
 import param
 
-from explorer.scenario.errors import ScenarioError, join, listed, shown, unknown
+from explorer.scenario.errors import ScenarioError, clipped, join, listed, shown, unknown
 
 LARGEST_NUMBER = 1e12
 """No quantity of the trade comes near it; keeps arithmetic finite whatever a file says."""
 
 NAME_LENGTH, TITLE_LENGTH, NOTE_LENGTH = 80, 200, 20_000
 
+Bounds = tuple[float | None, float | None] | None
+
 _OVERRIDING_DIRECTION = frozenset("\u202a\u202b\u202c\u202d\u202e\u2066\u2067\u2068\u2069")
 _ID = re.compile(r"[a-z][a-z0-9_-]*")
 
 
+Faults = Iterator[tuple[str, str]]
+
+
 class Field:
-    """What all declared parts have in common. Mixed into a Param class, which adds the slots."""
+    """What all declared parts have in common. Mixed into a Param class, which adds the slots.
+
+    Slots that a field adds to those of Param are keywords of its constructor, with the defaults of
+    ``_slot_defaults``. Every field has ``required``: whether a file must give it.
+    """
 
     __slots__ = ()
+
+    def __init__(self, default: Any = param.Undefined, **details: Any) -> None:
+        for slot in self._slot_defaults.keys() - param.String._slot_defaults.keys():
+            setattr(self, slot, details.pop(slot, param.Undefined))
+        if isinstance(default, list | dict):
+            details["instantiate"] = True
+        super().__init__(default=default, **details)
 
     @property
     def allowed(self) -> str:
@@ -43,93 +61,130 @@ class Field:
 
     def fault(self, value: Any) -> str:
         """What is wrong with ``value`` and what is allowed, "" when it can be taken."""
-        raise NotImplementedError
+        where, fault = next(self.faults(value), ("", ""))
+        return f"{where} {fault}" if where else fault
+
+    def faults(self, value: Any) -> Faults:
+        """The same for each part of ``value``, with where it stands ("[1]", ".calcium"; "" for all of it).
+
+        A field implements ``fault``, or ``faults`` if its values have parts.
+        """
+        if fault := self.fault(value):
+            yield "", fault
 
     def read(self, raw: Any, path: str) -> Any:
         """Value from its JSON form at ``path``. Raises ScenarioError."""
-        fault = self.fault(raw)
-        if fault:
-            raise ScenarioError(path, fault)
-        return raw
+        for where, fault in self.faults(raw):
+            raise ScenarioError(path + where, fault)
+        return self.duplicate(raw)
 
     def write(self, value: Any) -> Any:
         """JSON form of ``value``."""
-        return value
+        return self.duplicate(value)
 
     def duplicate(self, value: Any) -> Any:
-        """Independent copy of ``value``."""
-        return value
+        """Independent copy of ``value``; texts, numbers and frozen objects are their own."""
+        return value.copy() if isinstance(value, list | dict) else value
 
     def _validate(self, value: Any) -> None:
         # Param calls this on every assignment; while a class is being made there is no owner yet.
         if self.owner is None or (value is None and self.default is None):
             return
-        fault = self.fault(value)
-        if fault:
+        if fault := self.fault(value):
             raise ScenarioError(self.name, fault)
+
+
+class Value(Field, param.Parameter):
+    """Field that is held by a plain Param parameter."""
+
+    __slots__ = ["required"]
+    _slot_defaults = param.Parameter._slot_defaults | {"required": False}
+
+
+def span(bounds: Bounds, unit: str = "") -> str:
+    """Bounds in words, with the unit."""
+    low, high = bounds or (None, None)
+    suffix = f" {unit}" if unit else ""
+    if low is None and high is None:
+        return "any number" + (f" of {unit}" if unit else "")
+    if high is None:
+        return f"{low:g}{suffix} or more"
+    return f"{low:g} to {high:g}{suffix}" if low is not None else f"{high:g}{suffix} or less"
+
+
+def outside(value: float, bounds: Bounds) -> bool:
+    """Whether a number lies outside bounds; None is an open end."""
+    low, high = bounds or (None, None)
+    return (low is not None and value < low) or (high is not None and value > high)
 
 
 def number_fault(value: Any, allowed: str, what: str = "a number") -> str:
     """What keeps ``value`` from being a usable number at all."""
     if isinstance(value, bool) or not isinstance(value, int | float):
         return f"{shown(value)} is not {what}; allowed {allowed}"
-    if not math.isfinite(value) or abs(value) > LARGEST_NUMBER:
-        return f"{shown(value)} is not a finite number of sensible size; allowed {allowed}"
+    if abs(value) > LARGEST_NUMBER or math.isnan(value):
+        return f"{shown(value)} is not a number of sensible size; allowed {allowed}"
     return ""
 
 
-def span(bounds: tuple[float | None, float | None] | None, unit: str = "") -> str:
-    """Bounds in words, with the unit."""
-    low, high = bounds or (None, None)
-    suffix = f" {unit}" if unit else ""
-    if low is None and high is None:
-        return f"any number{suffix}" if not suffix else f"any number of{suffix}"
-    if high is None:
-        return f"{low:g}{suffix} or more"
-    return f"{low:g} to {high:g}{suffix}" if low is not None else f"{high:g}{suffix} or less"
+class Number(Value):
+    """A number within bounds; ``whole`` admits integers only. An integer stays an integer."""
 
-
-class Number(Field, param.Parameter):
-    """A number within bounds. An integer stays an integer."""
-
-    __slots__ = ["bounds", "required", "step", "unit", "whole"]
-    _slot_defaults = param.Parameter._slot_defaults | {
-        "unit": "",
-        "bounds": None,
-        "step": None,
-        "required": False,
-        "whole": False,
-    }
-
-    def __init__(
-        self,
-        default: Any = param.Undefined,
-        *,
-        unit: Any = param.Undefined,
-        bounds: Any = param.Undefined,
-        step: Any = param.Undefined,
-        required: Any = param.Undefined,
-        whole: Any = param.Undefined,
-        **common: Any,
-    ) -> None:
-        self.unit, self.bounds, self.step = unit, bounds, step
-        self.required, self.whole = required, whole
-        super().__init__(default=default, **common)
+    __slots__ = ["bounds", "step", "unit", "whole"]
+    _slot_defaults = Value._slot_defaults | {"unit": "", "bounds": None, "step": None, "whole": False}
 
     @property
     def allowed(self) -> str:
-        return ("whole numbers " if self.whole else "") + span(self.bounds, self.unit)
+        return ("whole numbers, " if self.whole else "") + span(self.bounds, self.unit)
 
     def fault(self, value: Any) -> str:
-        fault = number_fault(value, self.allowed, "a whole number" if self.whole else "a number")
-        if fault:
+        if fault := number_fault(value, self.allowed):
             return fault
         if self.whole and not isinstance(value, int):
             return f"{shown(value)} is not a whole number; allowed {self.allowed}"
-        low, high = self.bounds or (None, None)
-        if (low is not None and value < low) or (high is not None and value > high):
-            return f"{shown(value)} is out of range; allowed {self.allowed}"
-        return ""
+        wrong = outside(value, self.bounds)
+        return f"{shown(value)} is out of range; allowed {self.allowed}" if wrong else ""
+
+
+class Numbers(Number):
+    """A list of one to ``most`` numbers, each within the bounds."""
+
+    __slots__ = ["most"]
+    _slot_defaults = Number._slot_defaults | {"most": 4}
+
+    @property
+    def allowed(self) -> str:
+        return f"a list of 1 to {self.most} numbers, each {span(self.bounds, self.unit)}"
+
+    def faults(self, value: Any) -> Faults:
+        if not isinstance(value, list) or not 1 <= len(value) <= self.most:
+            yield "", f"{shown(value)} is not a list of numbers; allowed {self.allowed}"
+            return
+        for position, number in enumerate(value):
+            if fault := Number.fault(self, number):
+                yield f"[{position}]", fault
+
+    fault = Field.fault
+
+
+class Amounts(Number):
+    """Numbers by name, each within the bounds."""
+
+    __slots__ = []
+
+    @property
+    def allowed(self) -> str:
+        return f"an object with numbers by name, each {span(self.bounds, self.unit)}"
+
+    def faults(self, value: Any) -> Faults:
+        if fault := object_fault(value):
+            yield "", fault
+            return
+        for name, number in value.items():
+            if fault := Number.fault(self, number):
+                yield f".{clipped(name)}", fault
+
+    fault = Field.fault
 
 
 def text_fault(value: Any, limit: int, lines: bool = False) -> str:
@@ -152,18 +207,6 @@ class Text(Field, param.String):
 
     __slots__ = ["limit", "lines", "required"]
     _slot_defaults = param.String._slot_defaults | {"limit": NAME_LENGTH, "lines": False, "required": False}
-
-    def __init__(
-        self,
-        default: Any = param.Undefined,
-        *,
-        limit: Any = param.Undefined,
-        lines: Any = param.Undefined,
-        required: Any = param.Undefined,
-        **common: Any,
-    ) -> None:
-        self.limit, self.lines, self.required = limit, lines, required
-        super().__init__(default=default, **common)
 
     @property
     def allowed(self) -> str:
@@ -191,43 +234,50 @@ class Id(Text):
         return f"{shown(value)} is not an id; allowed {self.allowed}"
 
 
-class Flag(Field, param.Parameter):
+class Texts(Value):
+    """A list of texts; ``names``: they are different and there is at least one."""
+
+    __slots__ = ["limit", "most", "names"]
+    _slot_defaults = Value._slot_defaults | {"limit": NAME_LENGTH, "most": 12, "names": False}
+
+    @property
+    def allowed(self) -> str:
+        return f"a list of {self.names:d} to {self.most} {'different names' if self.names else 'texts'}"
+
+    def faults(self, value: Any) -> Faults:
+        if not isinstance(value, list) or not self.names <= len(value) <= self.most:
+            yield "", f"{shown(value)} is not a list as needed; allowed {self.allowed}"
+            return
+        for position, text in enumerate(value):
+            if fault := text_fault(text, self.limit):
+                yield f"[{position}]", fault
+            elif not text.strip():
+                yield f"[{position}]", f"is empty; allowed {self.allowed}"
+            elif self.names and text in value[:position]:
+                yield f"[{position}]", f"{shown(text)} is there twice; allowed {self.allowed}"
+
+    fault = Field.fault
+
+
+class Flag(Value):
     """True or false."""
 
-    __slots__ = ["required"]
-    _slot_defaults = param.Parameter._slot_defaults | {"default": False, "required": False}
-
-    def __init__(
-        self, default: Any = param.Undefined, *, required: Any = param.Undefined, **common: Any
-    ) -> None:
-        self.required = required
-        super().__init__(default=default, **common)
+    __slots__ = []
+    _slot_defaults = Value._slot_defaults | {"default": False}
 
     @property
     def allowed(self) -> str:
         return "true or false"
 
     def fault(self, value: Any) -> str:
-        return "" if isinstance(value, bool) else f"{shown(value)} is not true or false; allowed {self.allowed}"
+        return "" if isinstance(value, bool) else f"{shown(value)} is not a yes or no; allowed {self.allowed}"
 
 
-class Choice(Field, param.Parameter):
+class Choice(Value):
     """One word of a list; ``what`` names such a word in messages ("a solid")."""
 
-    __slots__ = ["choices", "required", "what"]
-    _slot_defaults = param.Parameter._slot_defaults | {"choices": (), "required": False, "what": "a choice"}
-
-    def __init__(
-        self,
-        default: Any = param.Undefined,
-        *,
-        choices: Any = param.Undefined,
-        what: Any = param.Undefined,
-        required: Any = param.Undefined,
-        **common: Any,
-    ) -> None:
-        self.choices, self.what, self.required = choices, what, required
-        super().__init__(default=default, **common)
+    __slots__ = ["choices", "what"]
+    _slot_defaults = Value._slot_defaults | {"choices": (), "what": "a choice"}
 
     @property
     def allowed(self) -> str:
@@ -243,51 +293,24 @@ class Choices(Choice):
 
     __slots__ = []
 
-    def __init__(self, default: Any = param.Undefined, **common: Any) -> None:
-        super().__init__(default, **(common | {"instantiate": True}))
-
-    def fault(self, value: Any) -> str:
+    def faults(self, value: Any) -> Faults:
         if not isinstance(value, list):
-            return f"{shown(value)} is not a list; allowed a list of {self.allowed}"
-        faults = (super(Choices, self).fault(word) for word in value)
-        repeated = [word for position, word in enumerate(value) if word in value[:position]]
-        return next(filter(None, faults), f"{shown(repeated[0])} is there twice; allowed once" if repeated else "")
+            yield "", f"{shown(value)} is not a list; allowed a list of {self.allowed}"
+            return
+        for position, word in enumerate(value):
+            if fault := Choice.fault(self, word):
+                yield f"[{position}]", fault
+            elif word in value[:position]:
+                yield f"[{position}]", f"{shown(word)} is there twice; allowed once"
 
-    def duplicate(self, value: list[str]) -> list[str]:
-        return list(value)
-
-
-class Numbers(Number):
-    """A list of numbers, each within the bounds; ``most`` limits how many."""
-
-    __slots__ = ["most"]
-    _slot_defaults = Number._slot_defaults | {"most": 4}
-
-    def __init__(self, default: Any = param.Undefined, *, most: Any = param.Undefined, **common: Any) -> None:
-        self.most = most
-        super().__init__(default, **common)
-
-    @property
-    def allowed(self) -> str:
-        return f"a list of at most {self.most} numbers, each {span(self.bounds, self.unit)}"
-
-    def fault(self, value: Any) -> str:
-        if not isinstance(value, list | tuple):
-            return f"{shown(value)} is not a list; allowed {self.allowed}"
-        if len(value) > self.most:
-            return f"{len(value)} numbers are too many; allowed {self.allowed}"
-        return next(filter(None, (super(Numbers, self).fault(number) for number in value)), "")
-
-    def read(self, raw: Any, path: str) -> tuple[float, ...]:
-        return tuple(super().read(raw, path))
-
-    def write(self, value: Iterable[float]) -> list[float]:
-        return list(value)
+    fault = Field.fault
 
 
 def object_fault(value: Any) -> str:
     """What is wrong with something that must be a JSON object."""
-    return "" if isinstance(value, dict) else f"{shown(value)} is not an object; allowed {{…}} with named parts"
+    return (
+        "" if isinstance(value, dict) else f"{shown(value)} is not an object; allowed {{…}} with named parts"
+    )
 
 
 def check_keys(raw: Mapping[str, Any], allowed: Iterable[str], path: str) -> None:

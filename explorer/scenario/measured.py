@@ -1,13 +1,23 @@
 """Entries of an analysis: their rules and their JSON form."""
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 from dataclasses import fields as dataclass_fields
 from typing import Any
 
 from explorer.scenario.entity import read_fields
-from explorer.scenario.errors import ScenarioError, join, unknown
-from explorer.scenario.fields import NOTE_LENGTH, Field, Flag, Number, Text, check_keys, object_fault, span
+from explorer.scenario.errors import ScenarioError, join, listed, shown, unknown
+from explorer.scenario.fields import (
+    NOTE_LENGTH,
+    Field,
+    Flag,
+    Number,
+    Text,
+    check_keys,
+    object_fault,
+    outside,
+    span,
+)
 from explorer.scenario.quantity import UNIT_LENGTH, ordered
 from explorer.treatment.analysis import ANALYSIS_KEYS, Measured
 from explorer.treatment.units import default_unit, to_base, units_for
@@ -76,25 +86,28 @@ def read_measured(key: str, raw: Any, path: str) -> Measured:
     return measured
 
 
-def entry_faults(key: str, measured: Measured) -> Iterable[tuple[str, str]]:
-    """Parts of an entry that break the rule of its key, each with what is wrong and what is allowed."""
-    rule = ENTRY_RULES.get(key)
+def entry_faults(
+    key: str, measured: Measured, acid_units: tuple[str, ...] | None = None
+) -> Iterator[tuple[str, str]]:
+    """Parts of an entry that break the rule of its key, each with what is wrong and what is allowed.
+
+    acid_units: units of a user's acid, whose rule is that of any dissolved substance. An unknown key breaks
+    no rule here.
+    """
+    rule = ENTRY_RULES.get(key) or (EntryRule(key) if acid_units else None)
     if rule is None:
         return
-    units = units_for(key)
+    units = acid_units or units_for(key)
     if measured.unit not in units:
-        missing = f"missing; allowed: {', '.join(units)}"
-        yield "unit", missing if not measured.unit else unknown(measured.unit, "a unit here", units)
+        missing = f"missing; allowed: {listed(units)}"
+        yield "unit", unknown(measured.unit, "a unit here", units) if measured.unit else missing
         return
-    unit = default_unit(key)
     for part in ("value", "below"):
         number = getattr(measured, part)
-        if number is not None:
-            base = float(to_base(number, measured.unit, key))
-            low, high = rule.bounds
-            if (low is not None and base < low) or (high is not None and base > high):
-                allowed = span(rule.bounds, unit if any(rule.bounds) else "")
-                yield part, f"{number:g} {rule.wrong}; allowed {allowed}"
+        base = number if number is None or acid_units else float(to_base(number, measured.unit, key))
+        if base is not None and outside(base, rule.bounds):
+            allowed = span(rule.bounds, default_unit(key) if any(rule.bounds) else "")
+            yield part, f"{shown(number)} {rule.wrong}; allowed {allowed}"
     if measured.below is not None and not rule.non_detect:
         yield "below", f"{rule.label} cannot be below a limit of detection; allowed a value"
     if measured.read_at is not None and not rule.read_at:

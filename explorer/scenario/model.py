@@ -1,15 +1,15 @@
 """The scenario: source waters, train, targets, and what is varied."""
 
-from collections.abc import Iterator
-from typing import Any, Self
+from collections.abc import Iterator, Mapping
+from typing import Any, ClassVar, Self
 
-import param
-
+from explorer.chemistry import WeakAcid
 from explorer.scenario.chemicals import Acid, OwnChemical
 from explorer.scenario.entity import REQUIRED, Child, Children, Entity, Table
-from explorer.scenario.errors import ScenarioError, join, shown
-from explorer.scenario.fields import NAME_LENGTH, NOTE_LENGTH, TITLE_LENGTH, Field, Flag, Id, Number, Text, text_fault
+from explorer.scenario.errors import join
+from explorer.scenario.fields import NAME_LENGTH, NOTE_LENGTH, TITLE_LENGTH, Flag, Id, Number, Text, Texts
 from explorer.scenario.quantity import Amount, Quantity
+from explorer.scenario.shares import WHOLE, in_service
 from explorer.scenario.steps import (
     STEP_KINDS,
     AirStep,
@@ -24,6 +24,7 @@ from explorer.scenario.steps import (
 )
 from explorer.scenario.water import Analysis, Water
 from explorer.treatment.analysis import Measured
+from explorer.treatment.chemicals import CATALOGUE, Chemical, with_setting
 from explorer.treatment.units import to_base
 
 __all__ = [
@@ -68,7 +69,9 @@ class Tolerance(Entity):
     plus_minus = Number(None, bounds=(0, None), label="±", doc="Half-width.")
     minus = Number(None, bounds=(0, None), label="Down", doc="Width downwards, where the sides differ.")
     plus = Number(None, bounds=(0, None), label="Up", doc="Width upwards, where the sides differ.")
-    unit = Text("", limit=NAME_LENGTH, label="Unit", doc="% of the value; the unit of the dial where not given.")
+    unit = Text(
+        "", limit=NAME_LENGTH, label="Unit", doc="% of the value; the unit of the dial where not given."
+    )
 
     @property
     def sides(self) -> tuple[float, float]:
@@ -84,32 +87,6 @@ class SweepSetting(Entity):
     start = Number(None, required=True, label="From", doc="In the unit of the dial.")
     stop = Number(None, required=True, label="To", doc="In the unit of the dial.")
     points = Number(101, whole=True, bounds=(2, 2001), label="Points", doc="Evenly spaced, ends included.")
-
-
-class _Seasons(Field, param.Parameter):
-    """Names of the seasons."""
-
-    __slots__ = ["required"]
-    _slot_defaults = param.Parameter._slot_defaults | {"required": True}
-
-    def __init__(self, default: Any = None, **common: Any) -> None:
-        self.required = param.Undefined
-        super().__init__(default, instantiate=True, **common)
-
-    @property
-    def allowed(self) -> str:
-        return "a list of one to twelve different names"
-
-    def fault(self, value: Any) -> str:
-        if not isinstance(value, list) or not 1 <= len(value) <= 12:
-            return f"{shown(value)} is not a list of seasons; allowed {self.allowed}"
-        for name in value:
-            if fault := text_fault(name, NAME_LENGTH) or ("" if name.strip() else "a name is empty"):
-                return f"{fault}; allowed {self.allowed}"
-        return "" if len(set(value)) == len(value) else f"a season is there twice; allowed {self.allowed}"
-
-    def duplicate(self, value: list[str]) -> list[str]:
-        return list(value)
 
 
 class Option(Entity):
@@ -128,21 +105,25 @@ class Option(Entity):
 class Scenario(Entity):
     """Everything that is decided, assumed or asked: the content of a scenario file."""
 
-    constants = {"format": FORMAT, "version": VERSION}
+    constants: ClassVar[Mapping[str, Any]] = {"format": FORMAT, "version": VERSION}
 
     title = Text(None, limit=TITLE_LENGTH, required=True, label="Title", doc="Title of the scenario.")
     note = Text("", limit=NOTE_LENGTH, lines=True, label="Note", doc="What the scenario is about.")
     potable = Flag(True, label="Drinking water", doc="Off for water that nobody is to drink.")
-    seasons = _Seasons(label="Seasons", doc="Every water has an analysis for each.")
+    seasons = Texts(
+        None, required=True, names=True, label="Seasons", doc="Every water has an analysis for each."
+    )
     season = Text(None, required=True, label="Season", doc="The season shown.")
     flow = Amount(None, quantity="flow", label="Flow", doc="Flow of the blend, where waters have shares.")
-    waters = Children(item=Water, required=True, label="Source waters", doc="Waters that are blended.")
+    waters = Children([], item=Water, required=True, label="Source waters", doc="Waters that are blended.")
     balance_water = Id(
-        None, label="Balance water", doc="Takes up the change of another share; none: all others in proportion."
+        None,
+        label="Balance water",
+        doc="Takes up the change of another share; none: all others in proportion.",
     )
-    train = Children(item=Step, label="Train", doc="Steps after blending, in flow order.")
-    targets = Children(item=Target, label="Targets", doc="Bands the finished water should meet.")
-    tolerances = Table(item=Tolerance, label="Tolerances", doc="By dial address.")
+    train = Children([], item=Step, label="Train", doc="Steps after blending, in flow order.")
+    targets = Children([], item=Target, label="Targets", doc="Bands the finished water should meet.")
+    tolerances = Table({}, item=Tolerance, label="Tolerances", doc="By dial address.")
     sweep = Child(None, item=SweepSetting, label="Sweep", doc="What the sweep view shows.")
     organic_charge_density = Number(
         10.0,
@@ -153,9 +134,9 @@ class Scenario(Entity):
         doc="Acid groups of the organic carbon (Oliver, Thurman & Malcolm 1983).",
     )
     currency = Text("", label="Currency", doc="Of prices and costs.")
-    acids = Children(item=Acid, label="Own acids", doc="Weak acids beyond those built in.")
-    chemicals = Children(item=OwnChemical, label="Own chemicals", doc="Chemicals beyond the catalogue.")
-    options = Children(item=Option, label="Options", doc="Kept copies for comparison.")
+    acids = Children([], item=Acid, label="Own acids", doc="Weak acids beyond those built in.")
+    chemicals = Children([], item=OwnChemical, label="Own chemicals", doc="Chemicals beyond the catalogue.")
+    options = Children([], item=Option, label="Options", doc="Kept copies for comparison.")
 
     @classmethod
     def from_dict(cls, raw: Any, path: str = "") -> Self:
@@ -186,11 +167,25 @@ class Scenario(Entity):
         for path, train in self.trains():
             yield from ((join(path, position), step) for position, step in enumerate(train))
 
+    def weak_acids(self) -> tuple[WeakAcid, ...]:
+        """The scenario's own acids as the equilibrium engine takes them."""
+        return tuple(acid.weak_acid() for acid in self.acids)
+
+    def known_chemicals(self) -> dict[str, Chemical]:
+        """The catalogue and the scenario's own chemicals by key."""
+        return CATALOGUE | {own.id: own.chemical(self.acids) for own in self.chemicals}
+
+    def product(self, step: DoseStep) -> Chemical:
+        """What a dose step adds, with the basicity or ratio it states. Raises KeyError, ChemicalError."""
+        setting = next((value for value in (step.basicity, step.ratio) if value is not None), None)
+        return (
+            self.known_chemicals()[step.chemical] if setting is None else with_setting(step.chemical, setting)
+        )
+
     def fractions(self) -> dict[str, float]:
         """Part (0 to 1) of each water in the blend by id; a water out of service has none."""
-        amounts = {water.id: _amount(water) if water.on else 0.0 for water in self.waters}
-        total = sum(amounts.values())
-        return {water_id: amount / total if total else 0.0 for water_id, amount in amounts.items()}
+        running = in_service({water.id: _amount(water) for water in self.waters if water.on})
+        return {water.id: running.get(water.id, 0.0) / WHOLE for water in self.waters}
 
     def total_flow(self) -> float | None:
         """Flow of the blend in m³/h, None where neither the scenario nor its waters give one."""
@@ -200,7 +195,10 @@ class Scenario(Entity):
         return sum(flows) if flows else None
 
 
-Option.param.add_parameter("scenario", Child(None, item=Scenario, required=True, label="Scenario", doc="The copy."))
+# A scenario holds options and an option a scenario; the class comes into being only here.
+Option.param.add_parameter(
+    "scenario", Child(None, item=Scenario, required=True, label="Scenario", doc="Copy.")
+)
 
 
 def _missing(name: str) -> Any:

@@ -4,10 +4,8 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 from typing import Any
 
-import param
-
-from explorer.scenario.errors import ScenarioError, join, listed, unknown
-from explorer.scenario.fields import Field, check_keys, number_fault, object_fault, span, text_fault
+from explorer.scenario.errors import ScenarioError, join, listed, shown, unknown
+from explorer.scenario.fields import Value, check_keys, number_fault, object_fault, outside, span, text_fault
 from explorer.treatment.units import default_unit, to_base, units_for
 
 UNIT_LENGTH = 40
@@ -38,29 +36,11 @@ def unit_fault(unit: Any, quantity: str) -> str:
     return "" if isinstance(unit, str) and unit in allowed else unknown(unit, "a unit here", allowed)
 
 
-class Amount(Field, param.Parameter):
+class Amount(Value):
     """A Quantity: value within bounds (in the base unit of ``quantity``), unit one of that quantity."""
 
-    __slots__ = ["bounds", "quantity", "required", "step"]
-    _slot_defaults = param.Parameter._slot_defaults | {
-        "quantity": DOSE,
-        "bounds": (0, None),
-        "step": None,
-        "required": False,
-    }
-
-    def __init__(
-        self,
-        default: Any = param.Undefined,
-        *,
-        quantity: Any = param.Undefined,
-        bounds: Any = param.Undefined,
-        step: Any = param.Undefined,
-        required: Any = param.Undefined,
-        **common: Any,
-    ) -> None:
-        self.quantity, self.bounds, self.step, self.required = quantity, bounds, step, required
-        super().__init__(default=default, **common)
+    __slots__ = ["bounds", "quantity", "step"]
+    _slot_defaults = Value._slot_defaults | {"quantity": DOSE, "bounds": (0, None), "step": None}
 
     @property
     def units(self) -> tuple[str, ...]:
@@ -69,7 +49,9 @@ class Amount(Field, param.Parameter):
 
     @property
     def _base_unit(self) -> str:
-        return "" if self.quantity == DOSE or self.bounds in ((0, None), None) else default_unit(self.quantity)
+        return (
+            "" if self.quantity == DOSE or self.bounds in ((0, None), None) else default_unit(self.quantity)
+        )
 
     @property
     def allowed(self) -> str:
@@ -83,10 +65,7 @@ class Amount(Field, param.Parameter):
         if fault or self.bounds is None:
             return fault
         base = value if self.quantity == DOSE else float(to_base(value, unit, self.quantity))
-        low, high = self.bounds
-        if (low is not None and base < low) or (high is not None and base > high):
-            return f"{value:g} is out of range; allowed {allowed}"
-        return ""
+        return f"{shown(value)} is out of range; allowed {allowed}" if outside(base, self.bounds) else ""
 
     def fault(self, value: Any) -> str:
         if not isinstance(value, Quantity):
@@ -94,19 +73,16 @@ class Amount(Field, param.Parameter):
         return unit_fault(value.unit, self.quantity) or self.value_fault(value.value, value.unit)
 
     def read(self, raw: Any, path: str) -> Quantity:
-        fault = object_fault(raw)
-        if fault:
-            raise ScenarioError(path, fault.split(";")[0] + f"; allowed {self.allowed}")
+        if object_fault(raw):
+            raise ScenarioError(path, f"{shown(raw)} is not a value with a unit; allowed {self.allowed}")
         check_keys(raw, ("value", "unit"), path)
         for key in ("value", "unit"):
             if raw.get(key) is None:
                 raise ScenarioError(join(path, key), f"missing; allowed {self.allowed}")
-        for key, wrong in (
-            ("unit", unit_fault(raw["unit"], self.quantity)),
-            ("value", "" if unit_fault(raw["unit"], self.quantity) else self.value_fault(raw["value"], raw["unit"])),
-        ):
-            if wrong:
-                raise ScenarioError(join(path, key), wrong)
+        if wrong := unit_fault(raw["unit"], self.quantity):
+            raise ScenarioError(join(path, "unit"), wrong)
+        if wrong := self.value_fault(raw["value"], raw["unit"]):
+            raise ScenarioError(join(path, "value"), wrong)
         return Quantity(raw["value"], raw["unit"], tuple(raw))
 
     def write(self, value: Quantity) -> dict[str, Any]:

@@ -26,7 +26,11 @@ class Hold(Entity):
     readout = Text(None, required=True, label="Readout", doc="Readout that is held.")
     value = Number(None, required=True, label="Held value", doc="Value in the unit of the readout.")
     ceiling = Amount(
-        None, quantity=DOSE, required=True, label="Ceiling", doc="Largest dose; beyond it the hold is not met."
+        None,
+        quantity=DOSE,
+        required=True,
+        label="Ceiling",
+        doc="Largest dose; beyond it the hold is not met.",
     )
 
 
@@ -69,7 +73,9 @@ class DoseStep(Step):
     kind, kind_title = "dose", "Dose"
     either = ("dose", "hold")
 
-    chemical = Text(None, required=True, label="Chemical", doc="Key of the catalogue or id of an own chemical.")
+    chemical = Text(
+        None, required=True, label="Chemical", doc="Key of the catalogue or id of an own chemical."
+    )
     dose = Amount(None, quantity=DOSE, label="Dose", doc="Amount added to the water, with its basis.")
     hold = Child(None, item=Hold, label="Hold", doc="Readout that the dose is computed to meet.")
     strength = Number(
@@ -80,24 +86,23 @@ class DoseStep(Step):
         label="Product strength",
         doc="Mass of active substance in the product; the usual strength where none is given.",
     )
-    density = Number(
-        None,
-        unit="kg/L",
-        bounds=(0.5, 3),
-        step=0.01,
-        label="Product density",
-        doc="For litres of product; the usual density where none is given.",
-    )
     basicity = Number(
         None,
         unit="%",
-        bounds=(0, 90),
+        bounds=(0, 100),
         step=1,
         label="Basicity",
-        doc="Of a polyaluminium coagulant: the part of the acid already neutralised.",
+        doc="Of a polyaluminium coagulant: the part of its chloride replaced by hydroxide.",
+    )
+    ratio = Number(
+        None, bounds=(0, 10), step=0.1, label="Ratio", doc="SiO2 to Na2O by mass, of a sodium silicate."
     )
     price = Number(
-        None, unit="per kg of product", bounds=(0, None), label="Price", doc="In the currency of the scenario."
+        None,
+        unit="per kg of product",
+        bounds=(0, None),
+        label="Price",
+        doc="In the currency of the scenario.",
     )
 
 
@@ -115,11 +120,15 @@ class AirStep(Step):
         label="Approach to equilibrium",
         doc="Part of the carbon dioxide surplus (or deficit) that is exchanged.",
     )
-    co2 = Number(None, unit="mg/L", bounds=(0, 1000), step=0.1, label="CO2 left", doc="Content after the step.")
+    co2 = Number(
+        None, unit="mg/L", bounds=(0, 1000), step=0.1, label="CO2 left", doc="Content after the step."
+    )
     co2_ppm = Number(
         420, unit="ppm", bounds=(0, 100_000), step=10, label="CO2 in the air", doc="Volume share in dry air."
     )
-    altitude = Number(0, unit="m", bounds=(-400, 5000), step=50, label="Altitude", doc="Sets the air pressure.")
+    altitude = Number(
+        0, unit="m", bounds=(-400, 5000), step=50, label="Altitude", doc="Sets the air pressure."
+    )
 
 
 class LimestoneStep(Step):
@@ -174,9 +183,15 @@ class SideStreamStep(Step):
     kind, kind_title = "side_stream", "Side stream"
 
     fraction = Number(
-        None, required=True, unit="%", bounds=(0, 100), step=1, label="Fraction", doc="Part of the flow taken aside."
+        None,
+        required=True,
+        unit="%",
+        bounds=(0, 100),
+        step=1,
+        label="Fraction",
+        doc="Part of the flow taken aside.",
     )
-    train = Children(item=Step, label="Train", doc="Steps on the side stream, in flow order.")
+    train = Children([], item=Step, label="Train", doc="Steps on the side stream, in flow order.")
 
 
 class TemperatureStep(Step):
@@ -212,6 +227,14 @@ class ConcentrateStep(Step):
 
 STEP_KINDS: dict[str, type[Step]] = {
     step.kind: step
-    for step in (DoseStep, AirStep, LimestoneStep, SettleStep, SideStreamStep, TemperatureStep, ConcentrateStep)
+    for step in (
+        DoseStep,
+        AirStep,
+        LimestoneStep,
+        SettleStep,
+        SideStreamStep,
+        TemperatureStep,
+        ConcentrateStep,
+    )
 }
 """Every kind of step by its word in the file."""

@@ -2,19 +2,17 @@
 
 from typing import Any, Self
 
-import param
-
 from explorer.scenario.entity import OPTIONAL, Children, Entity, Table
 from explorer.scenario.errors import ScenarioError, join
 from explorer.scenario.fields import (
     NOTE_LENGTH,
     TITLE_LENGTH,
     Choice,
-    Field,
     Flag,
     Id,
     Number,
     Text,
+    Value,
     check_keys,
     object_fault,
     text_fault,
@@ -28,25 +26,17 @@ PROVENANCE_KEYS = ("lab", "sampled", "file", "by", "note")
 """Laboratory; date or period of sampling; report or file; who entered the figures; anything else."""
 
 
-class _Entries(Field, param.Parameter):
+class _Entries(Value):
     """Measured entries by analysis key or id of a user's acid."""
 
-    __slots__ = ["required"]
-    _slot_defaults = param.Parameter._slot_defaults | {"required": False}
-
-    def __init__(self, default: Any = param.Undefined, **common: Any) -> None:
-        self.required = param.Undefined
-        super().__init__(default, instantiate=True, **common)
+    __slots__ = []
 
     def fault(self, value: Any) -> str:
         measured = isinstance(value, dict) and all(isinstance(entry, Measured) for entry in value.values())
         return "" if measured else "an analysis holds Measured entries by key"
 
-    def duplicate(self, value: dict[str, Measured]) -> dict[str, Measured]:
-        return dict(value)
 
-
-class _Provenance(_Entries):
+class _Provenance(Value):
     """Texts under the PROVENANCE_KEYS."""
 
     __slots__ = []
@@ -59,16 +49,13 @@ class _Provenance(_Entries):
         return object_fault(value)
 
     def read(self, raw: Any, path: str) -> dict[str, str]:
-        provenance = super().read(raw, path)
+        provenance: dict[str, str] = super().read(raw, path)
         check_keys(provenance, PROVENANCE_KEYS, path)
         for key, text in provenance.items():
             limit = NOTE_LENGTH if key == "note" else TITLE_LENGTH
             if fault := text_fault(text, limit, lines=key == "note"):
                 raise ScenarioError(join(path, key), fault)
-        return dict(provenance)
-
-    def write(self, value: dict[str, str]) -> dict[str, str]:
-        return dict(value)
+        return provenance
 
 
 class Analysis(Entity):
@@ -124,15 +111,23 @@ class Water(Entity):
     id = Id(None, required=True, label="Id", doc="Handle used in addresses.")
     named = OPTIONAL
     share = Number(
-        None, unit="%", bounds=(0, 100), step=1, label="Share", doc="Part of the blended flow; shares add to 100."
+        None,
+        unit="%",
+        bounds=(0, 100),
+        step=1,
+        label="Share",
+        doc="Part of the blended flow; shares add to 100.",
     )
     flow = Amount(
-        None, quantity="flow", label="Flow", doc="Flow of this water, where flows are given instead of shares."
+        None,
+        quantity="flow",
+        label="Flow",
+        doc="Flow of this water, where flows are given instead of shares.",
     )
     on = Flag(True, label="In service", doc="A water out of service keeps its settings but does not flow.")
     note = Text("", limit=NOTE_LENGTH, lines=True, label="Note", doc="Anything worth knowing of this water.")
-    analyses = Table(item=Analysis, required=True, label="Analyses", doc="One analysis for every season.")
-    train = Children(item=Step, label="Train", doc="Steps before blending, in flow order.")
+    analyses = Table({}, item=Analysis, required=True, label="Analyses", doc="One analysis for every season.")
+    train = Children([], item=Step, label="Train", doc="Steps before blending, in flow order.")
 
     @property
     def title(self) -> str:
