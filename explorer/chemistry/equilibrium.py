@@ -8,10 +8,11 @@ from numpy.typing import NDArray
 
 from .constants import LN10
 from .newton import ABSENT, CHUNK, SMALLEST_TOTAL, Problem, State
+from .phases import CARBON_DIOXIDE
 from .start import first_state
 
 if TYPE_CHECKING:
-    from .system import System
+    from .system import Kernel, System
 
 SOLVED, NOT_FINITE, NEGATIVE, TEMPERATURE, NO_CONVERGENCE = range(5)
 
@@ -29,22 +30,13 @@ LOW_TEMPERATURE, HIGH_TEMPERATURE = 0.0, 60.0
 
 
 @dataclass
-class Phases:
-    """Phases held at saturation: ``counts`` (P, M) over all masters, ``saturation`` (P, N) ln of the ion
-    activity product."""
-
-    counts: NDArray
-    saturation: NDArray
-
-
-@dataclass
 class Equilibrium:
-    """Flat answer: ``x`` (M, N) ln activity of every master, ``strength`` (N,) mol/L, ``formed`` (P, N) mol/L of
-    the phases, ``reason`` (N,) codes, with the ``totals`` (components, N) and ``temperature`` (N,) it is for."""
+    """Flat answer: ``x`` (M, N) ln activity of every master, ``strength`` (N,) mol/L, ``formed`` (N,) mol/L by
+    phase, ``reason`` (N,) codes, with the dissolved ``totals`` (components, N) and the ``temperature`` (N,)."""
 
     x: NDArray
     strength: NDArray
-    formed: NDArray
+    formed: dict[str, NDArray]
     reason: NDArray
     totals: NDArray
     temperature: NDArray
@@ -56,24 +48,27 @@ def solve(
     totals: NDArray,
     temperature: NDArray,
     ph: NDArray | None = None,
-    phases: Phases | None = None,
+    held: tuple[str, ...] = (),
+    carbon_dioxide: NDArray | None = None,
 ) -> Equilibrium:
     """Equilibrium of N waters: ``totals`` (components, N), ``temperature`` (N,) °C, optional fixed ``ph`` (N,).
 
-    With ``phases`` the totals are those of water and phases together; what forms is in ``formed``.
+    With phases ``held`` the totals are those of water and phases together; ``carbon_dioxide`` (N,) is the
+    activity of CO2(aq) where the gas is held.
     """
     reason = _impossible(system, totals, temperature, ph)
     masters = system.masters_in(totals)
     present = (np.where(reason == SOLVED, masters, 0.0) >= SMALLEST_TOTAL).any(axis=1)
     present[0] = True
-    if phases is not None:
-        present |= (phases.counts != 0.0).any(axis=0)
-    kernel = system.kernel(tuple(present.tolist()))
+    kernel = system.kernel(tuple(present.tolist()), held)
     number = totals.shape[1]
+    saturation = _saturation(system, kernel.phases.names, temperature, carbon_dioxide)
+    if held:
+        masters = kernel.phases.reduced_totals(masters)
     answer = Equilibrium(
         x=np.full((len(masters), number), ABSENT),
         strength=np.full(number, np.nan),
-        formed=np.full((0 if phases is None else len(phases.counts), number), np.nan),
+        formed={name: np.full(number, np.nan) for name in held},
         reason=reason,
         totals=totals,
         temperature=temperature,
@@ -82,10 +77,10 @@ def solve(
 
     def problem_at(points: NDArray) -> Problem:
         part = system.problem(totals[:, points], temperature[points], None if ph is None else ph[points])
-        part.log_k, part.totals = part.log_k[kernel.species], part.totals[kernel.masters]
-        if phases is not None:
-            part.phases = phases.counts[:, kernel.masters]
-            part.saturation = phases.saturation[:, points]
+        part.log_k = part.log_k[kernel.species]
+        if held:
+            part.log_k = part.log_k + kernel.carried @ saturation[:, points]
+        part.totals = masters[np.ix_(kernel.masters, points)]
         return part
 
     def iterate(points: NDArray, state: State | None, enough: float) -> tuple[NDArray, State]:
@@ -98,22 +93,57 @@ def solve(
         solved = points[converged]
         answer.x[np.ix_(kernel.masters, solved)] = state.x[:, converged]
         answer.strength[solved] = state.strength[converged]
-        answer.formed[:, solved] = state.formed[:, converged]
+        if held:
+            c = kernel.newton.concentrations(part.take(converged), state.take(converged))
+            _account(system, kernel, answer, solved, c, saturation[:, solved])
         return points[~converged], state.take(~converged)
 
     waiting = np.flatnonzero(reason == SOLVED)
-    chunks = [waiting[i : i + CHUNK] for i in range(0, len(waiting), CHUNK)]
     # the last few points of every chunk are finished together: a step costs much the same for 5 as for 500
-    left = [iterate(chunk, None, 0.85) for chunk in chunks]
+    left = [iterate(waiting[i : i + CHUNK], None, 0.85) for i in range(0, len(waiting), CHUNK)]
     if left:
         points = np.concatenate([p for p, _ in left])
-        state = State(*(np.concatenate([getattr(s, n) for _, s in left], axis=-1) for n in ("x", "strength", "formed")))
+        x = np.concatenate([state.x for _, state in left], axis=1)
+        strength = np.concatenate([state.strength for _, state in left])
         for first in range(0, len(points), CHUNK):
             some = slice(first, first + CHUNK)
-            failed, _ = iterate(points[some], state.take(some), 1.0)
+            failed, _ = iterate(points[some], State(x[:, some], strength[some]), 1.0)
             reason[failed] = NO_CONVERGENCE
-    answer.x[:, reason != SOLVED] = np.nan
+    unsolved = reason != SOLVED
+    if unsolved.any():
+        answer.x[:, unsolved] = np.nan
     return answer
+
+
+def _saturation(
+    system: "System", names: tuple[str, ...], temperature: NDArray, carbon_dioxide: NDArray | None
+) -> NDArray:
+    """ln of the activity product each phase holds; (P, N)."""
+    rows = [
+        np.log(np.maximum(carbon_dioxide, SMALLEST_TOTAL))
+        if name == CARBON_DIOXIDE
+        else system.network.solids[name].saturation(temperature)
+        for name in names
+    ]
+    return np.array(rows).reshape(len(names), len(temperature))
+
+
+def _account(
+    system: "System", kernel: "Kernel", answer: Equilibrium, points: NDArray, c: NDArray, saturation: NDArray
+) -> None:
+    """Write the pivots' activities, the amounts of the phases and the dissolved totals of some points, from the
+    concentrations ``c`` of the kernel's species."""
+    phases = kernel.phases
+    x = answer.x[:, points]
+    phases.expand(x, saturation)
+    answer.x[:, points] = x
+    together = answer.totals[:, points]
+    dissolved = system.network.counts[np.ix_(kernel.species, phases.pivots)].T @ c
+    amounts = phases.amounts(system.masters_in(together)[phases.pivots] - dissolved)
+    for name, counts, amount in zip(phases.names, phases.counts, amounts, strict=True):
+        answer.formed[name][points] = amount
+        together = system.removed(together, counts, amount)
+    answer.totals[:, points] = together
 
 
 def buffer_intensity(system: "System", answer: Equilibrium) -> NDArray:
@@ -121,12 +151,12 @@ def buffer_intensity(system: "System", answer: Equilibrium) -> NDArray:
     result = np.full(len(answer.strength), np.nan)
     solved = np.flatnonzero(answer.reason == SOLVED)
     present = (answer.x[:, solved] > ABSENT / 2).any(axis=1)
-    kernel = system.kernel(tuple(present.tolist()))
+    kernel = system.kernel(tuple(present.tolist()), ())
     for first in range(0, len(solved), CHUNK):
         points = solved[first : first + CHUNK]
         problem = system.problem(answer.totals[:, points], answer.temperature[points])
         problem.log_k, problem.totals = problem.log_k[kernel.species], problem.totals[kernel.masters]
-        state = State(answer.x[np.ix_(kernel.masters, points)], answer.strength[points], np.empty((0, len(points))))
+        state = State(answer.x[np.ix_(kernel.masters, points)], answer.strength[points])
         result[points] = LN10 / kernel.newton.proton_response(problem, state)
     return result
 

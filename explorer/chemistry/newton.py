@@ -1,14 +1,16 @@
 """Batched Newton iteration for the equilibrium of many waters at once.
 
-Unknowns are ln of the master activities, the ionic strength and, where phases are held at saturation, the
-amount of each that has formed. With concentrations ``c = exp(ln k + counts·x − ln γ)`` the balance matrix
-``countsᵀ diag(c) counts`` is symmetric and positive definite, so it is factored without pivoting; the
-ionic strength and the phases are bordered onto it. The sparsity is worked out once per set of components
-present, and each step of the elimination is one NumPy operation over the whole batch.
+Unknowns are ln of the master activities and the ionic strength. With concentrations
+``c = exp(ln k + counts·x − ln γ)`` the balance matrix ``countsᵀ diag(c) counts`` is symmetric and positive
+definite, so it is factored without pivoting; the ionic strength is bordered onto it. The sparsity is worked
+out once per set of components present, and each step of the elimination is one NumPy operation over the
+whole batch.
 
-Two details make it quick and hard to break. The balance residual ``T − S`` is used in the form
-``S ln(T/S)``, which has the same derivative at the solution and is exact in one step for a component on its
-own. The proton balance has terms of both signs; there the two sides are compared the same way.
+What makes it quick and hard to break is the form of the residual. A balance says that what its species hold
+with a positive count, ``held``, less what they hold with a negative count, ``lacking``, is the total. It is
+used as the logarithm of ``(lacking + total) / held``, scaled so that its derivative at the solution is that
+of the plain difference: exact in one step for a component on its own, and as tame for a proton balance,
+whose total may have any sign, as for a metal.
 """
 
 from dataclasses import dataclass
@@ -26,7 +28,7 @@ MAX_STEP = 2.0
 """Largest change of any ln activity in one step."""
 NEAR = 0.3
 """Largest change of any ln activity for which the ionic strength is changed with Newton too."""
-MAX_ITERATIONS = 60
+MAX_ITERATIONS = 100
 CHUNK = 1024
 """Points worked on together, so that the arrays of one step stay in the processor's cache."""
 ABSENT = -3000.0
@@ -41,8 +43,7 @@ class Problem:
 
     ``log_k`` (S, N); ``totals`` (M, N) of the masters, the proton row holding minus the alkalinity; ``slope``
     (N,) Debye–Hückel A; ``inert`` (N,) ½Σz²c of ions that form no species; ``organic`` (N,) eq/L of organic
-    acid groups; ``ph`` (N,) fixes the pH and drops the proton balance; ``phases`` (P, M) counts and
-    ``saturation`` (P, N) ln activity products of phases held at equilibrium.
+    acid groups; ``ph`` (N,) fixes the pH and drops the proton balance.
     """
 
     log_k: NDArray
@@ -51,37 +52,31 @@ class Problem:
     inert: NDArray
     organic: NDArray
     ph: NDArray | None = None
-    phases: NDArray | None = None
-    saturation: NDArray | None = None
 
     def __len__(self) -> int:
         return self.totals.shape[1]
 
     def take(self, points: NDArray | slice) -> "Problem":
         """The same problem for some of its points."""
-        return Problem(
-            *(None if a is None else a[..., points] for a in
-              (self.log_k, self.totals, self.slope, self.inert, self.organic, self.ph)),
-            self.phases,
-            None if self.saturation is None else self.saturation[:, points],
-        )  # fmt: skip
+        arrays = (self.log_k, self.totals, self.slope, self.inert, self.organic, self.ph)
+        return Problem(*(None if a is None else a[..., points] for a in arrays))
 
 
 @dataclass
 class State:
-    """Unknowns of a batch: ``x`` (M, N) ln activities, ``strength`` (N,), ``formed`` (P, N) mol/L of phases."""
+    """Unknowns of a batch: ``x`` (M, N) ln activities, ``strength`` (N,) mol/L."""
 
     x: NDArray
     strength: NDArray
-    formed: NDArray
 
-    def take(self, points: NDArray) -> "State":
-        return State(self.x[:, points], self.strength[points], self.formed[:, points])
+    def take(self, points: NDArray | slice) -> "State":
+        """The same state for some of its points, as a copy."""
+        return State(self.x[:, points].copy(), self.strength[points].copy())
 
     def put(self, points: NDArray, other: "State") -> None:
+        """Write the state of some points."""
         self.x[:, points] = other.x
         self.strength[points] = other.strength
-        self.formed[:, points] = other.formed
 
 
 @dataclass
@@ -106,6 +101,7 @@ class Newton:
     def __init__(self, counts: NDArray, charges: NDArray) -> None:
         self.counts, self.charges = counts, charges
         self.masters = counts.shape[1]
+        self.one_sided: NDArray = (counts >= 0.0).all(axis=0)
         self.exponents = np.hstack([counts, (charges**2)[:, None], -(charges == 0.0).astype(float)[:, None]])
         self.order, self.pattern = _elimination(counts)
         self.position = {pair: row for row, pair in enumerate(self.pattern)}
@@ -115,8 +111,8 @@ class Newton:
         products = [counts[:, i] * counts[:, j] for i, j in self.pattern]
         rows = {
             "matrix": np.array(products),
-            "sums": counts.T,
-            "proton": np.stack([np.maximum(counts[:, 0], 0), np.maximum(-counts[:, 0], 0)]),
+            "held": np.maximum(counts, 0.0).T,
+            "lacking": np.maximum(-counts, 0.0).T,
             "charged": counts.T * z2,
             "uncharged": counts.T * uncharged,
             "strength": np.stack([0.5 * z2, 0.5 * z2**2]),
@@ -155,46 +151,26 @@ class Newton:
         return converged
 
     def _step(self, problem: Problem, state: State) -> NDArray:
-        """Improve ``state`` in place; returns the largest change of any ln activity, (N,)."""
+        """Improve ``state`` in place; returns the largest relative change of any unknown, (N,)."""
         linear = self.linearise(problem, state)
-        phases = problem.phases if problem.phases is not None else np.empty((0, self.masters))
-        columns = np.empty((self.masters, 2 + len(phases), len(problem)))
-        columns[:, 0], columns[:, 1] = linear.residual, linear.strength_column
-        columns[:, 2:] = -phases.T[:, :, None]
-        if problem.ph is not None:
-            columns[0, 2:] = 0.0
+        columns = np.stack([linear.residual, linear.strength_column], axis=1)
         self.eliminate(linear.matrix, columns)
-
-        # the border: one row for the ionic strength, one for each phase; unknowns dI and the dξ
-        products = np.concatenate(
-            [
-                np.einsum("mn,mrn->rn", linear.strength_row, columns)[None],
-                np.tensordot(phases, columns, axes=1),
-            ]
-        )
-        products[0, 1] += linear.strength_corner
-        target = -products[:, 0]
-        target[0] += linear.strength_residual
-        if len(phases):
-            target[1:] += problem.saturation - phases @ state.x
-            extra = np.linalg.solve(np.moveaxis(products[:, 1:], -1, 0), target.T[..., None])[..., 0].T
-        else:
-            extra = target / np.where(products[:, 1] == 0.0, 1e-300, products[:, 1])
-        change = columns[:, 0] + np.einsum("mrn,rn->mn", columns[:, 1:], extra)
+        products = np.einsum("mn,mrn->rn", linear.strength_row, columns)
+        corner = products[1] + linear.strength_corner
+        strength_change = (linear.strength_residual - products[0]) / np.where(corner == 0.0, -1.0, corner)
+        change = columns[:, 0] + columns[:, 1] * strength_change
         largest = np.abs(change).max(axis=0)
         largest = np.where(np.isfinite(largest), largest, np.inf)
-        state.x += np.minimum(1.0, MAX_STEP / np.maximum(largest, 1e-300)) * change
-        near = largest < NEAR
+        state.x += np.minimum(1.0, MAX_STEP / np.maximum(largest, SMALLEST_TOTAL)) * change
         # far from the solution the Newton change of the ionic strength means nothing: go half way (in ln) to
         # the ionic strength of the species at hand
         found = np.clip(state.strength - linear.strength_residual, 1e-9, 1.0)
         state.strength = np.where(
-            near,
-            np.clip(state.strength + extra[0], 0.2 * state.strength, 5.0 * state.strength),
+            largest < NEAR,
+            np.clip(state.strength + strength_change, 0.2 * state.strength, 5.0 * state.strength),
             np.sqrt(state.strength * found),
         )
-        state.formed += extra[1:]
-        return np.maximum(largest, np.abs(extra[0]) / state.strength)
+        return np.maximum(largest, np.abs(strength_change) / state.strength)
 
     def proton_response(self, problem: Problem, state: State) -> NDArray:
         """Change of ln activity of H+ per unit of proton total at a solution; (N,)."""
@@ -209,50 +185,38 @@ class Newton:
         """The equations at a state, to first order."""
         c = self.concentrations(problem, state)
         sums = self.weights @ c
-        matrix = sums[self.rows["matrix"]]
-        balance = sums[self.rows["sums"]]
+        matrix, held, lacking = (sums[self.rows[name]] for name in ("matrix", "held", "lacking"))
+        charged, uncharged = sums[self.rows["charged"]], sums[self.rows["uncharged"]]
+        half_z2, half_z4 = sums[self.rows["strength"]]
         _, factor_slope = davies(problem.slope, state.strength)
         _, uncharged_slope = neutral(state.strength)
-        charged = sums[self.rows["charged"]]
-        column = sums[self.rows["uncharged"]] * uncharged_slope - charged * factor_slope
-        half_z2, half_z4 = sums[self.rows["strength"]]
+        column = uncharged * uncharged_slope - charged * factor_slope
         row = 0.5 * charged
         strength_residual = state.strength - half_z2 - problem.inert
         corner = half_z4 * factor_slope - 1.0
 
         totals = problem.totals
-        if problem.phases is not None:
-            totals = totals - problem.phases.T @ state.formed
-        residual = totals - balance
-        logarithmic = (totals[1:] > 0.0) & (balance[1:] > 0.0)
-        ratio = np.where(logarithmic, totals[1:], 1.0) / np.where(logarithmic, balance[1:], 1.0)
-        residual[1:] = np.where(logarithmic, balance[1:] * np.log(ratio), residual[1:])
-
-        gaining, losing = sums[self.rows["proton"]]
-        ph = -state.x[0] / LN10
         if problem.organic.any():
-            fraction, slope = dissociated(ph)
-            ions = problem.organic * fraction
-            ion_slope = problem.organic * slope / LN10
-            losing = losing + ions
-            offset = problem.organic * END_POINT_FRACTION
+            fraction, slope = dissociated(-state.x[0] / LN10)
+            ions, ion_slope = problem.organic * fraction, problem.organic * slope / LN10
+            lacking[0] += ions
             matrix[self.diagonal[0]] += ion_slope
             row[0] -= 0.5 * ion_slope
             strength_residual -= 0.5 * ions
-        else:
-            offset = 0.0
-        alkalinity = offset - totals[0]
-        have = losing + np.maximum(-alkalinity, 0.0)
-        want = gaining + np.maximum(alkalinity, 0.0)
-        with np.errstate(divide="ignore", invalid="ignore"):
-            residual[0] = np.maximum(have, want) * np.log(have / want)
+            totals = totals.copy()
+            totals[0] -= problem.organic * END_POINT_FRACTION
 
+        have = lacking + np.maximum(totals, 0.0)
+        want = held - np.minimum(totals, 0.0)
+        absent = (have == 0.0) & (want == 0.0)
+        ratio = np.where(absent, 1.0, have) / np.where(absent, 1.0, want)
+        residual = np.maximum(held, lacking) * np.log(np.clip(ratio, SMALLEST_TOTAL, 1.0 / SMALLEST_TOTAL))
         if problem.ph is not None:
             matrix[self.proton_pairs] = 0.0
             matrix[self.diagonal[0]] = 1.0
             residual[0] = -LN10 * problem.ph - state.x[0]
             column[0] = 0.0
-        matrix[self.diagonal] += balance == 0.0
+        matrix[self.diagonal] += matrix[self.diagonal] == 0.0
         return Linear(matrix, residual, column, row, strength_residual, corner)
 
     def eliminate(self, matrix: NDArray, columns: NDArray) -> None:

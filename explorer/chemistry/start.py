@@ -15,6 +15,9 @@ ORGANIC_PKA = 4.2
 
 
 PASSES = 5
+"""Scalings of the components before the Newton iteration."""
+TRACE = 1e-9
+"""mol/L; start for a component whose total says nothing, because a solid can supply it."""
 
 
 class Ladder:
@@ -59,22 +62,18 @@ class Ladder:
 
 
 def first_state(newton: Newton, problem: Problem, ph: NDArray) -> State:
-    """State at a pH with each component scaled twice to its total as if the others did not matter."""
-    absent = problem.totals < SMALLEST_TOTAL
-    if problem.phases is not None:
-        absent &= ~(problem.phases != 0.0).any(axis=0)[:, None]
-    absent[0] = False
-    floor = np.maximum(problem.totals, 1e-9 if problem.phases is not None else SMALLEST_TOTAL)
-    x = np.where(absent, ABSENT, np.log(floor))
-    x[0] = -LN10 * ph
-    strength = np.clip(problem.inert + problem.totals[1:].sum(axis=0), 1e-7, 0.5)
-    phases = 0 if problem.phases is None else len(problem.phases)
-    state = State(x, strength, np.zeros((phases, len(problem))))
-    power = 1.0 / np.maximum(newton.counts[:, 1:].max(axis=0), 1.0)[:, None]
+    """State at a pH, with every other component scaled to its total a few times as if on its own."""
+    totals = problem.totals[1:]
+    absent = newton.one_sided[1:, None] & (totals < SMALLEST_TOTAL)
+    x = np.where(absent, ABSENT, np.log(np.maximum(totals, np.where(absent, SMALLEST_TOTAL, TRACE))))
+    strength = np.clip(problem.inert + np.abs(totals).sum(axis=0), 1e-7, 0.5)
+    state = State(np.concatenate([-LN10 * ph[None], x]), strength)
+    held, lacking = np.maximum(newton.counts[:, 1:].T, 0.0), np.maximum(-newton.counts[:, 1:].T, 0.0)
+    power = 1.0 / held.max(axis=1)[:, None]
     for _ in range(PASSES):
         c = newton.concentrations(problem, state)
-        balance = newton.counts[:, 1:].T @ c
-        scale = np.where(absent[1:] | (balance <= 0.0), 1.0, floor[1:] / np.where(balance > 0.0, balance, 1.0))
-        state.x[1:] += power * np.clip(np.log(scale), -60.0, 60.0)
+        have = lacking @ c + np.maximum(totals, 0.0)
+        want = held @ c - np.minimum(totals, 0.0)
+        state.x[1:] += power * np.log(np.where(absent, 1.0, have) / np.where(absent, 1.0, want))
         state.strength = np.clip(0.5 * newton.charges**2 @ c + problem.inert, 1e-8, 1.0)
     return state

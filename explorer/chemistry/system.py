@@ -17,6 +17,7 @@ from .components import COMPONENT, COMPONENTS, WeakAcid
 from .network import Network
 from .newton import Newton, Problem
 from .organics import equivalents_per_mole
+from .phases import CARBON_DIOXIDE, Phases
 from .solution import Solution
 from .start import Ladder
 
@@ -26,13 +27,18 @@ USUAL_ORGANIC_CHARGE_DENSITY = 10.0
 
 @dataclass(frozen=True)
 class Kernel:
-    """The part of a system that matters where some masters are absent: rows of its species and masters in
-    the network, the iteration and the ladder of acids for them."""
+    """The part of a system that matters where some masters are absent and some phases are held.
+
+    ``species`` and ``masters``: rows in the network of the species and of the unknowns; ``phases``: what is
+    held, with ``carried`` (species, phases) of :meth:`Phases.reduced_counts`.
+    """
 
     species: NDArray
     masters: NDArray
     newton: Newton
     ladder: Ladder
+    phases: Phases
+    carried: NDArray
 
 
 class System:
@@ -56,6 +62,7 @@ class System:
         self.network = Network(self.acids, pairs=pairs)
         self.organic_equivalents = equivalents_per_mole(organic_charge_density)
         self._rows = np.array([self.index[key] for key in self.network.master_of])
+        self._balance_signs = np.where(self._rows == self.index["alkalinity"], -1.0, 1.0)
         inert = [c for c in COMPONENT.values() if c.master is None and c.charge]
         self._inert_rows = np.array([self.index[c.key] for c in inert])
         self._inert_charges = np.array([c.charge for c in inert], dtype=float)
@@ -85,6 +92,30 @@ class System:
         totals, temperature, ph, shape = self._broadcast(totals, temperature, ph)
         return Solution(self, equilibrium.solve(self, totals, temperature, ph), shape)
 
+    def equilibrate(
+        self,
+        totals: ArrayLike,
+        temperature: ArrayLike,
+        solids: Sequence[str] = (),
+        *,
+        carbon_dioxide: ArrayLike | None = None,
+    ) -> tuple[Solution, dict[str, NDArray]]:
+        """Equilibrium with phases: waters brought to saturation with solids, with a CO2 activity, or both.
+
+        ``solids``: names in :data:`explorer.chemistry.phases.PIVOTS`; each forms or dissolves without limit
+        until its saturation index is 0. ``carbon_dioxide``: activity of CO2(aq) to hold, mol/kg. Arrays
+        broadcast. Returns the water that is left, and by phase the amount formed [mol/L], negative where it
+        dissolved (for the gas: mol/L CO2 lost). For solids that only form, see
+        :func:`explorer.chemistry.solids.precipitate`.
+
+        Raises ValueError for solids that cannot be held.
+        """
+        totals, temperature, gas, shape = self._broadcast(totals, temperature, carbon_dioxide)
+        held = tuple(solids) + (() if gas is None else (CARBON_DIOXIDE,))
+        answer = equilibrium.solve(self, totals, temperature, held=held, carbon_dioxide=gas)
+        formed = {name: answer.formed[name].reshape(shape) for name in held}
+        return Solution(self, answer, shape), formed
+
     def _broadcast(
         self, totals: ArrayLike, temperature: ArrayLike, ph: ArrayLike | None
     ) -> tuple[NDArray, NDArray, NDArray | None, tuple[int, ...]]:
@@ -101,13 +132,17 @@ class System:
 
     def masters_in(self, totals: NDArray) -> NDArray:
         """Totals (components, N) as balances of the masters (masters, N): the proton row is −alkalinity."""
-        masters = totals[self._rows]
-        masters[0] = -masters[0]
-        return masters
+        return totals[self._rows] * self._balance_signs[:, None]
 
     def inert_charge(self, totals: NDArray) -> NDArray:
         """Charge [eq/L] of the ions that form no species, for totals (components, N)."""
         return self._inert_charges @ totals[self._inert_rows]
+
+    def removed(self, totals: NDArray, counts: NDArray, amount: NDArray) -> NDArray:
+        """Totals (components, N) less ``amount`` (N,) mol/L of something with ``counts`` (masters,)."""
+        totals = totals.copy()
+        totals[self._rows] -= np.outer(counts * self._balance_signs, amount)
+        return totals
 
     def problem(self, totals: NDArray, temperature: NDArray, ph: NDArray | None = None) -> Problem:
         """The flat batch as the iteration wants it, over all masters."""
@@ -132,14 +167,17 @@ class System:
         return lru_cache(maxsize=256)(lambda temperature: self.network.log_k(np.array(temperature)))
 
     @cached_property
-    def kernel(self) -> Callable[[tuple[bool, ...]], Kernel]:
-        """``kernel(present)`` for the masters that are present."""
+    def kernel(self) -> Callable[[tuple[bool, ...], tuple[str, ...]], Kernel]:
+        """``kernel(present, held)`` for the masters present and the phases held."""
         return lru_cache(maxsize=64)(self._kernel)
 
-    def _kernel(self, present: tuple[bool, ...]) -> Kernel:
-        masters = np.flatnonzero(present)
-        absent = ~np.array(present)
-        species = np.flatnonzero(~(self.network.counts[:, absent] != 0.0).any(axis=1))
-        newton = Newton(self.network.counts[np.ix_(species, masters)], self.network.charges[species])
+    def _kernel(self, present: tuple[bool, ...], held: tuple[str, ...]) -> Kernel:
+        phases = Phases.of(self.network, held)
+        there = np.array(present) | (phases.counts != 0.0).any(axis=0)
+        species = np.flatnonzero(~(self.network.counts[:, ~there] != 0.0).any(axis=1))
+        counts, carried = phases.reduced_counts(self.network.counts[species])
+        there[phases.pivots] = False
+        masters = np.flatnonzero(there)
         ladder = Ladder(self.network, {self.network.masters[m]: row for row, m in enumerate(masters)})
-        return Kernel(species, masters, newton, ladder)
+        newton = Newton(counts[:, masters], self.network.charges[species])
+        return Kernel(species, masters, newton, ladder, phases, carried)
