@@ -143,9 +143,7 @@ def dose_moles(
     return np.asarray(value, float) * _moles_per_unit(chemical, unit, strength)
 
 
-def dose_in(
-    chemical: Chemical, moles: ArrayLike, unit: str, strength: ArrayLike | None = None
-) -> np.ndarray:
+def dose_in(chemical: Chemical, moles: ArrayLike, unit: str, strength: ArrayLike | None = None) -> np.ndarray:
     """Exact inverse of :func:`dose_moles`: a dose of mol/L in a trade unit."""
     return np.asarray(moles, float) / _moles_per_unit(chemical, unit, strength)
 

@@ -7,6 +7,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
 
 from explorer.chemistry import Solution, System
+from explorer.chemistry.conductivity import conductivity
 from explorer.treatment.analysis.intake import analysis_totals, entry_units
 from explorer.treatment.analysis.measured import Measured
 from explorer.treatment.ions import charge_sums, dissolved_solids
@@ -115,8 +116,6 @@ def examine(entries: Mapping[str, Measured], system: System, *, close_with: str 
     Raises AnalysisError as :func:`analysis_totals` does; an impossible carbonate system gives a note of
     level ``error`` and nan.
     """
-    from explorer.chemistry.conductivity import conductivity
-
     intake = analysis_totals(entries, system, close_with=close_with)
     solution = system.solve(intake.totals, intake.temperature)
     balance = balance_of(solution)

@@ -106,7 +106,8 @@ def analysis_totals(
     if not possible.all():
         notes.append(_impossible(pair, possible))
     if close_with != "none" and possible.any():
-        totals = _close(totals, temperature, system, close_with, settle, notes)
+        totals, closed = _close(totals, temperature, system, close_with, settle, notes)
+        possible = possible & closed
     _compare_redundant(amounts, pair, totals, reading, system, notes)
     return Intake(totals, temperature, possible, notes)
 
@@ -221,22 +222,28 @@ def _close(
     ion: str,
     settle: Callable[[np.ndarray], tuple[np.ndarray, np.ndarray]],
     notes: list[Note],
-) -> np.ndarray:
-    """Adjust one conservative ion until the charges balance; repeated, as ions shift the activities."""
+) -> tuple[np.ndarray, np.ndarray]:
+    """Adjust one conservative ion until the charges balance, and where that can be done.
+
+    Repeated, as every ion shifts the activities a little.
+    """
     row = system.index[ion]
     before = totals[row].copy()
+    below = np.zeros(before.shape, bool)
     for _ in range(_CLOSING_PASSES):
         totals = totals.copy()
-        totals[row] -= system.solve(totals, temperature).charge / CLOSING_IONS[ion]
+        adjusted = totals[row] - system.solve(totals, temperature).charge / CLOSING_IONS[ion]
+        below |= adjusted < 0
+        totals[row] = np.maximum(adjusted, 0)
         totals, _ = settle(totals)
-    if np.any(totals[row] < 0):
-        other = next(name for name in CLOSING_IONS if name != ion)
+    if below.all():
+        allowed = ", ".join(["none", *(other for other in CLOSING_IONS if other != ion)])
         raise AnalysisError(
-            "close_with", f"{ion} would have to fall below zero to close the balance; allowed: none, {other}"
+            "close_with", f"{ion} would have to fall below zero to close the balance; allowed: {allowed}"
         )
     change = from_base(totals[row] - before, "mg/L", ion)
     notes.append(Note("caution", ion, f"changed by {_span(change, '+')} mg/L to close the charge balance"))
-    return totals
+    return totals, ~below
 
 
 def _compare_redundant(

@@ -1,6 +1,13 @@
 """Invented source waters as a laboratory sheet would give them, and the analyses made from them."""
 
-from explorer.treatment.analysis import Measured
+from collections.abc import Callable
+
+import numpy as np
+import pytest
+
+from explorer.chemistry import COMPONENT, System
+from explorer.treatment.analysis import Measured, analysis_totals
+from explorer.treatment.stream import Stream
 
 _SHEET_UNIT = {
     "temperature": "°C",
@@ -61,3 +68,50 @@ CALCIUM_AS_HARDNESS = _row(11, 7.25, 272, 290, 12.5, 21, 2.4, 38, 46, 29, 16)
 
 SULFATE_MISSING = _row(22, 7.35, 245, 92, 34, 118, 5, 210, None, 18, 14, fluoride=0.4, boron=0.2)
 """Cobble Wellfield without its sulfate."""
+
+
+@pytest.fixture(scope="session")
+def system() -> System:
+    """The usual system, without acids of the user."""
+    return System()
+
+
+@pytest.fixture(params=list(GOOD_WATERS))
+def good_water(request: pytest.FixtureRequest) -> dict[str, Measured]:
+    """Each of the waters whose analysis is in order."""
+    return GOOD_WATERS[request.param]
+
+
+@pytest.fixture
+def granite() -> dict[str, Measured]:
+    """A hard well water."""
+    return dict(GOOD_WATERS["Granite Wellfield"])
+
+
+@pytest.fixture
+def sheet() -> Callable[..., dict[str, Measured]]:
+    """Makes an analysis from numbers in the units of the sheet."""
+    return analysis
+
+
+@pytest.fixture(scope="session")
+def stream(system: System) -> Callable[..., Stream]:
+    """Makes a stream of one of the waters by name."""
+
+    def make(name: str, flow: float = 100.0) -> Stream:
+        intake = analysis_totals(GOOD_WATERS[name], system)
+        return Stream(system, intake.totals, intake.temperature, flow)
+
+    return make
+
+
+@pytest.fixture(scope="session")
+def charge(system: System) -> Callable[[np.ndarray], np.ndarray]:
+    """Charge [eq/L] that totals carry, from the zero-level forms alone."""
+
+    def of(totals: np.ndarray) -> np.ndarray:
+        weights = np.array([COMPONENT[key].charge for key in system.keys], float)
+        weights[system.index["alkalinity"]] = -1
+        return np.tensordot(weights, totals, axes=1)
+
+    return of
