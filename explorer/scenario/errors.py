@@ -29,11 +29,14 @@ def join(path: str, key: str | int) -> str:
     return f"{path}.{clipped(key)}" if path else clipped(key)
 
 
+def cleaned(text: str) -> str:
+    """A foreign text without characters that cannot be seen."""
+    return "".join("\ufffd" if unicodedata.category(character)[0] == "C" else character for character in text)
+
+
 def clipped(text: str) -> str:
-    """A foreign text made fit for a sentence: no control characters, at most ``SHOWN_LENGTH`` long."""
-    clean = "".join(
-        "\ufffd" if unicodedata.category(character)[0] == "C" else character for character in text
-    )
+    """A foreign text made fit for a sentence: cleaned, at most ``SHOWN_LENGTH`` long."""
+    clean = cleaned(text[: SHOWN_LENGTH + 1])
     return clean if len(clean) <= SHOWN_LENGTH else clean[: SHOWN_LENGTH - 1] + "…"
 
 

@@ -141,6 +141,7 @@ class Scenario(Entity):
     @classmethod
     def from_dict(cls, raw: Any, path: str = "") -> Self:
         """Scenario from its JSON form, checked as a whole. Raises ScenarioError."""
+        # Imported late: the rules are about the classes of this module.
         from explorer.scenario.rules import check, check_format
 
         check_format(raw, path)

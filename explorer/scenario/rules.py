@@ -5,13 +5,16 @@ raises the first. Rules about one field stand with the field.
 """
 
 from collections.abc import Callable, Iterable
-from typing import TYPE_CHECKING, Any
+from typing import Any
 
+from explorer.chemistry import COMPONENTS
+from explorer.scenario.dials import Dial, dials, no_dial
 from explorer.scenario.errors import ScenarioError, join, listed, shown, unknown
 from explorer.scenario.fields import Faults, object_fault, outside, span
 from explorer.scenario.measured import entry_faults
 from explorer.scenario.model import FORMAT, VERSION, Scenario, SweepSetting
 from explorer.scenario.quantity import Quantity
+from explorer.scenario.readouts import READOUTS
 from explorer.scenario.shares import TOLERANCE, WHOLE
 from explorer.scenario.steps import DoseStep, SettleStep, Step
 from explorer.scenario.water import Analysis, Water
@@ -19,9 +22,6 @@ from explorer.treatment.analysis import ANALYSIS_KEYS, CARBONATE_KEYS
 from explorer.treatment.catalogue import SETTINGS
 from explorer.treatment.chemicals import CATALOGUE, Chemical, ChemicalError
 from explorer.treatment.units import substance_units
-
-if TYPE_CHECKING:
-    from explorer.scenario.dials import Dial
 
 RESERVED_IDS = ("blend", "finished")
 """Places in the train that have these names already."""
@@ -66,8 +66,6 @@ def _ids(scenario: Scenario) -> Faults:
     steps = ((path, step.id) for path, step in scenario.steps())
     yield from _repeated([*waters, *steps], "an id", RESERVED_IDS)
     acids = ((f"acids[{position}]", acid.id) for position, acid in enumerate(scenario.acids))
-    from explorer.chemistry import COMPONENTS
-
     yield from _repeated(acids, "an id", (*ANALYSIS_KEYS, *COMPONENTS, "close_with", "provenance"))
     chemicals = ((f"chemicals[{position}]", own.id) for position, own in enumerate(scenario.chemicals))
     yield from _repeated(chemicals, "an id", CATALOGUE)
@@ -184,8 +182,6 @@ def _dose(step: DoseStep, chemicals: dict[str, Chemical]) -> Faults:
         return
     doses: dict[str, Quantity | None] = {"dose": step.dose}
     if step.hold is not None:
-        from explorer.scenario.readouts import READOUTS
-
         doses["hold.ceiling"] = step.hold.ceiling
         if step.hold.readout not in READOUTS:
             yield "hold.readout", unknown(step.hold.readout, "a readout", READOUTS)
@@ -212,10 +208,6 @@ _STEP_RULES: dict[type[Step], Callable[[Any, dict[str, Chemical]], Faults]] = {
 
 
 def _targets(scenario: Scenario) -> Faults:
-    if not scenario.targets:
-        return
-    from explorer.scenario.readouts import READOUTS
-
     for position, target in enumerate(scenario.targets):
         path = f"targets[{position}]"
         if target.readout not in READOUTS:
@@ -229,8 +221,6 @@ def _targets(scenario: Scenario) -> Faults:
 def _dials(scenario: Scenario) -> Faults:
     if not scenario.tolerances and scenario.sweep is None:
         return
-    from explorer.scenario.dials import dials, no_dial
-
     known = {
         address: dial for season in scenario.seasons for address, dial in dials(scenario, season).items()
     }
@@ -255,8 +245,6 @@ def _dials(scenario: Scenario) -> Faults:
 def _sweep(sweep: SweepSetting, known: dict[str, Dial]) -> Faults:
     dial = known.get(sweep.dial)
     if dial is None:
-        from explorer.scenario.dials import no_dial
-
         yield "sweep.dial", no_dial(sweep.dial, known)
         return
     if sweep.start == sweep.stop:
