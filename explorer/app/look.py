@@ -1,8 +1,8 @@
 """The look in one place: colours, page and view styles, Bokeh themes, line colours, dashes and markers.
 
 A palette names each colour by what it means. The page reads it as CSS variables (``--ink``, ``--accent`` …),
-which reach into every shadow root; plots, being canvases, get it through :func:`bokeh_theme` and the columns of
-their sources. Text colours keep a contrast of at least 4.5:1 on ``card`` in both palettes (tested).
+which reach into every shadow root; plots, being canvases, get it through :func:`bokeh_theme` and the columns
+of their sources. Text colours keep a contrast of at least 4.5:1 on ``card`` in both palettes (tested).
 """
 
 from __future__ import annotations
@@ -20,8 +20,8 @@ FONT = 'system-ui, -apple-system, "Segoe UI", Roboto, "DejaVu Sans", sans-serif'
 
 @dataclass(frozen=True)
 class Palette:
-    """Colours by meaning. ``series`` orders line and label colours so that neighbours stay apart for colour-blind
-    readers; each comes with a dash of its own (``DASHES``), so colour never speaks alone."""
+    """Colours by meaning. ``series`` orders line and label colours so that neighbours stay apart for
+    colour-blind readers; each comes with a dash of its own (``DASHES``), so colour never speaks alone."""
 
     scheme: str
     bg: str
@@ -105,7 +105,9 @@ DARK = Palette(
 
 PALETTES = {palette.scheme: palette for palette in (LIGHT, DARK)}
 
-DASHES: tuple[list[int], ...] = ([], [8, 4], [2, 3], [9, 3, 2, 3], [14, 4], [5, 2, 1, 2, 1, 2], [4, 2], [1, 5])
+DASHES: tuple[list[int], ...] = (
+    [], [8, 4], [2, 3], [9, 3, 2, 3], [14, 4], [5, 2, 1, 2, 1, 2], [4, 2], [1, 5],
+)  # fmt: skip
 """Dash of the n-th line of a plot, in pixels on and off; [] is solid."""
 
 LINE_WIDTH = 2.2
@@ -139,15 +141,32 @@ def css_variables(palette: Palette) -> str:
 
 
 def page_css() -> str:
-    """Styles of the page itself: both palettes and the grid. Dark counts once the page says ``data-theme``."""
-    return (
-        f":root{{{css_variables(LIGHT)}}}\n:root[data-theme=dark]{{{css_variables(DARK)}}}\n"
-        + (FOLDER / "look.css").read_text(encoding="utf-8")
-    )
+    """Styles of the page itself: both palettes and the grid; dark where the page says ``data-theme=dark``."""
+    return f":root{{{css_variables(LIGHT)}}}\n:root[data-theme=dark]{{{css_variables(DARK)}}}\n" + (
+        FOLDER / "look.css"
+    ).read_text(encoding="utf-8")
 
 
-VIEW_CSS = (FOLDER / "views.css").read_text(encoding="utf-8")
-"""Styles of the views, handed to each as a stylesheet because page styles stop at a shadow root."""
+VIEW_STYLES = ("live_view.css", "views.css")
+"""Style files of the main column's views, which carry them because page styles stop at a shadow root."""
+
+
+PLOT_GRID_CSS = """
+:host { display: grid !important; grid-template-columns: repeat(2, minmax(0, 1fr));
+  grid-template-rows: repeat(2, minmax(0, 1fr)); gap: 10px; margin-top: 9px !important; min-height: 0; }
+@media (max-width: 759px) {
+  :host { grid-template-columns: minmax(0, 1fr); grid-template-rows: repeat(4, minmax(0, 1fr)); }
+}
+"""
+
+PLOT_CARD_CSS = """
+:host { background: var(--card); border: 1px solid var(--line); border-radius: 7px; overflow: hidden; min-height: 0; }
+"""
+
+
+def styles(names: tuple[str, ...]) -> list[str]:
+    """Contents of style files beside this module."""
+    return [(FOLDER / name).read_text(encoding="utf-8") for name in names]
 
 
 def bokeh_theme(palette: Palette) -> Theme:

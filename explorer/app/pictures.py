@@ -23,9 +23,13 @@ MOST_LINES = 6
 OTHERS = "others"
 
 
+Band = tuple[float | None, float | None]
+"""Lower and upper bound of a target; None where there is none."""
+
+
 @dataclass(frozen=True)
 class Line:
-    """One curve: ``name`` labels its end ("" for a plot with one curve), ``y`` has nan where nothing was solved."""
+    """One curve: ``name`` labels its end ("" in a plot with one curve); ``y`` is nan where nothing was solved."""
 
     name: str
     y: np.ndarray
@@ -51,8 +55,9 @@ class Picture:
     limits: Limits
     digits: int
     unit: str = ""
+    significant: int | None = None
     signed: bool = False
-    band: tuple[float | None, float | None] | None = None
+    band: Band | None = None
     marks: tuple[Mark, ...] = ()
     gaps: tuple[tuple[float, float, str], ...] = ()
     words: str = ""
@@ -77,8 +82,8 @@ def axis(name: str, unit: str, x: np.ndarray) -> Axis:
     return Axis(name, unit, int(min(6, max(0, 2 - np.floor(np.log10(span) + 1e-9)))) if span < 100 else 0)
 
 
-def band_of(targets: Sequence[tuple[float | None, float | None]]) -> tuple[float | None, float | None] | None:
-    """The band that meets all of ``targets`` (low, high); None without targets or when they exclude each other."""
+def band_of(targets: Sequence[Band]) -> Band | None:
+    """The band that meets all of ``targets``; None without targets or when they exclude each other."""
     lows = [low for low, _ in targets if low is not None]
     highs = [high for _, high in targets if high is not None]
     low, high = max(lows, default=None), min(highs, default=None)
@@ -113,6 +118,7 @@ class Quantity:
     label: str
     unit: str
     digits: int
+    significant: int | None = None
     signed: bool = False
 
 
@@ -121,7 +127,7 @@ def readout_picture(
     x: np.ndarray,
     y: np.ndarray,
     along: Axis,
-    targets: Sequence[tuple[float | None, float | None]] = (),
+    targets: Sequence[Band] = (),
     reasons: np.ndarray | None = None,
     previous: Limits | None = None,
 ) -> Picture:
@@ -145,6 +151,7 @@ def readout_picture(
         limits=limits,
         digits=quantity.digits,
         unit=quantity.unit,
+        significant=quantity.significant,
         signed=quantity.signed,
         band=band_of(targets),
         marks=marks,
@@ -174,8 +181,17 @@ def species_picture(
     missing = _gaps(x, total, reasons) if amounts else ()
     note = "log₁₀ of mol/L" if logarithmic else "% of the family, by amount of substance"
     if not present:
-        return Picture(label, note, x, (), previous or (0.0, 1.0), 0, gaps=missing,
-                       words=f"{label}: none in this water.", empty=f"No {family} in this water.")
+        return Picture(
+            label,
+            note,
+            x,
+            (),
+            previous or (0.0, 1.0),
+            0,
+            gaps=missing,
+            words=f"{label}: none in this water.",
+            empty=f"No {family} in this water.",
+        )
     lines: list[Line] = []
     with np.errstate(divide="ignore", invalid="ignore"):
         for name, amount in _foremost(amounts).items():
@@ -189,13 +205,22 @@ def species_picture(
     else:
         limits = (0.0, 100.0)
     ends = ", ".join(f"{line.name} {_span_words(line.y, 1 if logarithmic else 0)}" for line in lines)
-    return Picture(label, note, x, tuple(lines), limits, 2 if logarithmic else 1,
-                   unit="" if logarithmic else "%", gaps=missing,
-                   words=f"{label}, {note}, against {in_sentence(along.name)}: {ends}.")
+    return Picture(
+        label,
+        note,
+        x,
+        tuple(lines),
+        limits,
+        2 if logarithmic else 1,
+        unit="" if logarithmic else "%",
+        gaps=missing,
+        words=f"{label}, {note}, against {in_sentence(along.name)}: {ends}.",
+    )
 
 
 def _foremost(amounts: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
     """The species worth a line of their own, largest first by their greatest amount; the others summed."""
+
     def greatest(name: str) -> float:
         finite = amounts[name][np.isfinite(amounts[name])]
         return float(finite.max()) if finite.size else 0.0
@@ -214,12 +239,8 @@ def _gaps(x: np.ndarray, y: np.ndarray, reasons: np.ndarray | None) -> tuple[tup
     unsolved = ~np.isfinite(y)
     if not unsolved.any():
         return ()
-    given = np.array(["" if reason is None else str(reason) for reason in reasons]) if reasons is not None else None
-    texts = [
-        ((given[index] if given is not None else "") or "no solution") if unsolved[index] else ""
-        for index in range(len(x))
-    ]
-    return tuple(gaps(x, np.array(texts)))
+    given = np.broadcast_to("" if reasons is None else np.asarray(reasons, str), x.shape)
+    return tuple(gaps(x, np.where(unsolved, np.where(given == "", "no solution", given), "")))
 
 
 def _first_reason(missing: tuple[tuple[float, float, str], ...]) -> str:
@@ -252,7 +273,8 @@ def _words(
     def at(index: int) -> str:
         return f"{number_text(float(y[index]), quantity.digits)} at {along.at(float(x[index]))}"
 
-    text = f"{quantity.label}{',' + unit if unit else ''} against {in_sentence(along.name)}: {at(first)}, {at(last)}"
+    name = f"{quantity.label},{unit}" if unit else quantity.label
+    text = f"{name} against {in_sentence(along.name)}: {at(first)}, {at(last)}"
     if low not in (first, last):
         text += f", lowest {at(low)}"
     if high not in (first, last):

@@ -60,14 +60,16 @@ def _in_page(**columns: list[Any]) -> ColumnDataSource:
 class LinePlot:
     """One figure: curves, target band, crossings, gaps, end labels, operating point."""
 
-    def __init__(self, name: str, x_range: Range1d, point: Span, cross: Span, labels_right: bool, x_label: bool) -> None:
+    def __init__(
+        self, name: str, x_range: Range1d, point: Span, cross: Span, labels_right: bool, x_label: bool
+    ) -> None:
         self.name = name
         self.picture: Picture | None = None
         self.palette = LIGHT
         self.y_range = Range1d(0, 1)
         self.has_x_label = x_label
         self.lines = ColumnDataSource(
-            data={key: [] for key in ("xs", "ys", "colour", "dash", "label", "digits", "signed")}
+            data={key: [] for key in ("xs", "ys", "colour", "dash", "label", "digits", "figures", "signed")}
         )
         self.ends = ColumnDataSource(data={"x": [], "y": [], "text": [], "colour": []})
         self.crossings = ColumnDataSource(data={"x": [], "y": [], "text": [], "dx": [], "align": []})
@@ -78,9 +80,18 @@ class LinePlot:
 
     def _build(self, x_range: Range1d, point: Span, cross: Span, labels_right: bool) -> figure:
         fig = figure(
-            name=self.name, x_range=x_range, y_range=self.y_range, tools=[], toolbar_location=None,
-            sizing_mode="stretch_both", min_height=120, min_border_left=54, min_border_top=6,
-            min_border_right=74 if labels_right else 20, min_border_bottom=26, output_backend="canvas",
+            name=self.name,
+            x_range=x_range,
+            y_range=self.y_range,
+            tools=[],
+            toolbar_location=None,
+            sizing_mode="stretch_both",
+            min_height=120,
+            min_border_left=54,
+            min_border_top=6,
+            min_border_right=74 if labels_right else 20,
+            min_border_bottom=26,
+            output_backend="canvas",
             html_attributes={"role": "img", "aria-label": self.name},
         )
         fig.xgrid.grid_line_color = None
@@ -88,36 +99,92 @@ class LinePlot:
         fig.yaxis.ticker = BasicTicker(desired_num_ticks=5)
         fig.xaxis.ticker = BasicTicker(desired_num_ticks=6)
         fig.yaxis.axis_line_color = None
-        self.band = BoxAnnotation(level="underlay", fill_alpha=0.1, line_alpha=0.35, line_dash=[2, 2], visible=False)
+        self.band = BoxAnnotation(
+            level="underlay", fill_alpha=0.1, line_alpha=0.35, line_dash=[2, 2], visible=False
+        )
         fig.add_layout(self.band)
         self.gap = fig.vstrip(
-            x0="x0", x1="x1", source=self.gaps, level="underlay", line_alpha=0, fill_alpha=0.5,
-            hatch_pattern="right_diagonal_line", hatch_scale=8, hatch_weight=0.6, hatch_alpha=0.5,
+            x0="x0",
+            x1="x1",
+            source=self.gaps,
+            level="underlay",
+            line_alpha=0,
+            fill_alpha=0.5,
+            hatch_pattern="right_diagonal_line",
+            hatch_scale=8,
+            hatch_weight=0.6,
+            hatch_alpha=0.5,
         )
         self.curve = fig.multi_line(
-            xs="xs", ys="ys", source=self.lines, line_color="colour", line_dash="dash", line_width=LINE_WIDTH,
+            xs="xs",
+            ys="ys",
+            source=self.lines,
+            line_color="colour",
+            line_dash="dash",
+            line_width=LINE_WIDTH,
             line_join="round",
         )
         self.crossing = fig.scatter(
-            x="x", y="y", source=self.crossings, marker=CROSSING_MARKER, size=9, line_width=1.2, level="annotation",
+            x="x",
+            y="y",
+            source=self.crossings,
+            marker=CROSSING_MARKER,
+            size=9,
+            line_width=1.2,
+            level="annotation",
         )
         self.crossing_text = fig.text(
-            x="x", y="y", text="text", source=self.crossings, text_font=FONT, text_font_size="11px", x_offset="dx",
-            y_offset=-5, text_align="align", text_baseline="bottom", level="annotation",
+            x="x",
+            y="y",
+            text="text",
+            source=self.crossings,
+            text_font=FONT,
+            text_font_size="11px",
+            x_offset="dx",
+            y_offset=-5,
+            text_align="align",
+            text_baseline="bottom",
+            level="annotation",
         )
         self.end = fig.text(
-            x="x", y="y", text="text", source=self.ends, text_color="colour", text_font=FONT, x_offset=7,
-            text_font_size="12px", text_baseline="middle", level="overlay",
+            x="x",
+            y="y",
+            text="text",
+            source=self.ends,
+            text_color="colour",
+            text_font=FONT,
+            x_offset=7,
+            text_font_size="12px",
+            text_baseline="middle",
+            level="overlay",
         )
         fig.add_layout(point)
         self.ring = fig.scatter(
-            x="x", y="y", source=self.rings, marker=POINT_MARKER, size=9, line_width=LINE_WIDTH, line_color="colour",
+            x="x",
+            y="y",
+            source=self.rings,
+            marker=POINT_MARKER,
+            size=9,
+            line_width=LINE_WIDTH,
+            line_color="colour",
             level="overlay",
         )
         self.label = fig.text(
-            x="x", y="y", text="text", source=self.labels, text_color="colour", text_font=FONT,
-            text_font_size="12px", text_font_style="bold", x_offset="dx", text_align="align", text_baseline="middle",
-            background_fill_alpha=0.88, padding=3, border_radius=3, level="overlay",
+            x="x",
+            y="y",
+            text="text",
+            source=self.labels,
+            text_color="colour",
+            text_font=FONT,
+            text_font_size="12px",
+            text_font_style="bold",
+            x_offset="dx",
+            text_align="align",
+            text_baseline="middle",
+            background_fill_alpha=0.88,
+            padding=3,
+            border_radius=3,
+            level="overlay",
         )
         fig.add_tools(CrosshairTool(overlay=[cross, Span(dimension="width", line_alpha=0)]))
         return fig
@@ -158,7 +225,11 @@ class LinePlot:
         picture, palette = self.picture, self.palette
         assert picture is not None
         count = len(picture.lines)
-        colours = [palette.accent] if count == 1 else [palette.series[i % len(palette.series)] for i in range(count)]
+        colours = (
+            [palette.accent]
+            if count == 1
+            else [palette.series[i % len(palette.series)] for i in range(count)]
+        )
         self.lines.data = {
             "xs": [picture.x] * count,
             "ys": [line.y for line in picture.lines],
@@ -166,6 +237,7 @@ class LinePlot:
             "dash": [DASHES[i % len(DASHES)] for i in range(count)],
             "label": [line.name for line in picture.lines],
             "digits": [picture.digits] * count,
+            "figures": [picture.significant or 0] * count,
             "signed": [picture.signed] * count,
         }
         self.ends.data = self._end_labels(picture, colours)
@@ -212,13 +284,20 @@ class LinkedPlots:
         self.turned = turned
         self.x_range = Range1d(0, 1)
         self.point = Span(
-            name="operating-point", dimension="height", location=0, editable=True, line_width=1.6, line_dash=[2, 3],
+            name="operating-point",
+            dimension="height",
+            location=0,
+            editable=True,
+            line_width=1.6,
+            line_dash=[2, 3],
             level="annotation",
         )
         cross = Span(dimension="height", line_width=1, line_alpha=0.6)
         self.cross = cross
         self.plots = {
-            name: LinePlot(name, self.x_range, self.point, cross, labels_right=index % 2 == 1, x_label=index >= 2)
+            name: LinePlot(
+                name, self.x_range, self.point, cross, labels_right=index % 2 == 1, x_label=index >= 2
+            )
             for index, name in enumerate(names)
         }
         self._quiet = False
@@ -227,8 +306,13 @@ class LinkedPlots:
 
     def _wire(self) -> None:
         parts = [
-            {"lines": plot.lines, "rings": plot.rings, "labels": plot.labels, "y_range": plot.y_range,
-             "figure": plot.figure}
+            {
+                "lines": plot.lines,
+                "rings": plot.rings,
+                "labels": plot.labels,
+                "y_range": plot.y_range,
+                "figure": plot.figure,
+            }
             for plot in self.plots.values()
         ]
         script = CustomJS(args={"parts": parts, "point": self.point, "x_range": self.x_range}, code=_SCRIPT)

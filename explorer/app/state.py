@@ -24,9 +24,10 @@ from dataclasses import dataclass, field
 from typing import Any, Protocol
 
 import param
+
 from explorer.scenario.dials import Dial, dials, get_value, turn
 from explorer.scenario.evaluate import Outcome, evaluate
-from explorer.scenario.model import Scenario
+from explorer.scenario.model import Scenario, SweepSetting
 from explorer.studies.sweep import Sweep, sweep
 
 MERGE_SECONDS = 0.8  # turns of one dial that follow each other faster than this are one undo step
@@ -74,12 +75,20 @@ class Work:
     scenario: Scenario
     file_name: str = "scenario.json"
     saved: dict[str, Any] | None = None
+    choices: dict[str, Any] = field(default_factory=dict)
     past: list[Step] = field(default_factory=list)
     future: list[Step] = field(default_factory=list)
 
     def copy(self) -> Work:
         """Independent record: the scenario is copied, history entries are never mutated and may be shared."""
-        return Work(self.scenario.copy(), self.file_name, self.saved, list(self.past), list(self.future))
+        return Work(
+            self.scenario.copy(),
+            self.file_name,
+            self.saved,
+            dict(self.choices),
+            list(self.past),
+            list(self.future),
+        )
 
 
 def solve(scenario: Scenario, wanted: Iterable[str] = ()) -> Results:
@@ -118,6 +127,7 @@ class Session(param.Parameterized):
     values = param.Integer(0, doc="bumped at once when dial values changed")
     message = param.String("", doc="sentence for the message line")
     stale = param.Boolean(False, doc="results on screen belong to earlier inputs")
+    choices = param.Dict({}, doc="what views show (tiles, plots); not part of the scenario file")
     unsaved = param.Boolean(False)
     can_undo = param.Boolean(False)
     can_redo = param.Boolean(False)
@@ -129,7 +139,7 @@ class Session(param.Parameterized):
         clock: Callable[[], float] = time.monotonic,
     ) -> None:
         record = work if isinstance(work, Work) else Work(work)
-        super().__init__(scenario=record.scenario)
+        super().__init__(scenario=record.scenario, choices=dict(record.choices))
         self.work = record
         self.runner: Runner = runner or Immediate()
         self._clock = clock
@@ -236,7 +246,8 @@ class Session(param.Parameterized):
         """Change the sweep: any of ``dial``, ``start``, ``stop``, ``points``."""
 
         def change(scenario: Scenario) -> None:
-            scenario.sweep = {**(scenario.sweep or {}), **plan}
+            kept = {} if scenario.sweep is None else scenario.sweep.to_dict()
+            scenario.sweep = SweepSetting.from_dict({**kept, **plan}, "sweep")
 
         return self.edit("Sweep", change, key="sweep", rebuild=False)
 
@@ -256,6 +267,12 @@ class Session(param.Parameterized):
         """Take back the last undo; nothing happens when there is none."""
         self._travel(self.work.future, self.work.past)
 
+    def choose(self, **choices: Any) -> None:
+        """Remember what a view shows, by name of the choice; neither an undo step nor an unsaved change."""
+        self.work.choices |= choices
+        self.choices = dict(self.work.choices)
+        self.calculate()
+
     def mark_saved(self) -> None:
         """The scenario as it stands has been written to a file."""
         self.work.saved = self.scenario.to_dict()
@@ -267,11 +284,18 @@ class Session(param.Parameterized):
         """Tell which readouts a view will ask for, so that they are computed off the event loop."""
         self._wanted[view] = tuple(readouts)
 
+    def solve_now(self) -> None:
+        """Solve before anything else happens; for the first page, which should come with results."""
+        self._apply(solve(self.scenario, self._all_wanted()))
+
     def calculate(self) -> None:
         """Solve the scenario as it stands; results arrive in ``point`` and ``swept``."""
         snapshot = self.scenario.copy()
-        wanted = {key for keys in self._wanted.values() for key in keys}
+        wanted = self._all_wanted()
         self.runner.submit(lambda: solve(snapshot, wanted), self._apply)
+
+    def _all_wanted(self) -> set[str]:
+        return {key for keys in self._wanted.values() for key in keys}
 
     def _apply(self, results: Results) -> None:
         if results.point is None:
@@ -318,3 +342,13 @@ class Session(param.Parameterized):
 
 def _mend_sweep(scenario: Scenario) -> None:
     """Point the sweep at a dial that exists: a removed water or step takes its dials with it."""
+    available = dials(scenario)
+    if scenario.sweep is not None and scenario.sweep.dial in available:
+        return
+    share = next((dial for address, dial in available.items() if address.endswith(".share")), None)
+    dial = share or next(iter(available.values()), None)
+    if dial is None:
+        scenario.sweep = None
+        return
+    stop = dial.high if dial.high is not None else max(2 * dial.value, dial.low + 100 * dial.step)
+    scenario.sweep = SweepSetting(dial=dial.address, start=dial.low, stop=stop)

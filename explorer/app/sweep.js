@@ -27,15 +27,16 @@ function at(xs, ys, x) {         // linear between neighbours; nan next to a gap
   return ys[low] + (ys[high] - ys[low]) * (x - xs[low]) / (xs[high] - xs[low])
 }
 
-function number(value, digits, signed) {
-  const text = Math.abs(value).toFixed(digits)
+function number(value, digits, figures, signed) {
+  const leading = value ? Math.floor(Math.log10(Math.abs(value))) + 1 : 1
+  const text = Math.abs(value).toFixed(figures ? Math.min(digits, Math.max(0, figures - leading)) : digits)
   if (Number(text) === 0) return text
   return (value < 0 ? "−" : signed ? "+" : "") + text
 }
 
 const where = mine.hover ?? point.location
 for (const part of parts) {
-  const { xs, ys, colour, label, digits, signed } = part.lines.data
+  const { xs, ys, colour, label, digits, figures, signed } = part.lines.data
   const low = Math.min(part.y_range.start, part.y_range.end), span = Math.abs(part.y_range.end - part.y_range.start)
   const rings = { x: [], y: [], colour: [] }
   const labels = []
@@ -46,7 +47,7 @@ for (const part of parts) {
     }
     const value = at(xs[i], ys[i], where)
     if (Number.isFinite(value) && (mine.hover !== null || xs.length === 1))
-      labels.push({ y: value, text: (label[i] ? label[i] + " " : "") + number(value, digits[i], signed[i]), colour: colour[i] })
+      labels.push({ y: value, text: (label[i] ? label[i] + " " : "") + number(value, digits[i], figures[i], signed[i]), colour: colour[i] })
   }
   // Labels keep their order and never cover each other; near the top or bottom they stay inside.
   const gap = 19 * span / Math.max(60, part.figure.inner_height || 200)

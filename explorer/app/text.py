@@ -25,9 +25,10 @@ _NAMED_AFTER = ("Langelier", "Larson", "Ryznar")
 
 
 def in_sentence(label: str) -> str:
-    """A label as it stands inside a sentence: small first letter unless a person, formula or sign (pH, HOCl)."""
-    first = label.split(" ", 1)[0]
-    if first in _NAMED_AFTER or any(letter.isupper() or not letter.isalpha() for letter in first[1:] if letter != "-"):
+    """A label inside a sentence: small first letter, except of persons, formulas and signs (pH, HOCl)."""
+    first = label.split(" ", 1)[0].rstrip(",")
+    written_as_is = any(letter.isupper() or not (letter.isalpha() or letter == "-") for letter in first[1:])
+    if first in _NAMED_AFTER or written_as_is:
         return label
     return label[:1].lower() + label[1:]
 
@@ -43,3 +44,9 @@ def formula_text(name: str) -> str:
     body, sign, number = charged.groups() if charged else (name, "", "")
     written = re.sub(r"(?<=[A-Za-z)\]])\d+", lambda digits: digits[0].translate(_SUBSCRIPT), body)
     return written + (number + sign).translate(_SUPERSCRIPT)
+
+
+def unit_text(unit: str) -> str:
+    """A unit as it is printed: "mg/L as CaCO3" → "mg/L as CaCO₃"."""
+    amount, joint, basis = unit.partition(" as ")
+    return f"{amount} as {formula_text(basis)}" if joint else unit

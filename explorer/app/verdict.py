@@ -15,13 +15,14 @@ from explorer.app.text import in_sentence
 class TargetState:
     """One target at the operating point and along the sweep.
 
-    ``value`` is in the readout's unit; ``along`` holds the readout along the sweep (nan where not solved).
+    ``value`` and the bounds are in the readout's ``unit``, ``text`` is the value as printed; ``along`` holds the
+    readout along the sweep (nan where not solved).
     """
 
     name: str
     value: float
+    text: str
     unit: str
-    digits: int
     low: float | None
     high: float | None
     along: np.ndarray | None = None
@@ -68,9 +69,12 @@ def _inside(value: float, low: float | None, high: float | None) -> bool:
     return (low is None or value >= low) and (high is None or value <= high)
 
 
-def stretches(x: np.ndarray, y: np.ndarray, low: float | None, high: float | None) -> list[tuple[float, float]]:
-    """Where along ``x`` a readout ``y`` lies within its bounds: (from, to) pairs, ends by linear interpolation."""
-    found: list[tuple[float, float]] = []
+Stretches = list[tuple[float, float]]
+
+
+def stretches(x: np.ndarray, y: np.ndarray, low: float | None, high: float | None) -> Stretches:
+    """Where along ``x`` a readout ``y`` lies within its bounds: (from, to), ends by linear interpolation."""
+    found: Stretches = []
 
     def add(start: float, stop: float) -> None:
         if found and start - found[-1][1] <= 1e-9 * (abs(start) + 1.0):
@@ -97,13 +101,13 @@ def stretches(x: np.ndarray, y: np.ndarray, low: float | None, high: float | Non
     return found
 
 
-def shared(first: list[tuple[float, float]], second: list[tuple[float, float]]) -> list[tuple[float, float]]:
+def shared(first: Stretches, second: Stretches) -> Stretches:
     """Overlap of two lists of stretches."""
     pairs = [(max(a, c), min(b, d)) for a, b in first for c, d in second]
     return [(start, stop) for start, stop in pairs if start < stop]
 
 
-def where(places: list[tuple[float, float]], x: np.ndarray, unit: str, name: str) -> str:
+def where(places: Stretches, x: np.ndarray, unit: str, name: str) -> str:
     """Stretches of the sweep in words: "from 52 % Granite Wellfield", "between 20 and 45 %", "nowhere …"."""
     if not places:
         return "nowhere along this sweep"
@@ -176,10 +180,9 @@ def verdict(
     if not solved:
         return Verdict(lead, carbonate, good)
     limiting = min(solved, key=lambda state: state.room)
-    value = number_text(limiting.value, limiting.digits)
     wish = range_text(limiting.low, limiting.high)
     word = "Closest to its bound" if limiting.met else "Limiting"
-    rest = f"{word}: {in_sentence(limiting.name)} {value}{_spaced(limiting.unit)}, target {wish}"
+    rest = f"{word}: {in_sentence(limiting.name)} {limiting.text}{_spaced(limiting.unit)}, target {wish}"
     if not good and x is not None and limiting.along is not None:
         all_met = _all_met(states, x)
         places = stretches(x, limiting.along, limiting.low, limiting.high)
@@ -189,7 +192,7 @@ def verdict(
     return Verdict(lead, f"{carbonate} {rest}.".strip(), good)
 
 
-def _all_met(states: Sequence[TargetState], x: np.ndarray) -> list[tuple[float, float]] | None:
+def _all_met(states: Sequence[TargetState], x: np.ndarray) -> Stretches | None:
     common = [(float(x[0]), float(x[-1]))]
     for state in states:
         if state.along is None:
@@ -200,5 +203,3 @@ def _all_met(states: Sequence[TargetState], x: np.ndarray) -> list[tuple[float, 
 
 def _spaced(unit: str) -> str:
     return f" {unit}" if unit else ""
-
-

@@ -1,0 +1,130 @@
+"""The top bar: title, season, undo and redo, shipped scenarios."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from typing import Any
+
+from explorer.app.entry import Entries
+from explorer.app.live_view import LiveView, Node, node
+from explorer.app.look import VIEW_STYLES
+from explorer.app.state import Session
+from explorer.app.text import plain
+from explorer.scenario.model import Scenario
+
+MOST_CHIPS = 4
+"""More seasons than this are chosen from a list instead of chips."""
+
+
+class Bar(LiveView):
+    """What the scenario is called, which season is shown, and the way back.
+
+    examples: titles of the shipped scenarios by name. open_example: gets the name of the one chosen.
+    """
+
+    css = VIEW_STYLES
+
+    def __init__(
+        self,
+        session: Session,
+        examples: Mapping[str, str],
+        open_example: Callable[[str], object],
+        **settings: Any,
+    ) -> None:
+        self.session = session
+        self.examples = examples
+        self.open_example = open_example
+        self.entries = Entries()
+        super().__init__(sizing_mode="stretch_width", **settings)
+        session.param.watch(self._changed, ["structure", "values", "unsaved", "can_undo", "can_redo"])
+        self.refresh()
+
+    def describe(self) -> Node:
+        scenario, session = self.session.scenario, self.session
+        title, refusal = self.entries.text(
+            "title", "Title of the scenario", scenario.title, self._rename_scenario, look="title",
+            maxlength=200,
+        )  # fmt: skip
+        return node(
+            "div", "bar",
+            title, refusal,
+            node("span", "unsaved", text="● not saved" if session.unsaved else "",
+                 title="Changed since it was opened or saved"),
+            node("div", "grow"),
+            *self._seasons(),
+            _icon("undo", "Undo", session.undo_label, session.can_undo, session.undo),
+            _icon("redo", "Redo", session.redo_label, session.can_redo, session.redo),
+            *self._examples(),
+        )  # fmt: skip
+
+    def _seasons(self) -> list[Node | None]:
+        scenario = self.session.scenario
+        if len(scenario.seasons) < 2:
+            return []
+        label = node("span", "name", text="Season")
+        if len(scenario.seasons) > MOST_CHIPS:
+            names = {name: plain(name, 30) for name in scenario.seasons}
+            return [label, self.entries.choice("season", "Season", names, scenario.season, self._season)]
+        return [
+            label,
+            *(
+                node("button", "chip", text=plain(name, 20), key=f"season:{index}", type="button",
+                     aria_pressed=str(name == scenario.season).lower(), on=self._chip(name))
+                for index, name in enumerate(scenario.seasons)
+            ),
+        ]  # fmt: skip
+
+    def _examples(self) -> list[Node]:
+        if not self.examples:
+            return []
+        sheet = "examples"
+        rows = [
+            node(
+                "button",
+                "",
+                text=plain(title, 70),
+                key=f"example:{name}",
+                type="button",
+                on=self._example(name),
+            )
+            for name, title in self.examples.items()
+        ]
+        return [
+            node("button", "press", text="Examples", key="examples-button", type="button",
+                 popovertarget=sheet, aria_haspopup="menu", aria_expanded="false"),
+            node("div", "", node("h3", text="Shipped scenarios, invented waters"), *rows, key=sheet, id=sheet,
+                 popover="auto", aria_label="Shipped scenarios"),
+        ]  # fmt: skip
+
+    def _chip(self, name: str) -> Callable[[Any], None]:
+        return lambda value: self._season(name)
+
+    def _example(self, name: str) -> Callable[[Any], None]:
+        return lambda value: self.open_example(name)
+
+    def _season(self, name: str) -> None:
+        if name != self.session.season:
+            self.session.choose_season(name)
+
+    def _rename_scenario(self, text: str) -> str:
+        wanted = plain(text, 200)
+        if not wanted:
+            return "a title is needed"
+
+        def change(scenario: Scenario) -> None:
+            scenario.title = wanted
+
+        if wanted == self.session.scenario.title:
+            return ""
+        return self.session.edit("Title", change, rebuild=False)
+
+    def _changed(self, *events: Any) -> None:
+        self.refresh()
+
+
+def _icon(key: str, word: str, what: str, possible: bool, run: Callable[[], None]) -> Node:
+    hint = f"{word}: {plain(what, 60)}" if possible and what else word
+    return node(
+        "button", f"press icon glyph-{key}", key=key, type="button", aria_label=hint, title=hint,
+        disabled=not possible, on=lambda value: run(),
+    )  # fmt: skip

@@ -1,0 +1,86 @@
+// Open and save: the file picker and the download have to start in the page. Also the title of the browser tab,
+// the question before leaving with unsaved changes, and the keys for save, undo and redo.
+export function render({ model }) {
+  const view = document.createElement("div")
+  view.className = "live-view"
+  const bar = view.appendChild(document.createElement("div"))
+  bar.className = "bar"
+
+  const picker = document.createElement("input")
+  picker.type = "file"
+  picker.accept = ".json,application/json"
+  picker.hidden = true
+  picker.setAttribute("aria-label", "Scenario file")
+
+  function button(text, title, act) {
+    const made = document.createElement("button")
+    made.type = "button"
+    made.className = "press"
+    made.textContent = text
+    made.title = title
+    made.addEventListener("click", act)
+    return made
+  }
+  const save = () => model.send_msg({ act: "save" })
+  bar.append(
+    button("Open", "Open a scenario file", () => picker.click()),
+    button("Save", "Save as a scenario file (Ctrl+S)", save),
+    picker,
+  )
+
+  picker.addEventListener("change", async () => {
+    const file = picker.files[0]
+    picker.value = ""          // the same file can be chosen again
+    if (!file) return
+    if (file.size > model.limit) return model.send_msg({ act: "too large", name: file.name, size: file.size })
+    const bytes = new Uint8Array(await file.arrayBuffer())
+    let text = ""
+    for (let at = 0; at < bytes.length; at += 8192) text += String.fromCharCode(...bytes.subarray(at, at + 8192))
+    model.send_msg({ act: "open", name: file.name, content: btoa(text) })
+  })
+
+  model.on("msg:custom", (event) => {
+    const { text, name } = event.data ?? event
+    const link = document.createElement("a")
+    link.href = URL.createObjectURL(new Blob([text], { type: "application/json" }))
+    link.download = name
+    link.click()
+    setTimeout(() => URL.revokeObjectURL(link.href), 10_000)
+  })
+
+  const inField = (event) => {
+    const target = event.composedPath()[0]
+    return target instanceof HTMLElement && (target.isContentEditable || target.tagName === "SELECT"
+      || target.tagName === "TEXTAREA" || (target.tagName === "INPUT" && !["range", "checkbox"].includes(target.type)))
+  }
+  const onKey = (event) => {
+    if (!(event.ctrlKey || event.metaKey) || event.altKey) return
+    const key = event.key.toLowerCase()
+    if (key === "s" && !event.shiftKey) { event.preventDefault(); save() }
+    else if (key === "z" && !inField(event)) {
+      event.preventDefault()
+      model.send_msg({ act: event.shiftKey ? "redo" : "undo" })
+    }
+  }
+  const onLeave = (event) => { if (model.unsaved) event.preventDefault() }
+  const showTitle = () => { document.title = `${model.unsaved ? "● " : ""}${model.title} – Blendwright` }
+  document.addEventListener("keydown", onKey)
+  window.addEventListener("beforeunload", onLeave)
+  model.on("title", showTitle)
+  model.on("unsaved", showTitle)
+  showTitle()
+
+  // A reload asks for the same working copy: its name stands in the address.
+  if (model.tab) {
+    const address = new URL(window.location.href)
+    if (address.searchParams.get("copy") !== model.tab) {
+      address.searchParams.set("copy", model.tab)
+      window.history.replaceState(null, "", address)
+    }
+  }
+  model.on("remove", () => {
+    document.removeEventListener("keydown", onKey)
+    window.removeEventListener("beforeunload", onLeave)
+  })
+  return view
+}

@@ -1,0 +1,145 @@
+"""Opening and saving scenario files, the unsaved mark, and working copies that survive a reload."""
+
+from __future__ import annotations
+
+import base64
+import binascii
+import re
+import secrets
+from collections import OrderedDict
+from functools import cache
+from typing import Any
+
+import param
+from panel.custom import JSComponent
+
+from explorer.app.look import VIEW_STYLES, styles
+from explorer.app.state import Session, Work
+from explorer.app.text import plain
+from explorer.scenario.files import LARGEST_FILE, ScenarioError, dumps, open_scenario, read_scenario
+from explorer.scenario.shipped import shipped
+
+_KEPT_COPIES = 64
+_NAME = re.compile(r"[\w\-]{8,40}")
+
+
+def file_name(title: str) -> str:
+    """A file name from a title: letters, digits and hyphens of any script, never empty."""
+    words = re.sub(r"[^\w]+", "-", title.lower()).strip("-_")
+    return f"{words[:60].rstrip('-') or 'scenario'}.json"
+
+
+class Shelf:
+    """Working copies by browser tab, in memory: the newest ``limit`` are kept until the server stops."""
+
+    def __init__(self, limit: int = _KEPT_COPIES) -> None:
+        self.limit = limit
+        self._copies: OrderedDict[str, Work] = OrderedDict()
+
+    def take(self, tab: str) -> Work | None:
+        """A copy of what is kept for ``tab``, None where there is nothing."""
+        kept = self._copies.get(tab)
+        return None if kept is None else kept.copy()
+
+    def keep(self, tab: str, work: Work) -> None:
+        """Keep ``work``, a live record, for ``tab``."""
+        self._copies[tab] = work
+        self._copies.move_to_end(tab)
+        while len(self._copies) > self.limit:
+            self._copies.popitem(last=False)
+
+
+def tab_name(asked: str = "") -> str:
+    """The name a tab asked for if it is one of ours, else a new one that cannot be guessed."""
+    return asked if _NAME.fullmatch(asked) else secrets.token_urlsafe(12)
+
+
+@cache
+def example_titles() -> dict[str, str]:
+    """Titles of the shipped scenarios by name; one that cannot be read goes by its name."""
+    titles = {}
+    for name, path in shipped().items():
+        try:
+            titles[name] = open_scenario(path).title
+        except ScenarioError:
+            titles[name] = name
+    return titles
+
+
+class FileDesk(JSComponent):
+    """The buttons Open and Save, and everything of files that has to happen in the page.
+
+    ``tab`` names the working copy for a reload, "" for none.
+    """
+
+    title = param.String(default="")
+    unsaved = param.Boolean(default=False)
+    limit = param.Integer(default=LARGEST_FILE)
+    tab = param.String(default="")
+
+    _esm = "files.js"
+
+    def __init__(self, session: Session, **settings: Any) -> None:
+        self._session = session
+        super().__init__(stylesheets=styles(VIEW_STYLES), **settings)
+        session.param.watch(self._changed, ["structure", "unsaved", "scenario"])
+        self._changed()
+
+    def open_bytes(self, content: bytes, name: str) -> str:
+        """Take over a scenario file; "" or the sentence that says why it is refused. The old one then stays."""
+        if len(content) > LARGEST_FILE:
+            return self._refuse(
+                name, f"is larger than {LARGEST_FILE // 1_000_000} MB; allowed are scenario files"
+            )
+        try:
+            scenario = read_scenario(content)
+        except ScenarioError as error:
+            return self._refuse(name, str(error))
+        self._session.replace(scenario, plain(name, 100))
+        return ""
+
+    def open_example(self, name: str) -> str:
+        """Take over a shipped scenario by its name."""
+        path = shipped().get(name)
+        if path is None:
+            return self._refuse(name, "is not a shipped scenario")
+        try:
+            scenario = open_scenario(path)
+        except ScenarioError as error:
+            return self._refuse(path.name, str(error))
+        self._session.replace(scenario, path.name)
+        return ""
+
+    def save(self) -> None:
+        """Hand the scenario to the browser as a download."""
+        session = self._session
+        self._send_msg({"text": dumps(session.scenario), "name": file_name(session.scenario.title)})
+        session.mark_saved()
+
+    def _refuse(self, name: str, why: str) -> str:
+        sentence = f"{plain(name, 60)} was not opened: {plain(why, 400)}"
+        self._session.message = sentence
+        return sentence
+
+    def _handle_msg(self, data: Any) -> None:
+        if not isinstance(data, dict):
+            return
+        act, name = data.get("act"), str(data.get("name", ""))
+        if act == "save":
+            self.save()
+        elif act == "undo":
+            self._session.undo()
+        elif act == "redo":
+            self._session.redo()
+        elif act == "too large":
+            self._refuse(name, f"is larger than {LARGEST_FILE // 1_000_000} MB; allowed are scenario files")
+        elif act == "open":
+            try:
+                content = base64.b64decode(str(data.get("content", "")), validate=True)
+            except binascii.Error:
+                self._refuse(name, "did not arrive whole; open it again")
+                return
+            self.open_bytes(content, name)
+
+    def _changed(self, *events: Any) -> None:
+        self.param.update(title=plain(self._session.scenario.title, 100), unsaved=self._session.unsaved)

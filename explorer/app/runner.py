@@ -1,0 +1,55 @@
+"""Calculations off the event loop: one at a time, the newest input next, every finished result applied.
+
+A running calculation is never dropped for a newer input, otherwise nothing would be drawn during a drag.
+"""
+
+from __future__ import annotations
+
+import asyncio
+import logging
+from collections.abc import Callable
+from concurrent.futures import ThreadPoolExecutor
+from typing import Any
+
+import panel as pn
+
+logger = logging.getLogger(__name__)
+
+POOL = ThreadPoolExecutor(max_workers=2, thread_name_prefix="solve")
+"""Shared by all tabs of the server; NumPy lets two calculations overlap."""
+
+
+class Conflate:
+    """Runner for one tab. Without an event loop (tests, scripts) it computes at once."""
+
+    def __init__(self, pool: ThreadPoolExecutor = POOL) -> None:
+        self._pool = pool
+        self._next: tuple[Callable[[], Any], Callable[[Any], None]] | None = None
+        self._task: asyncio.Task[None] | None = None
+
+    @property
+    def busy(self) -> bool:
+        return self._task is not None and not self._task.done()
+
+    def submit(self, compute: Callable[[], Any], apply: Callable[[Any], None]) -> None:
+        """Run ``compute`` next, in place of one still waiting, and give its result to ``apply``."""
+        try:
+            loop = asyncio.get_running_loop()
+        except RuntimeError:
+            apply(compute())
+            return
+        self._next = (compute, apply)
+        if not self.busy:
+            self._task = loop.create_task(self._work_off())
+
+    async def _work_off(self) -> None:
+        while self._next is not None:
+            (compute, apply), self._next = self._next, None
+            try:
+                result = await asyncio.get_running_loop().run_in_executor(self._pool, compute)
+                # Bokeh refuses changes outside of an event unless they are held; held ones leave as one message.
+                with pn.io.hold():
+                    apply(result)
+            except Exception:
+                logger.exception("a calculation could not be shown")
+            await asyncio.sleep(0)

@@ -1,0 +1,77 @@
+"""The page: own template, views in their places, theme."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+import panel as pn
+from panel.theme.native import Native
+
+from explorer.app.bar import Bar
+from explorer.app.files import FileDesk, example_titles
+from explorer.app.look import FOLDER, THEMES, Palette, page_css
+from explorer.app.rail import Rail
+from explorer.app.state import Session
+from explorer.app.summary import Foot, Message, Summary
+from explorer.app.sweep_view import SweepView
+from explorer.app.theme import ThemeSwitch
+from explorer.app.tiles import Tiles
+
+TITLE = "Blendwright"
+
+
+class Shell:
+    """Everything on the page of one session. ``template`` is what is served.
+
+    tab: name of the working copy that a reload of the browser tab asks for, "" for none.
+    """
+
+    def __init__(self, session: Session, tab: str = "") -> None:
+        self.session = session
+        self.theme = ThemeSwitch()
+        self.files = FileDesk(session, tab=tab)
+        self.bar = Bar(session, example_titles(), self.files.open_example)
+        self.rail = Rail(session)
+        self.tiles = Tiles(session)
+        self.summary = Summary(session, self.tiles)
+        self.message = Message(session)
+        self.sweep = SweepView(session)
+        self.foot = Foot(session)
+        self.template = self._page()
+
+    @property
+    def places(self) -> Mapping[str, pn.viewable.Viewable]:
+        """Views by their place in the page."""
+        return {
+            "bar": self.bar,
+            "files": self.files,
+            "theme": self.theme,
+            "rail": self.rail.view,
+            "message": self.message,
+            "tiles": self.tiles,
+            "summary": self.summary,
+            "views": self.sweep.view,
+            "foot": self.foot,
+        }
+
+    def _page(self) -> pn.Template:
+        markup = (FOLDER / "page.html").read_text(encoding="utf-8")
+        template = pn.Template(markup, design=Native)
+        template.add_variable("page_css", page_css())
+        for name, view in self.places.items():
+            template.add_panel(name, view)
+        return template
+
+    def dress(self) -> None:
+        """Take on the theme now and whenever it is switched; to be called inside the session's document."""
+        document = pn.state.curdoc
+
+        def restyle(palette: Palette) -> None:
+            with pn.io.hold():
+                if document is not None:
+                    document.theme = THEMES[palette.scheme]
+                self.sweep.restyle(palette)
+
+        self.theme.follow(restyle)
+        # Panel sets a theme of its own while it builds the page; ours has to come after it.
+        pn.state.onload(lambda: restyle(self.theme.palette))

@@ -1,0 +1,213 @@
+"""What is said in words around the tiles: banner, message, verdict, cautions, foot line."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import Any
+
+import numpy as np
+
+from explorer.app.axes import number_text
+from explorer.app.live_view import LiveView, Node, node
+from explorer.app.look import VIEW_STYLES
+from explorer.app.state import Session
+from explorer.app.text import in_sentence, plain, unit_text
+from explorer.app.tiles import FEWEST, MOST, Tiles
+from explorer.app.verdict import TargetState, Verdict, verdict
+from explorer.scenario.dials import Dial
+from explorer.scenario.evaluate import Outcome
+from explorer.scenario.readouts import READOUTS, format_value
+from explorer.studies.sweep import Sweep
+
+CAUTION = (
+    "For screening: confirm by bench tests; changes of treatment need the regulator's approval and licensed"
+    " practice."
+)
+_GLYPHS = {"error": "✕", "caution": "▲", "info": "i"}
+
+
+def target_states(point: Outcome, swept: Sweep | None) -> list[TargetState]:
+    """Every target of an outcome at the operating point, with its readout along the sweep."""
+    states = []
+    for target, value, _met, _margin in point.targets():
+        readout = READOUTS[target.readout]
+        along = None if swept is None else np.asarray(swept.outcome.readout(target.readout), float)
+        states.append(
+            TargetState(
+                readout.label, float(value), format_value(float(value), readout), unit_text(readout.unit),
+                target.low, target.high, along,
+            )
+        )  # fmt: skip
+    return states
+
+
+def session_verdict(session: Session) -> Verdict:
+    """The verdict on what the session shows."""
+    point, swept = session.point, session.swept
+    if point is None:
+        return Verdict("No result yet.", "", False)
+    reason = str(np.asarray(point.reasons("finished")).item() or "")
+    states = target_states(point, swept)
+    if swept is None:
+        return verdict(states, float(point.readout("ccpp")), reason=reason)
+    return verdict(
+        states, float(point.readout("ccpp")), np.asarray(swept.x, float), unit_text(swept.dial.unit),
+        swept_name(swept.dial), reason,
+    )  # fmt: skip
+
+
+def swept_name(dial: Dial) -> str:
+    """What follows a value of the dial in a sentence: "52 % Granite Wellfield", "12 mg/L (dose of …)"."""
+    if dial.address.endswith(".share"):
+        return plain(dial.group, 60)
+    return f"({in_sentence(plain(dial.label, 60))})"
+
+
+class Message(LiveView):
+    """Banner of a water that is not for drinking, and the message line."""
+
+    css = VIEW_STYLES
+
+    def __init__(self, session: Session, **settings: Any) -> None:
+        self.session = session
+        super().__init__(sizing_mode="stretch_width", **settings)
+        session.param.watch(self._changed, ["message", "structure"])
+        self.refresh()
+
+    def describe(self) -> Node:
+        session = self.session
+        alarm = banner = None
+        if session.message:
+            after = " The last result stays on screen." if session.stale else ""
+            alarm = node(
+                "div", "alarm",
+                node("span", "said", text=plain(session.message, 400) + after),
+                node("button", "", text="Dismiss", key="dismiss", type="button", on=self._dismiss),
+                key="alarm", role="alert",
+            )  # fmt: skip
+        if not session.scenario.potable:
+            words = "▲ Not drinking water: this scenario is for other uses."
+            banner = node("div", "banner", key="banner", text=words)
+        return node("div", "", alarm, banner)
+
+    def _dismiss(self, value: Any) -> None:
+        self.session.message = ""
+
+    def _changed(self, *events: Any) -> None:
+        self.visible = bool(self.session.message) or not self.session.scenario.potable
+        self.refresh()
+
+
+class Summary(LiveView):
+    """The verdict line, with the list of cautions and the choice of tiles at its end."""
+
+    css = VIEW_STYLES
+
+    def __init__(self, session: Session, tiles: Tiles, **settings: Any) -> None:
+        self.session = session
+        self.tiles = tiles
+        super().__init__(sizing_mode="stretch_width", **settings)
+        session.want("verdict", ["ccpp"])
+        session.param.watch(self._changed, ["point", "stale", "structure", "choices"])
+        self.refresh()
+
+    def describe(self) -> Node:
+        said = session_verdict(self.session)
+        glyph = "✓" if said.good else "✕"
+        return node(
+            "div", "verdict stale" if self.session.stale else "verdict",
+            node("p", f"finding {'good' if said.good else 'bad'}",
+                 node("span", "mark", text=glyph, aria_hidden="true"), node("strong", text=said.lead + " "),
+                 node("span", text=said.rest), role="status"),
+            *self._notes(), *self._choice(),
+        )  # fmt: skip
+
+    def _notes(self) -> list[Node]:
+        point = self.session.point
+        notes = list(point.notes) if point is not None else []
+        serious = [note for note in notes if note.level != "info"]
+        if not notes:
+            return []
+        count = len(serious) or len(notes)
+        word = ("caution" if serious else "note") + ("s" if count > 1 else "")
+        rows = [
+            node("li", "",
+                 node("span", f"level {note.level}", text=_GLYPHS.get(note.level, "i")),
+                 node("span", text=f"{self._place(note.where)}{plain(note.text, 400)}"))
+            for note in sorted(notes, key=lambda note: list(_GLYPHS).index(note.level))
+        ]  # fmt: skip
+        return [
+            node("button", "link caution" if serious else "link", text=f"{'▲ ' if serious else ''}{count} {word}",
+                 key="notes-button", type="button", popovertarget="notes", aria_expanded="false"),
+            node("div", "wide", node("ul", "notes", *rows), key="notes", id="notes", popover="auto",
+                 aria_label="Notes and cautions"),
+        ]  # fmt: skip
+
+    def _place(self, where: str) -> str:
+        """The note's place in the words of the scenario, "" where it has none."""
+        names = {water.id: water.name for water in self.session.scenario.waters}
+        names |= {step.id: step.name for _, step in self.session.scenario.steps()}
+        found = next((names[part] for part in where.split(".") if names.get(part)), "")
+        return f"{plain(found, 60)}: " if found else ""
+
+    def _choice(self) -> list[Node]:
+        chosen = self.tiles.chosen
+        groups: dict[str, list[Node]] = {}
+        for readout in READOUTS.values():
+            on = readout.key in chosen
+            full = len(chosen) >= MOST if not on else len(chosen) <= FEWEST
+            groups.setdefault(readout.group, []).append(
+                node("label", "",
+                     node("input", type="checkbox", key=f"tile:{readout.key}", checked=on, disabled=full,
+                          on=self._toggle(readout.key)),
+                     node("span", text=readout.label))
+            )  # fmt: skip
+        body = [part for name, rows in groups.items() for part in (node("h3", text=name), *rows)]
+        return [
+            node("button", "link", text="Choose readouts", key="choose-button", type="button",
+                 popovertarget="choose", aria_expanded="false"),
+            node("div", "wide", node("p", text=f"{FEWEST} to {MOST} tiles."), *body, key="choose", id="choose",
+                 popover="auto", role="dialog", aria_label="Choose readouts"),
+        ]  # fmt: skip
+
+    def _toggle(self, key: str) -> Callable[[Any], None]:
+        def take(on: Any) -> None:
+            others = [other for other in self.tiles.chosen if other != key]
+            kept = [*others, key] if on else others
+            if FEWEST <= len(kept) <= MOST:
+                self.session.choose(tiles=kept)
+
+        return take
+
+    def _changed(self, *events: Any) -> None:
+        self.refresh()
+
+
+def foot_line(point: Outcome | None) -> str:
+    """Temperature and state of the finished water, and what the figures are good for."""
+    if point is None:
+        return CAUTION
+    temperature = float(point.readout("temperature"))
+    open_steps = [stage.name for stage in point.stages if stage.kind == "air"]
+    state = "closed to air"
+    if open_steps:
+        state = f"closed to air except in {plain(' and '.join(open_steps), 80)}"
+    return f"Equilibrium estimate at {number_text(temperature, 1)} °C, {state}. {CAUTION}"
+
+
+class Foot(LiveView):
+    """The foot line."""
+
+    css = VIEW_STYLES
+
+    def __init__(self, session: Session, **settings: Any) -> None:
+        self.session = session
+        super().__init__(sizing_mode="stretch_width", **settings)
+        session.param.watch(self._changed, ["point"])
+        self.refresh()
+
+    def describe(self) -> Node:
+        return node("p", "foot", text=foot_line(self.session.point))
+
+    def _changed(self, *events: Any) -> None:
+        self.refresh()

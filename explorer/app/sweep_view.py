@@ -1,0 +1,155 @@
+"""The sweep view: four linked plots over one dial, and the operating point that turns it."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+import panel as pn
+
+from explorer.app.live_view import LiveView, Node, node
+from explorer.app.look import PLOT_CARD_CSS, PLOT_GRID_CSS, VIEW_STYLES, Palette
+from explorer.app.pictures import Axis, Memory, Picture, Quantity, axis, readout_picture, species_picture
+from explorer.app.plots import LinkedPlots
+from explorer.app.state import Session
+from explorer.app.sweep_controls import SweepControls, family_choice, family_names, readout_choice
+from explorer.app.text import plain, unit_text
+from explorer.scenario.readouts import READOUTS, Readout
+
+PLOTS = ("ph", "species", "buffer", "chosen")
+"""Plots in reading order; the second column carries the labels of the species at its right."""
+
+
+def quantity_of(readout: Readout) -> Quantity:
+    """A readout as the plots name it."""
+    return Quantity(
+        readout.label,
+        unit_text(readout.unit),
+        readout.digits,
+        readout.significant,
+        readout.sign_words is not None,
+    )
+
+
+class Head(LiveView):
+    """Title and note above one plot."""
+
+    css = VIEW_STYLES
+
+    def __init__(self, **settings: Any) -> None:
+        self.title, self.note, self.empty = "", "", ""
+        super().__init__(sizing_mode="stretch_width", **settings)
+        self.refresh()
+
+    def say(self, picture: Picture) -> None:
+        """Show the words of a picture."""
+        said = (picture.title, picture.note, picture.empty)
+        if said != (self.title, self.note, self.empty):
+            self.title, self.note, self.empty = said
+            self.refresh()
+
+    def describe(self) -> Node:
+        return node(
+            "div", "head",
+            node("h3", "title", text=self.title),
+            node("span", "note empty" if self.empty else "note", text=plain(self.empty, 160) or self.note),
+        )  # fmt: skip
+
+
+class SweepView:
+    """Control row and plots. ``view`` is the Panel object for the page."""
+
+    def __init__(self, session: Session) -> None:
+        self.session = session
+        self.controls = SweepControls(session)
+        self.plots = LinkedPlots(list(PLOTS), self._turned)
+        self.heads = {name: Head() for name in PLOTS}
+        self._memory = Memory()
+        cards = [
+            pn.Column(
+                self.heads[name],
+                pn.pane.Bokeh(plot.figure, sizing_mode="stretch_both", margin=0),
+                sizing_mode="stretch_both", margin=0, css_classes=["plot"], stylesheets=[PLOT_CARD_CSS],
+            )
+            for name, plot in self.plots.plots.items()
+        ]  # fmt: skip
+        grid = pn.Column(*cards, sizing_mode="stretch_both", margin=0, stylesheets=[PLOT_GRID_CSS])
+        self.view = pn.Column(self.controls, grid, sizing_mode="stretch_both", margin=0)
+        self._want()
+        session.param.watch(self._changed, ["swept", "point", "choices", "structure"])
+        self.show()
+
+    def restyle(self, palette: Palette) -> None:
+        """Take the colours of another palette."""
+        self.plots.restyle(palette)
+
+    def show(self) -> None:
+        """Bring the plots to the session's sweep."""
+        swept = self.session.swept
+        if swept is None:
+            return
+        pictures, along = self.pictures()
+        self.plots.set_unit(along.unit)
+        self.plots.show(pictures, along)
+        for name, picture in pictures.items():
+            self.heads[name].say(picture)
+        self.plots.set_point(self.session.value(swept.address), swept.dial.step)
+
+    def pictures(self) -> tuple[dict[str, Picture], Axis]:
+        """What the plots show, from the session's sweep and choices alone."""
+        swept = self.session.swept
+        x = np.asarray(swept.x, float)
+        along = axis(plain(swept.dial.label, 60), unit_text(swept.dial.unit), x)
+        reasons = np.asarray(swept.outcome.reasons("finished"))
+        pictures = {
+            "ph": self._readout("ph", x, along),
+            "species": self._species(x, along, reasons),
+            "buffer": self._readout("buffer_intensity", x, along),
+            "chosen": self._readout(readout_choice(self.session), x, along),
+        }
+        return pictures, along
+
+    def _readout(self, key: str, x: np.ndarray, along: Axis) -> Picture:
+        readout = READOUTS[key]
+        reasons = self.session.swept.outcome.reasons("finished", key)
+        targets = [(t.low, t.high) for t in self.session.scenario.targets if t.readout == key]
+        y = np.broadcast_to(np.asarray(self.session.swept.outcome.readout(key), float), x.shape)
+        picture = readout_picture(
+            quantity_of(readout), x, y, along, targets, reasons, self._memory.limits.get(key)
+        )
+        return self._memory.keep(key, picture)
+
+    def _species(self, x: np.ndarray, along: Axis, reasons: np.ndarray) -> Picture:
+        family, logarithmic = family_choice(self.session), bool(self.session.choices.get("log"))
+        solution = self.session.swept.outcome.solution("finished")
+        members = {name: np.broadcast_to(amount, x.shape) for name, amount in solution.family(family).items()}
+        name = family_names(self.session)[family].removesuffix(" species")
+        slot = f"{family} log" if logarithmic else family
+        picture = species_picture(
+            name, members, x, along, logarithmic, reasons, self._memory.limits.get(slot)
+        )
+        return self._memory.keep(slot, picture)
+
+    def _want(self) -> None:
+        self.session.want("sweep", ["ph", "buffer_intensity", readout_choice(self.session)])
+
+    def _turned(self, x: float) -> None:
+        """The operating point was moved to ``x``: turn the dial to its nearest step within its bounds."""
+        swept = self.session.swept
+        if swept is None:
+            return
+        dial = swept.dial
+        value = round(round(x / dial.step) * dial.step, 10)
+        value = max(value, dial.low) if dial.high is None else min(max(value, dial.low), dial.high)
+        refused = self.session.turn(swept.address, value)
+        if refused:
+            self.session.message = refused
+
+    def _changed(self, *events: Any) -> None:
+        names = {event.name for event in events}
+        if names & {"choices"}:
+            self._want()
+        if names & {"structure"}:
+            self._memory.limits.clear()
+        if names & {"swept", "point", "choices"}:
+            self.show()

@@ -1,0 +1,172 @@
+"""Readout tiles: value, unit, a gauge with the target band, the state in words, the meaning on hover."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from explorer.app.axes import Limits, range_text, steady_limits
+from explorer.app.live_view import LiveView, Node, node
+from explorer.app.look import VIEW_STYLES
+from explorer.app.pictures import Band, band_of, least_span
+from explorer.app.state import Session
+from explorer.app.text import formula_text, plain, unit_text
+from explorer.scenario.model import Target
+from explorer.scenario.readouts import READOUTS, Readout, format_value, status
+
+DEFAULTS = (
+    "ph", "alkalinity", "buffer_intensity", "ccpp", "langelier_index", "hocl_percent",
+    "chloride_sulfate_ratio",
+)  # fmt: skip
+FEWEST, MOST = 5, 8
+
+_STATES = {
+    "in range": ("ok", "● in range"),
+    "below": ("bad", "▼ below"),
+    "above": ("bad", "▲ above"),
+}
+_SHORT = {"ccpp": "CaCO₃ potential", "hocl_percent": "HOCl share", "dic": "Inorganic carbon"}
+
+
+def default_tiles(targets: Iterable[Target]) -> list[str]:
+    """Readouts shown at first: those with targets in their order, then the defaults, seven or up to eight."""
+    wanted = dict.fromkeys(target.readout for target in targets if target.readout in READOUTS)
+    keys = list(wanted)[:MOST]
+    for key in DEFAULTS:
+        if len(keys) >= max(len(DEFAULTS), len(wanted)):
+            break
+        if key not in wanted:
+            keys.append(key)
+    return keys[:MOST]
+
+
+@dataclass(frozen=True)
+class Gauge:
+    """Places on the gauge in percent of its length; ``at`` is None without a value."""
+
+    start: float
+    stop: float
+    at: float | None
+
+
+def gauge(value: float, limits: Limits, band: Band) -> Gauge:
+    """Place of a value and its target band on a gauge over ``limits``; what is beyond sits at the end."""
+    low, high = limits
+
+    def place(number: float) -> float:
+        return 100.0 * min(1.0, max(0.0, (number - low) / (high - low)))
+
+    start = 0.0 if band[0] is None else place(band[0])
+    stop = 100.0 if band[1] is None else place(band[1])
+    return Gauge(start, stop, place(value) if np.isfinite(value) else None)
+
+
+def tile_label(readout: Readout) -> str:
+    """Name that fits on a tile."""
+    if readout.key in _SHORT:
+        return _SHORT[readout.key]
+    return readout.label if len(readout.label) <= 24 else formula_text(readout.short)
+
+
+class Tiles(LiveView):
+    """The chosen readouts of the finished water at the operating point."""
+
+    css = VIEW_STYLES
+
+    def __init__(self, session: Session, **settings: Any) -> None:
+        self.session = session
+        self._limits: dict[str, Limits] = {}
+        super().__init__(sizing_mode="stretch_width", **settings)
+        self._want()
+        session.param.watch(self._changed, ["point", "stale", "structure", "choices"])
+        self.refresh()
+
+    @property
+    def chosen(self) -> list[str]:
+        """Keys of the readouts shown: the user's choice, else the default for the targets."""
+        kept = [key for key in self.session.choices.get("tiles", ()) if key in READOUTS]
+        return kept or default_tiles(self.session.scenario.targets)
+
+    def describe(self) -> Node:
+        count = len(self.chosen)
+        tiles = [self._tile(key, index >= count - 2) for index, key in enumerate(self.chosen)]
+        look = "tiles stale" if self.session.stale else "tiles"
+        return node("div", look, *tiles, role="group", aria_label="Readouts of the finished water")
+
+    def _tile(self, key: str, at_right: bool) -> Node:
+        readout = READOUTS[key]
+        point = self.session.point
+        value = float(point.readout(key)) if point is not None else float("nan")
+        targets = [target for target in self.session.scenario.targets if target.readout == key]
+        band = band_of([(target.low, target.high) for target in targets])
+        text = format_value(value, readout)
+        unit = unit_text(readout.unit)
+        if readout.sign_words and np.isfinite(value):
+            if not text.startswith("−") and float(text):
+                text = f"+{text}"
+            word = readout.sign_words[0 if value < 0 else 1]
+            unit = f"{unit.replace(' as ', ' ')}, {word}"
+        look, state = self._state(value, band, bool(targets), readout)
+        percent = readout.unit == "%"
+        return node(
+            "div", "tile",
+            node("div", "label", text=tile_label(readout)),
+            node("div", "value", text=f"{text} %" if percent and np.isfinite(value) else text),
+            node("div", "unit", text="" if percent else unit),
+            self._gauge(key, value, band, readout),
+            node("div", f"state {look}", text=state),
+            _tip(readout, targets, at_right),
+            key=f"tile:{key}", tabindex="0", role="group",
+            aria_label=f"{readout.label}: {text} {unit}, {state}",
+        )  # fmt: skip
+
+    def _state(self, value: float, band: Band | None, aimed: bool, readout: Readout) -> tuple[str, str]:
+        if not np.isfinite(value):
+            return "none", "no value"
+        if band is None:
+            return ("bad", "▲▼ targets clash") if aimed else ("none", "no target")
+        return _STATES[status(value, *band)]
+
+    def _gauge(self, key: str, value: float, band: Band | None, readout: Readout) -> Node:
+        swept = self.session.swept
+        along = np.atleast_1d(swept.outcome.readout(key)) if swept is not None else np.array([])
+        values = np.append(along, value)
+        bounds = [bound for bound in band or () if bound is not None]
+        finite = values[np.isfinite(values)]
+        size = float(np.abs(finite).max()) if finite.size else 1.0
+        limits = steady_limits(values, self._limits.get(key), least_span(readout.digits, size), bounds)
+        self._limits[key] = limits
+        places = gauge(value, limits, band or (None, None))
+        target = node("span", "band", hidden=band is None)
+        target.properties |= {
+            "--from": f"{places.start:.1f}%",
+            "--wide": f"{places.stop - places.start:.1f}%",
+        }
+        needle = node("span", "needle", hidden=places.at is None)
+        needle.properties["--at"] = f"{places.at or 0.0:.1f}%"
+        return node("div", "gauge", target, needle, aria_hidden="true")
+
+    def _want(self) -> None:
+        self.session.want("tiles", self.chosen)
+
+    def _changed(self, *events: Any) -> None:
+        names = {event.name for event in events}
+        if "structure" in names:
+            self._limits.clear()
+        if names & {"structure", "choices"}:
+            self._want()
+        self.refresh()
+
+
+def _tip(readout: Readout, targets: list[Target], at_right: bool) -> Node:
+    aims = [
+        f"Target {range_text(target.low, target.high, unit_text(readout.unit))}"
+        + (f" ({plain(target.basis, 80)})" if target.basis else "")
+        for target in targets
+    ]
+    words = [f"{readout.label}. {readout.meaning}", *aims, f"Source: {readout.source}."]
+    lines = (node("p", text=text) for text in words)
+    return node("div", "tip left" if at_right else "tip", *lines, role="tooltip")
