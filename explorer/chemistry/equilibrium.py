@@ -25,6 +25,10 @@ REASONS: tuple[str, ...] = (
 )
 """Reason text by code; code 0 is a solved point."""
 
+HELD_START_PH = 7.5
+RETRY_PH = (8.0, 6.0, 10.0, 4.0, 12.0, 2.0)
+"""Starting pH, one after the other, for points that the first guess does not lead home."""
+
 LOW_TEMPERATURE, HIGH_TEMPERATURE = 0.0, 60.0
 """°C; validity of the constants."""
 
@@ -63,8 +67,9 @@ def solve(
     kernel = system.kernel(tuple(present.tolist()), held)
     number = totals.shape[1]
     saturation = _saturation(system, kernel.phases.names, temperature, carbon_dioxide)
+    unreduced = masters
     if held:
-        masters = kernel.phases.reduced_totals(masters)
+        masters = kernel.phases.reduced_totals(unreduced)
     answer = Equilibrium(
         x=np.full((len(masters), number), ABSENT),
         strength=np.full(number, np.nan),
@@ -83,12 +88,22 @@ def solve(
         part.totals = masters[np.ix_(kernel.masters, points)]
         return part
 
-    def iterate(points: NDArray, state: State | None, enough: float) -> tuple[NDArray, State]:
-        """Run some points; returns those left over and their state."""
+    def guessed(part: Problem, points: NDArray) -> State:
+        if ph is not None:
+            return first_state(kernel.newton, part, part.ph)
+        start = kernel.guess.ph(unreduced[np.ix_(kernel.whole, points)], part.organic)
+        if held:
+            # acid water must first dissolve the solid; started acid, it would hold absurd amounts of metal
+            start = np.maximum(start, HELD_START_PH)
+        return first_state(kernel.newton, part, start)
+
+    def iterate(points: NDArray, state: State | float | None, enough: float) -> tuple[NDArray, State]:
+        """Run some points from a state, a pH or the best guess; returns those left over and their state."""
         part = problem_at(points)
         if state is None:
-            start = kernel.ladder.ph(part) if ph is None else part.ph
-            state = first_state(kernel.newton, part, start)
+            state = guessed(part, points)
+        elif not isinstance(state, State):
+            state = first_state(kernel.newton, part, np.full(len(points), state) if ph is None else part.ph)
         converged = kernel.newton.run(part, state, enough)
         solved = points[converged]
         answer.x[np.ix_(kernel.masters, solved)] = state.x[:, converged]
@@ -100,19 +115,25 @@ def solve(
 
     waiting = np.flatnonzero(reason == SOLVED)
     # the last few points of every chunk are finished together: a step costs much the same for 5 as for 500
-    left = [iterate(waiting[i : i + CHUNK], None, 0.85) for i in range(0, len(waiting), CHUNK)]
+    left = [iterate(points, None, 0.85) for points in _chunks(waiting)]
     if left:
         points = np.concatenate([p for p, _ in left])
         x = np.concatenate([state.x for _, state in left], axis=1)
         strength = np.concatenate([state.strength for _, state in left])
-        for first in range(0, len(points), CHUNK):
-            some = slice(first, first + CHUNK)
-            failed, _ = iterate(points[some], State(x[:, some], strength[some]), 1.0)
-            reason[failed] = NO_CONVERGENCE
+        order = _chunks(np.arange(len(points)))
+        failed = [iterate(points[some], State(x[:, some], strength[some]), 1.0)[0] for some in order]
+        for start in RETRY_PH:
+            failed = [iterate(points, start, 1.0)[0] for points in failed if points.size]
+        for points in failed:
+            reason[points] = NO_CONVERGENCE
     unsolved = reason != SOLVED
     if unsolved.any():
         answer.x[:, unsolved] = np.nan
     return answer
+
+
+def _chunks(points: NDArray) -> list[NDArray]:
+    return [points[first : first + CHUNK] for first in range(0, len(points), CHUNK)]
 
 
 def _saturation(
@@ -152,8 +173,7 @@ def buffer_intensity(system: "System", answer: Equilibrium) -> NDArray:
     solved = np.flatnonzero(answer.reason == SOLVED)
     present = (answer.x[:, solved] > ABSENT / 2).any(axis=1)
     kernel = system.kernel(tuple(present.tolist()), ())
-    for first in range(0, len(solved), CHUNK):
-        points = solved[first : first + CHUNK]
+    for points in _chunks(solved):
         problem = system.problem(answer.totals[:, points], answer.temperature[points])
         problem.log_k, problem.totals = problem.log_k[kernel.species], problem.totals[kernel.masters]
         state = State(answer.x[np.ix_(kernel.masters, points)], answer.strength[points])

@@ -22,14 +22,14 @@ from .activity import davies, neutral
 from .constants import LN10
 from .organics import END_POINT_FRACTION, dissociated
 
-STEP_TOLERANCE = 2e-7
-"""Largest change of any ln activity in the last step; the error after it is of the order of its square."""
+STEP_TOLERANCE = 2e-6
+"""Largest change of any unknown in the last step; the error after it is of the order of its square."""
 MAX_STEP = 2.0
 """Largest change of any ln activity in one step."""
 NEAR = 0.3
 """Largest change of any ln activity for which the ionic strength is changed with Newton too."""
 MAX_ITERATIONS = 100
-CHUNK = 1024
+CHUNK = 2048
 """Points worked on together, so that the arrays of one step stay in the processor's cache."""
 ABSENT = -3000.0
 """ln activity given to a component whose total is zero: every species with it underflows to exactly 0."""

@@ -1,64 +1,59 @@
 """Where the Newton iteration starts: a good guess of the pH and of the free components."""
 
-from collections.abc import Mapping
+from collections.abc import Sequence
 
 import numpy as np
 from numpy.typing import NDArray
 
+from .components import PROTON
 from .constants import LN10
 from .network import Network
 from .newton import ABSENT, SMALLEST_TOTAL, Newton, Problem, State
-from .organics import END_POINT_FRACTION
+from .organics import END_POINT_FRACTION, dissociated
 
-ORGANIC_PKA = 4.2
-"""Mean pKa of natural organic acids near their alkalinity end point, for the first guess only."""
-
-
-PASSES = 5
+PASSES = 4
 """Scalings of the components before the Newton iteration."""
 TRACE = 1e-9
 """mol/L; start for a component whose total says nothing, because a solid can supply it."""
+GRID = np.linspace(0.0, 14.0, 57)
+"""pH values of the table behind the first guess."""
 
 
-class Ladder:
-    """The acids of a system in order of pKa.
+class FirstGuess:
+    """pH of a water as if it were ideal, at 25 °C and without pairs, read from a table over pH.
 
-    Counting alkalinity upwards from the fully protonated water, the total of each acid is used up in turn.
-    The acid in which the given alkalinity falls is the buffer: its pKa and the fraction used give the pH.
+    ``protons`` (len(GRID), masters): protons that one mole of a component holds over its zero level.
     """
 
-    def __init__(self, network: Network, masters: Mapping[str, int]) -> None:
-        log_k = dict(zip(network.species, network.log_k(np.array(25.0)) / LN10, strict=True))
-        families: dict[str, dict[int, str]] = {}
+    def __init__(self, network: Network, masters: Sequence[str]) -> None:
+        log_k = dict(zip(network.species, network.log_k(np.array(25.0)), strict=True))
+        forms: dict[str, list[tuple[int, float]]] = {master: [] for master in masters[1:]}
         for species, counts in network.composition.items():
-            others = [name for name in counts if name != "H+"]
-            if len(others) == 1 and counts[others[0]] == 1 and others[0] in masters:
-                families.setdefault(others[0], {})[counts.get("H+", 0)] = species
-        steps = [(ORGANIC_PKA, -1)]
-        self.highest = np.zeros(len(masters))
-        for master, forms in families.items():
-            self.highest[masters[master]] = max(forms)
-            for protons in forms.keys() & {n + 1 for n in forms}:
-                steps.append((log_k[forms[protons]] - log_k[forms[protons - 1]], masters[master]))
-        steps.sort()
-        self.pka = np.array([pka for pka, _ in steps])
-        self.rows = np.array([row for _, row in steps])
+            (*others,) = counts.keys() - {PROTON}
+            if len(others) == 1 and counts[others[0]] == 1 and others[0] in forms:
+                forms[others[0]].append((counts.get(PROTON, 0), log_k[species]))
+        self.protons = np.array([_mean_protons(*zip(*forms[master], strict=True)) for master in masters[1:]]).T
+        self.water = 10.0 ** (GRID - 14.0) - 10.0**-GRID
+        self.organic = dissociated(GRID)[0] - END_POINT_FRACTION
 
-    def ph(self, problem: Problem) -> NDArray:
-        """First guess of the pH; (N,)."""
-        alkalinity = problem.organic * END_POINT_FRACTION - problem.totals[0]
-        above = alkalinity + self.highest[1:] @ problem.totals[1:]
-        capacity = np.where(self.rows[:, None] < 0, problem.organic, problem.totals[self.rows])
-        ends = np.cumsum(capacity, axis=0)
-        step = np.minimum((above > ends).sum(axis=0), len(ends) - 1)
-        points = np.arange(len(problem))
-        size = capacity[step, points]
-        used = (above - ends[step, points]) / np.maximum(size, SMALLEST_TOTAL) + 1.0
-        used = np.clip(used, 0.02, 0.98)
-        buffered = self.pka[step] + np.log10(used / (1.0 - used))
-        acid = -np.log10(np.maximum(-above, 1e-7))
-        base = 14.0 + np.log10(np.maximum(above - ends[-1], 1e-7))
-        return np.where(above <= 0.0, acid, np.where(above >= ends[-1], base, buffered))
+    def ph(self, totals: NDArray, organic: NDArray) -> NDArray:
+        """First guess of the pH (N,) from the masters' ``totals`` (M, N) and ``organic`` acid groups (N,)."""
+        alkalinity = np.outer(self.organic, organic) - self.protons @ totals[1:]
+        alkalinity += self.water[:, None]
+        wanted = -totals[0]
+        above = np.clip((alkalinity < wanted).sum(axis=0), 1, len(GRID) - 1)
+        points = np.arange(len(wanted))
+        low, high = alkalinity[above - 1, points], alkalinity[above, points]
+        part = np.clip((wanted - low) / (high - low), 0.0, 1.0)
+        return GRID[above - 1] + part * (GRID[1] - GRID[0])
+
+
+def _mean_protons(protons: Sequence[int], log_k: Sequence[float]) -> NDArray:
+    """Mean proton count of a family over the pH grid, from the count and ln K of each form."""
+    count = np.array(protons, dtype=float)
+    weight = np.array(log_k)[:, None] - LN10 * np.outer(count, GRID)
+    weight = np.exp(weight - weight.max(axis=0))
+    return count @ weight / weight.sum(axis=0)
 
 
 def first_state(newton: Newton, problem: Problem, ph: NDArray) -> State:

@@ -19,7 +19,7 @@ from .newton import Newton, Problem
 from .organics import equivalents_per_mole
 from .phases import CARBON_DIOXIDE, Phases
 from .solution import Solution
-from .start import Ladder
+from .start import FirstGuess
 
 USUAL_ORGANIC_CHARGE_DENSITY = 10.0
 """µeq per mg C."""
@@ -29,14 +29,15 @@ USUAL_ORGANIC_CHARGE_DENSITY = 10.0
 class Kernel:
     """The part of a system that matters where some masters are absent and some phases are held.
 
-    ``species`` and ``masters``: rows in the network of the species and of the unknowns; ``phases``: what is
-    held, with ``carried`` (species, phases) of :meth:`Phases.reduced_counts`.
+    ``species`` and ``masters``: rows in the network of the species and of the unknowns; ``whole``: the masters
+    with those that the phases fix, for the first guess; ``phases``: what is held, with ``carried`` (species, phases) of :meth:`Phases.reduced_counts`.
     """
 
     species: NDArray
+    whole: NDArray
     masters: NDArray
     newton: Newton
-    ladder: Ladder
+    guess: FirstGuess
     phases: Phases
     carried: NDArray
 
@@ -176,8 +177,9 @@ class System:
         there = np.array(present) | (phases.counts != 0.0).any(axis=0)
         species = np.flatnonzero(~(self.network.counts[:, ~there] != 0.0).any(axis=1))
         counts, carried = phases.reduced_counts(self.network.counts[species])
+        whole = np.flatnonzero(there)
+        guess = FirstGuess(self.network, [self.network.masters[m] for m in whole])
         there[phases.pivots] = False
         masters = np.flatnonzero(there)
-        ladder = Ladder(self.network, {self.network.masters[m]: row for row, m in enumerate(masters)})
         newton = Newton(counts[:, masters], self.network.charges[species])
-        return Kernel(species, masters, newton, ladder, phases, carried)
+        return Kernel(species, whole, masters, newton, guess, phases, carried)
