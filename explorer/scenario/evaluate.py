@@ -1,0 +1,132 @@
+"""One function at the centre: a scenario, any dials as arrays, and what comes out all over the plant."""
+
+from collections.abc import Mapping
+from dataclasses import replace
+from functools import lru_cache
+from types import MappingProxyType
+
+import numpy as np
+from numpy.typing import ArrayLike
+
+from explorer.chemistry import System
+from explorer.scenario import shares
+from explorer.scenario.compile import Plan, Source, compiled
+from explorer.scenario.dials import no_dial
+from explorer.scenario.errors import ScenarioError
+from explorer.scenario.model import Scenario
+from explorer.scenario.operations import Run, added
+from explorer.scenario.outcome import BLEND, Outcome
+from explorer.scenario.stage import PlantProblem, Stage
+from explorer.treatment.analysis import AnalysisError, Intake, Measured, analysis_totals
+from explorer.treatment.stream import Problem, Stream, blend
+from explorer.treatment.units import to_base
+
+__all__ = ["Outcome", "Stage", "evaluate"]
+
+
+def evaluate(
+    scenario: Scenario,
+    dials: Mapping[str, ArrayLike] = MappingProxyType({}),
+    season: str | None = None,
+) -> Outcome:
+    """The plant at every combination of dial values.
+
+    dials: values in the entered units by address; arrays of any shapes that broadcast together, whose common
+    shape is that of the outcome. A dial that is not given stands where the scenario has it; shares that are
+    not given follow by the share rule. season: whose analyses count, the scenario's own where None.
+
+    Raises ScenarioError for an unknown address or season, shapes that do not broadcast, and analyses that say
+    too little or contradict themselves. What is impossible at single points is flagged there instead.
+    """
+    plan = compiled(scenario, season)
+    turned = _turned(plan, dials)
+    shape = np.broadcast_shapes(*(values.shape for values in turned.values()))
+    run = Run({address: np.asarray(value, float) for address, value in plan.inputs.items()} | turned)
+    parts, flow, problem = _parts(plan, turned, run.inputs)
+    ends = {
+        source.id: _source(plan, source, flow * parts.get(source.id, 0.0), turned, run)
+        for source in plan.sources
+    }
+    blended = _blend(ends, parts, problem)
+    run.stages.append(blended)
+    run.follow(plan.train, blended)
+    return Outcome(shape, plan.season, tuple(run.stages), run.doses, plan.targets, run.notes)
+
+
+def _turned(plan: Plan, dials: Mapping[str, ArrayLike]) -> dict[str, np.ndarray]:
+    for address in dials:
+        if address not in plan.inputs:
+            raise ScenarioError("", no_dial(address, plan.inputs))
+    turned = {address: np.asarray(values, float) for address, values in dials.items()}
+    try:
+        np.broadcast_shapes(*(values.shape for values in turned.values()))
+    except ValueError:
+        shapes = ", ".join(f"{address} {values.shape}" for address, values in turned.items())
+        raise ScenarioError("", f"the dials have shapes that do not fit together: {shapes}") from None
+    return turned
+
+
+def _parts(
+    plan: Plan, turned: Mapping[str, np.ndarray], inputs: Mapping[str, np.ndarray]
+) -> tuple[dict[str, np.ndarray], np.ndarray, np.ndarray]:
+    """Part (0 to 1) of each water in service, flow of the blend [m³/h, nan if not given], problem codes."""
+    running = [source for source in plan.sources if source.on]
+    if running[0].flow_unit:
+        flows = {
+            source.id: to_base(inputs[f"{source.address}.flow"], source.flow_unit, "flow")
+            for source in running
+        }
+        flow = sum(flows.values())
+        still = flow <= 0
+        parts = {
+            source: np.where(still, 0.0, part / np.where(still, 1.0, flow)) for source, part in flows.items()
+        }
+        return parts, flow, np.where(still, PlantProblem.NO_FLOW, Problem.NONE)
+    given = {source.id: turned[key] for source in running if (key := f"{source.address}.share") in turned}
+    shared = {source.id: plan.inputs[f"{source.address}.share"] for source in running}
+    settled, possible = shares.settle(shared, given, plan.balance)
+    flow = to_base(inputs["flow"], plan.flow_unit, "flow") if plan.flow_unit else np.array(np.nan)
+    parts = {source: share / shares.WHOLE for source, share in settled.items()}
+    return parts, flow, np.where(possible, Problem.NONE, PlantProblem.SHARES)
+
+
+def _source(
+    plan: Plan, source: Source, flow: np.ndarray, turned: Mapping[str, np.ndarray], run: Run
+) -> Stage:
+    """The water of a source after its own train."""
+    prefix = f"{source.address}.analysis."
+    overrides = {
+        address.removeprefix(prefix): turned[address] for address in turned if address.startswith(prefix)
+    }
+    try:
+        if overrides:
+            intake = analysis_totals(
+                dict(source.entries), plan.system, close_with=source.close_with, overrides=overrides
+            )
+        else:
+            intake = _intake(plan.system, source.entries, source.close_with)
+    except AnalysisError as error:
+        raise ScenarioError(f"{source.path}.{error.key}", error.message) from None
+    if source.on:
+        run.notes += [replace(note, where=prefix + note.where) for note in intake.notes]
+    stream = Stream(plan.system, intake.totals, intake.temperature, flow)
+    stage = Stage(
+        source.id, source.name, "water", stream.flagged(~intake.possible, Problem.IMPOSSIBLE_ANALYSIS)
+    )
+    run.stages.append(stage)
+    return run.follow(source.train, stage)
+
+
+@lru_cache(maxsize=128)
+def _intake(system: System, entries: tuple[tuple[str, Measured], ...], close_with: str) -> Intake:
+    """Totals of an analysis as entered, kept: most turns of a dial leave most analyses alone."""
+    return analysis_totals(dict(entries), system, close_with=close_with)
+
+
+def _blend(ends: Mapping[str, Stage], parts: Mapping[str, np.ndarray], problem: np.ndarray) -> Stage:
+    """The blend of the waters in service."""
+    streams = [ends[source].stream for source in parts]
+    blended = blend(streams, list(parts.values()))
+    cost = added(*(ends[source].cost * part for source, part in parts.items()))
+    problem = np.where(problem, problem, blended.problem)
+    return Stage(BLEND, "Blend", BLEND, replace(blended, problem=problem), cost)
