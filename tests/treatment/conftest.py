@@ -64,10 +64,7 @@ GOOD_WATERS: dict[str, dict[str, Measured]] = {
 }  # fmt: skip
 
 CALCIUM_AS_HARDNESS = _row(11, 7.25, 272, 290, 12.5, 21, 2.4, 38, 46, 29, 16)
-"""Granite Wellfield with its calcium entered as hardness."""
-
 SULFATE_MISSING = _row(22, 7.35, 245, 92, 34, 118, 5, 210, None, 18, 14, fluoride=0.4, boron=0.2)
-"""Cobble Wellfield without its sulfate."""
 
 
 @pytest.fixture(scope="session")
@@ -80,6 +77,24 @@ def system() -> System:
 def good_water(request: pytest.FixtureRequest) -> dict[str, Measured]:
     """Each of the waters whose analysis is in order."""
     return GOOD_WATERS[request.param]
+
+
+@pytest.fixture(scope="session")
+def waters() -> dict[str, dict[str, Measured]]:
+    """All of them, by name."""
+    return GOOD_WATERS
+
+
+@pytest.fixture
+def calcium_as_hardness() -> dict[str, Measured]:
+    """Granite Wellfield with its calcium entered as hardness."""
+    return CALCIUM_AS_HARDNESS
+
+
+@pytest.fixture
+def sulfate_missing() -> dict[str, Measured]:
+    """Cobble Wellfield without its sulfate."""
+    return SULFATE_MISSING
 
 
 @pytest.fixture

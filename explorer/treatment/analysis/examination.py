@@ -12,7 +12,7 @@ from explorer.treatment.analysis.intake import analysis_totals, entry_units
 from explorer.treatment.analysis.measured import Measured
 from explorer.treatment.ions import charge_sums, dissolved_solids
 from explorer.treatment.notes import Note
-from explorer.treatment.units import find_unit, from_base, units_for
+from explorer.treatment.units import find_unit, from_base
 
 MAJOR_IONS: tuple[str, ...] = (
     "calcium",
@@ -120,8 +120,7 @@ def examine(entries: Mapping[str, Measured], system: System, *, close_with: str 
     solution = system.solve(intake.totals, intake.temperature)
     balance = balance_of(solution)
     suspect = bool(intake.possible) and not balance.acceptable
-    reference = entries["conductivity"].read_at if "conductivity" in entries else None
-    at = USUAL_REFERENCE if reference is None else reference
+    at = _reference(entries)
     examination = Examination(
         balance=balance,
         tds=float(dissolved_solids(solution)),
@@ -135,6 +134,12 @@ def examine(entries: Mapping[str, Measured], system: System, *, close_with: str 
         notes=(),
     )
     return replace(examination, notes=(*intake.notes, *_remarks(examination)))
+
+
+def _reference(entries: Mapping[str, Measured]) -> float:
+    """Temperature [°C] that the conductivity of the analysis refers to."""
+    read_at = entries["conductivity"].read_at if "conductivity" in entries else None
+    return USUAL_REFERENCE if read_at is None else read_at
 
 
 def _missing(entries: Mapping[str, Measured]) -> tuple[str, ...]:
@@ -178,31 +183,57 @@ def _comparison(
 
 
 def _likely_cause(entries: Mapping[str, Measured], system: System, solution: Solution) -> str:
-    """The first slip that, put right, would close the balance."""
-    for sentence, corrected in _slips(entries, system, solution):
-        intake = analysis_totals(corrected, system)
-        if intake.possible and balance_of(system.solve(intake.totals, intake.temperature)).acceptable:
-            return sentence
+    """What, put right, would close the balance: an ion left out, else a slip of unit, else organic anions.
+
+    Of several slips that would, a measured conductivity picks those it fits.
+    """
+    charge = float(solution.charge)
+    for slips in (_left_out(entries, charge), _mislabelled(entries), _organic(entries, charge, system)):
+        closing = {slip: mended for slip, mended in slips if _closes(mended, system)}
+        fitting = [slip for slip, mended in closing.items() if _conducts_as_measured(mended, system)]
+        if closing:
+            return f"{'; or '.join(fitting or closing)}: that would close the balance"
     return "no single slip explains it: check every unit, then take another sample"
 
 
-def _slips(
-    entries: Mapping[str, Measured], system: System, solution: Solution
-) -> Iterator[tuple[str, dict[str, Measured]]]:
-    """Possible slips, in the order in which to suspect them, each with the analysis put right."""
-    charge = float(solution.charge)
+def _closes(entries: Mapping[str, Measured], system: System) -> bool:
+    intake = analysis_totals(entries, system)
+    return bool(intake.possible) and balance_of(system.solve(intake.totals, intake.temperature)).acceptable
+
+
+def _conducts_as_measured(entries: Mapping[str, Measured], system: System) -> bool:
+    """False too where no conductivity was measured."""
+    measured = _entered(entries, "conductivity", system)
+    if measured is None:
+        return False
+    intake = analysis_totals(entries, system)
+    computed = conductivity(system.solve(intake.totals, intake.temperature), at=_reference(entries))
+    low, high = CONDUCTIVITY_AGREES
+    return bool(low <= measured / computed <= high)
+
+
+_Slips = Iterator[tuple[str, dict[str, Measured]]]
+"""Possible slips in words, each with the analysis put right."""
+
+
+def _left_out(entries: Mapping[str, Measured], charge: float) -> _Slips:
     for ion, ion_charge in _LEFT_OUT:
         if ion not in entries and charge * ion_charge < 0:
             amount = float(from_base(-charge / ion_charge, "mg/L", ion))
-            sentence = f"{ion} may be missing: {amount:.0f} mg/L would close the balance"
-            yield sentence, {**entries, ion: Measured(amount, unit="mg/L")}
+            mended = {**entries, ion: Measured(amount, unit="mg/L")}
+            yield f"{ion} may be missing, about {amount:.0f} mg/L", mended
+
+
+def _mislabelled(entries: Mapping[str, Measured]) -> _Slips:
     for key, meant in _MISLABELLED:
-        if key in entries and entries[key].unit != meant and meant in units_for(key):
-            entry = entries[key]
-            sentence = f"{key}: {entry.central:g} may be {meant}, which would close the balance"
-            yield sentence, {**entries, key: replace(entry, unit=meant)}
-    # Coloured water: its cations honestly exceed the inorganic anions.
+        if key in entries and entries[key].unit != meant:
+            mended = {**entries, key: replace(entries[key], unit=meant)}
+            yield f"{key} {entries[key].central:g} may be {meant}", mended
+
+
+def _organic(entries: Mapping[str, Measured], charge: float, system: System) -> _Slips:
+    """Coloured water: its cations honestly exceed the inorganic anions."""
     carbon = float(from_base(charge / system.organic_equivalents, "mg/L", "toc"))
     if "toc" not in entries and 0 < carbon <= PLAUSIBLE_ORGANIC_CARBON:
-        sentence = f"organic anions may be missing: {carbon:.0f} mg/L of TOC would account for the difference"
-        yield sentence, {**entries, "toc": Measured(carbon, unit="mg/L")}
+        mended = {**entries, "toc": Measured(carbon, unit="mg/L")}
+        yield f"organic anions may be missing, about {carbon:.0f} mg/L of TOC", mended
