@@ -25,10 +25,10 @@ def complete(
 ) -> tuple[NDArray, NDArray]:
     """Totals with alkalinity and DIC filled in, and which points are possible.
 
-    ``totals`` (components, *shape) mol/L with every other row set; ``temperature`` °C at which pH and CO2 hold;
-    exactly two of ``ph``, ``alkalinity`` [eq/L], ``dic`` [mol/L] and ``co2`` [mol/L of CO2(aq)]. All broadcast.
-    A point is impossible where the two contradict each other, for example an alkalinity smaller than what
-    OH-, silicate and the like make up at that pH; its rows are nan.
+    ``totals`` (components, *shape) mol/L with every other row set; ``temperature`` °C at which pH and CO2
+    hold; exactly two of ``ph``, ``alkalinity`` [eq/L], ``dic`` [mol/L] and ``co2`` [mol/L of CO2(aq)]. All
+    broadcast. A point is impossible where the two contradict each other, for example an alkalinity smaller
+    than what OH-, silicate and the like make up at that pH; its rows are nan.
 
     Raises ValueError unless exactly two are given.
     """
@@ -125,9 +125,8 @@ def _dic_and_co2(
 def _increasing_root(function, start: NDArray, number: int) -> tuple[NDArray, NDArray]:
     """Root ≥ 0 of an increasing function of one value a point; ``function(values, points)`` → residuals.
 
-    Secant steps inside a bracket that only shrinks; where they leave it, the middle is taken. Returns the roots
-    and which points have one: no root where the function is positive at 0.
-    """
+    Secant steps inside a bracket that only shrinks; where they leave it, the middle is taken. Returns the
+    roots and which points have one: no root where the function is positive at 0."""
     points = np.arange(number)
     low, high = np.zeros(number), np.full(number, np.inf)
     at_zero = function(low, points)

@@ -1,11 +1,11 @@
 """Electrical conductivity from the ions.
 
-Sum of molal conductivities, each falling with the ionic strength: λ = λ°(t) − A(t) √I / (1 + B √I), with λ° and A
-quadratic in °C. McCleskey, Nordstrom, Ryan & Ball 2012, Geochim. Cosmochim. Acta 77:369 (method seen, coefficients
-from memory; λ° at 25 °C agrees with the CRC Handbook to 1 %, sums for single salts to 2–4 % to 0.1 mol/L,
-magnesium and sulfate salts to 12 %). Ions without coefficients use the limiting conductivities of the CRC
-Handbook, the relative fall of sodium or sulfate, and 1.9 % per °C (Standard Methods 2510, from memory).
-"""
+Sum of molal conductivities, each falling with the ionic strength: λ = λ°(t) − A(t) √I / (1 + B √I), with λ°
+and A quadratic in °C. McCleskey, Nordstrom, Ryan & Ball 2012, Geochim. Cosmochim. Acta 77:369 (method seen,
+coefficients from memory; λ° at 25 °C agrees with the CRC Handbook to 1 %, sums for single salts to 2–4 % to
+0.1 mol/L, magnesium and sulfate salts to 12 %). Ions without coefficients use the limiting conductivities
+of the CRC Handbook, the relative fall of sodium or sulfate, and 1.9 % per °C (Standard Methods 2510, from
+memory)."""
 
 import numpy as np
 from numpy.typing import NDArray
@@ -48,7 +48,8 @@ PER_DEGREE = 0.019
 
 
 def conductivity(solution: Solution, at: float = 25.0) -> NDArray:
-    """Conductivity [µS/cm] of waters brought to ``at`` °C with their species as they are; shape of the solution."""
+    """Conductivity [µS/cm] of waters brought to ``at`` °C with their species as they are; shape of the
+    solution."""
     strength = solution.ionic_strength
     total = np.zeros(solution.shape)
     for name in solution.species:
@@ -76,7 +77,11 @@ def _molar(name: str, charge: int, strength: NDArray, at: float) -> NDArray:
 
 
 def _with_strength(
-    limit: tuple[float, float, float], fall: tuple[float, float, float], b: float, strength: NDArray, at: float
+    limit: tuple[float, float, float],
+    fall: tuple[float, float, float],
+    b: float,
+    strength: NDArray,
+    at: float,
 ) -> NDArray:
     root = np.sqrt(strength)
     return np.polyval(limit, at) - np.polyval(fall, at) * root / (1.0 + b * root)

@@ -35,8 +35,9 @@ LOW_TEMPERATURE, HIGH_TEMPERATURE = 0.0, 60.0
 
 @dataclass
 class Equilibrium:
-    """Flat answer: ``x`` (M, N) ln activity of every master, ``strength`` (N,) mol/L, ``formed`` (N,) mol/L by
-    phase, ``reason`` (N,) codes, with the dissolved ``totals`` (components, N) and the ``temperature`` (N,)."""
+    """Flat answer: ``x`` (M, N) ln activity of every master, ``strength`` (N,) mol/L, ``formed`` (N,) mol/L
+    by phase, ``reason`` (N,) codes, with the dissolved ``totals`` (components, N) and the ``temperature``
+    (N,)."""
 
     x: NDArray
     strength: NDArray
@@ -55,7 +56,8 @@ def solve(
     held: tuple[str, ...] = (),
     carbon_dioxide: NDArray | None = None,
 ) -> Equilibrium:
-    """Equilibrium of N waters: ``totals`` (components, N), ``temperature`` (N,) °C, optional fixed ``ph`` (N,).
+    """Equilibrium of N waters: ``totals`` (components, N), ``temperature`` (N,) °C, optional fixed ``ph``
+    (N,).
 
     With phases ``held`` the totals are those of water and phases together; ``carbon_dioxide`` (N,) is the
     activity of CO2(aq) where the gas is held.
@@ -152,8 +154,8 @@ def _saturation(
 def _account(
     system: "System", kernel: "Kernel", answer: Equilibrium, points: NDArray, c: NDArray, saturation: NDArray
 ) -> None:
-    """Write the pivots' activities, the amounts of the phases and the dissolved totals of some points, from the
-    concentrations ``c`` of the kernel's species."""
+    """Write the pivots' activities, the amounts of the phases and the dissolved totals of some points, from
+    the concentrations ``c`` of the kernel's species."""
     phases = kernel.phases
     x = answer.x[:, points]
     phases.expand(x, saturation)

@@ -71,8 +71,8 @@ def _evaluator(definitions: Sequence[Mapping[tuple[float, float], NDArray]]) -> 
 
 @dataclass(frozen=True)
 class Solid:
-    """A solid over the masters: ``counts`` (masters,) of one mole; ``saturation(temperature)`` gives ln of its
-    ion activity product, written over the masters, at saturation."""
+    """A solid over the masters: ``counts`` (masters,) of one mole; ``saturation(temperature)`` gives ln of
+    its ion activity product, written over the masters, at saturation."""
 
     counts: NDArray
     saturation: Callable[[NDArray], NDArray]

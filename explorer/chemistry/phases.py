@@ -54,8 +54,8 @@ class Phases:
         return cls(ordered, counts, pivots)
 
     def reduced_counts(self, counts: NDArray) -> tuple[NDArray, NDArray]:
-        """Species counts (S, M) with the pivots expressed by the other masters, and the pivot counts (S, P) that
-        carry each phase's saturation product into ln k."""
+        """Species counts (S, M) with the pivots expressed by the other masters, and the pivot counts (S, P)
+        that carry each phase's saturation product into ln k."""
         counts = counts.copy()
         carried = np.empty((len(counts), len(self.names)))
         for p, pivot in enumerate(self.pivots):

@@ -18,9 +18,9 @@ def precipitate(
     """Let supersaturated solids form, each down to saturation, all together.
 
     ``totals`` (components, *shape) mol/L, ``temperature`` °C, ``solids``: names in
-    :data:`explorer.chemistry.phases.PIVOTS`. Returns the water that is left and the amount of each solid formed
-    [mol/L, ≥ 0]. Each point finds the set of solids that belongs to it: those that would dissolve are dropped,
-    those left supersaturated are taken in.
+    :data:`explorer.chemistry.phases.PIVOTS`. Returns the water that is left and the amount of each solid
+    formed [mol/L, ≥ 0]. Each point finds the set of solids that belongs to it: those that would dissolve
+    are dropped, those left supersaturated are taken in.
 
     Raises ValueError for solids that cannot be held.
     """

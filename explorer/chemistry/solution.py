@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import NDArray
 
-from . import constants, equilibrium
+from . import equilibrium
 from .activity import davies, debye_hueckel_slope, neutral
 from .components import FAMILIES, PROTON
 from .constants import LN10
@@ -24,9 +24,8 @@ if TYPE_CHECKING:
 class Solution:
     """Equilibrium of waters of any shape. Arrays have ``shape``; points without a solution are nan.
 
-    ``totals`` (components, *shape), in mol/L, alkalinity in eq/L: as given, or with the alkalinity found where
-    the pH was given.
-    """
+    ``totals`` (components, *shape), in mol/L, alkalinity in eq/L: as given, or with the alkalinity found
+    where the pH was given."""
 
     def __init__(self, system: "System", answer: equilibrium.Equilibrium, shape: tuple[int, ...]) -> None:
         self.system, self.shape = system, shape
@@ -142,7 +141,9 @@ class Solution:
     def _alkalinity(self) -> NDArray:
         network = self.system.network
         protons = network.counts[:, 0]
-        total = sum(-protons[row] * self._concentration(network.species[row]) for row in np.flatnonzero(protons))
+        total = sum(
+            -protons[row] * self._concentration(network.species[row]) for row in np.flatnonzero(protons)
+        )
         groups = self.system.organic_equivalents * self._answer.totals[self.system.index["organic_carbon"]]
         return total + self._organic_ions - END_POINT_FRACTION * groups
 
@@ -160,9 +161,7 @@ class Solution:
     def charge(self) -> NDArray:
         """Residual charge of the water as analysed, eq/L: dissolved ions, inert ions and organic acids."""
         charges = self.system.network.charges
-        total = sum(
-            charges[row] * self._concentration(self.species[row]) for row in np.flatnonzero(charges)
-        )
+        total = sum(charges[row] * self._concentration(self.species[row]) for row in np.flatnonzero(charges))
         total = total + self.system.inert_charge(self._answer.totals) - self._organic_ions
         return self._shaped(total)
 

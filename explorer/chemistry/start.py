@@ -32,7 +32,9 @@ class FirstGuess:
             (*others,) = counts.keys() - {PROTON}
             if len(others) == 1 and counts[others[0]] == 1 and others[0] in forms:
                 forms[others[0]].append((counts.get(PROTON, 0), log_k[species]))
-        self.protons = np.array([_mean_protons(*zip(*forms[master], strict=True)) for master in masters[1:]]).T
+        self.protons = np.array(
+            [_mean_protons(*zip(*forms[master], strict=True)) for master in masters[1:]]
+        ).T
         self.water = 10.0 ** (GRID - 14.0) - 10.0**-GRID
         self.organic = dissociated(GRID)[0] - END_POINT_FRACTION
 

@@ -29,9 +29,9 @@ USUAL_ORGANIC_CHARGE_DENSITY = 10.0
 class Kernel:
     """The part of a system that matters where some masters are absent and some phases are held.
 
-    ``species`` and ``masters``: rows in the network of the species and of the unknowns; ``whole``: the masters
-    with those that the phases fix, for the first guess; ``phases``: what is held, with ``carried`` (species, phases) of :meth:`Phases.reduced_counts`.
-    """
+    ``species`` and ``masters``: rows in the network of the species and of the unknowns; ``whole``: the
+    masters with those that the phases fix, for the first guess; ``phases``: what is held, with ``carried``
+    (species, phases) of :meth:`Phases.reduced_counts`."""
 
     species: NDArray
     whole: NDArray
@@ -123,7 +123,9 @@ class System:
         totals = np.asarray(totals, dtype=float)
         if totals.ndim == 0 or totals.shape[0] != len(self.keys):
             raise ValueError(f"totals need {len(self.keys)} rows, one a component; got shape {totals.shape}")
-        others = [np.asarray(temperature, dtype=float)] + ([] if ph is None else [np.asarray(ph, dtype=float)])
+        others = [np.asarray(temperature, dtype=float)] + (
+            [] if ph is None else [np.asarray(ph, dtype=float)]
+        )
         shape = np.broadcast_shapes(totals.shape[1:], *(a.shape for a in others))
         flat = [np.broadcast_to(a, shape).ravel() for a in others]
         extra = len(shape) - (totals.ndim - 1)
