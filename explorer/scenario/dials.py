@@ -285,6 +285,5 @@ def _store_share(scenario: Scenario, turned: str, value: float) -> None:
         raise ScenarioError("share", f"{value:g} takes more than the balance water has; allowed {most}")
     # Waters out of service keep their share for their return; the rest divides what they leave.
     left = shares.WHOLE - sum(water.share for water in scenario.waters if not water.on)
-    rest = left
     for water in (*(w for w in running if w.id != turned), scenario.water(turned)):
         water.share = neat(float(settled[water.id]) * left / shares.WHOLE)

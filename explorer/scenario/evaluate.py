@@ -38,7 +38,11 @@ def evaluate(
     Raises ScenarioError for an unknown address or season, shapes that do not broadcast, and analyses that say
     too little or contradict themselves. What is impossible at single points is flagged there instead.
     """
-    plan = compiled(scenario, season)
+    return follow(compiled(scenario, season), dials)
+
+
+def follow(plan: Plan, dials: Mapping[str, ArrayLike] = MappingProxyType({})) -> Outcome:
+    """:func:`evaluate` for a scenario that is compiled already; the plan does not change with it."""
     turned = _turned(plan, dials)
     shape = np.broadcast_shapes(*(values.shape for values in turned.values()))
     run = Run({address: np.asarray(value, float) for address, value in plan.inputs.items()} | turned)
@@ -108,6 +112,9 @@ def _source(
     except AnalysisError as error:
         raise ScenarioError(f"{source.path}.{error.key}", error.message) from None
     if source.on:
+        if not intake.possible.any():
+            fault = next(note for note in intake.notes if note.level == "error")
+            raise ScenarioError(f"{source.path}.{fault.where}", fault.text)
         run.notes += [replace(note, where=prefix + note.where) for note in intake.notes]
     stream = Stream(plan.system, intake.totals, intake.temperature, flow)
     stage = Stage(

@@ -79,7 +79,7 @@ class Outcome:
             margins = [value - target.low] if target.low is not None else []
             margins += [target.high - value] if target.high is not None else []
             margin = np.min(margins, axis=0)
-            found.append((target, value, margin >= 0, margin))
+            found.append((target, value, margin >= -READOUTS[target.readout].slack, margin))
         return found
 
     @cached_property

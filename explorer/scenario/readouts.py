@@ -70,6 +70,11 @@ class Readout:
         """The unit with a space before it, "" for a readout without unit."""
         return f" {self.unit}" if self.unit else ""
 
+    @property
+    def slack(self) -> float:
+        """Difference that counts as none where a value meets a limit: a thousandth of the last digit."""
+        return 10.0 ** -(self.digits + 3)
+
 
 CONSERVED = "conserved on mixing"
 DEFINITION = "definition"
@@ -368,12 +373,12 @@ def in_words(value: float, readout: Readout) -> str:
     return text if text == NO_VALUE else text + readout.unit_text
 
 
-def status(value: float, low: float | None, high: float | None) -> str:
+def status(value: float, low: float | None, high: float | None, slack: float = 0.0) -> str:
     """``in range``, ``below`` or ``above`` against the entered limits; ``no value`` for a missing value."""
     if not np.isfinite(value):
         return "no value"
-    if low is not None and value < low:
+    if low is not None and value < low - slack:
         return "below"
-    if high is not None and value > high:
+    if high is not None and value > high + slack:
         return "above"
     return "in range"

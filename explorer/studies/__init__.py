@@ -1,0 +1,1 @@
+"""Studies: questions asked of a scenario, each a thin use of ``evaluate``."""

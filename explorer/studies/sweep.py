@@ -1,0 +1,213 @@
+"""Sweep: one dial over a range, everything else as it stands."""
+
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from dataclasses import dataclass
+from types import MappingProxyType
+from typing import Any
+
+import numpy as np
+from numpy.typing import ArrayLike
+from scipy.optimize import elementwise
+
+from explorer.scenario.compile import Plan, compiled
+from explorer.scenario.dials import Dial, dials, no_dial
+from explorer.scenario.errors import ScenarioError
+from explorer.scenario.evaluate import Outcome, follow
+from explorer.scenario.model import Scenario, Target
+from explorer.scenario.outcome import FINISHED
+from explorer.scenario.readouts import READOUTS
+
+USUAL_POINTS, MOST_POINTS = 101, 2001
+
+REFINED = 1e-9
+"""Width, as a part of the range, to which a crossing is refined."""
+
+
+@dataclass(frozen=True)
+class Crossing:
+    """Where a readout of the finished water crosses a limit of a target, ``rising`` along the dial or not."""
+
+    x: float
+    limit: float
+    rising: bool
+
+
+@dataclass(frozen=True)
+class Extreme:
+    """A lowest or highest value inside the range, as no look at the ends would show."""
+
+    x: float
+    value: float
+    lowest: bool
+
+
+@dataclass(frozen=True)
+class Gap:
+    """Part of the range, ends included, without an answer, and why."""
+
+    start: float
+    stop: float
+    reason: str
+
+
+@dataclass(frozen=True)
+class Sweep:
+    """``x``: values of the ``dial``, in its unit. ``outcome``: everything else, of the shape of ``x``."""
+
+    x: np.ndarray
+    address: str
+    dial: Dial
+    outcome: Outcome
+    plan: Plan
+    overrides: Mapping[str, ArrayLike]
+
+    def at(self, x: ArrayLike) -> Outcome:
+        """The same at other values of the dial."""
+        return follow(self.plan, {**self.overrides, self.address: x})
+
+    def crossings(self, target: Target) -> list[float]:
+        """Values of the dial at which the finished water starts or ceases to meet a target, rising."""
+        return [crossing.x for crossing in self.crossed(target)]
+
+    def crossed(self, target: Target) -> list[Crossing]:
+        """Crossings of both limits of a target, in the order of the dial; each found to 1e-9 of the range."""
+        found: list[Crossing] = []
+        for limit, outwards in ((target.low, -1.0), (target.high, 1.0)):
+            if limit is not None:
+                found += self._crossed(target.readout, limit, outwards)
+        return sorted(found, key=lambda crossing: crossing.x)
+
+    def _crossed(self, key: str, limit: float, outwards: float) -> Iterator[Crossing]:
+        # A value held at the limit is inside and must not flicker.
+        edge = limit + outwards * READOUTS[key].slack
+        beyond = outwards * (self.outcome.readout(key) - edge)
+        outside = beyond > 0
+        known = np.isfinite(beyond)
+        before = np.flatnonzero((outside[:-1] != outside[1:]) & known[:-1] & known[1:])
+        if not before.size:
+            return
+        found = elementwise.find_root(
+            lambda x: self.at(x).readout(key) - edge,
+            (self.x[before], self.x[before + 1]),
+            tolerances={"xatol": REFINED * abs(self.x[-1] - self.x[0]), "xrtol": 0, "fatol": 0},
+        )
+        for x, i, refined in zip(found.x, before, found.success, strict=True):
+            part = beyond[i] / (beyond[i] - beyond[i + 1])
+            straight = self.x[i] + part * (self.x[i + 1] - self.x[i])
+            yield Crossing(float(x if refined else straight), limit, bool(outside[i + 1] == (outwards > 0)))
+
+    def extremes(self, key: str) -> list[Extreme]:
+        """Lowest and highest values of a readout inside the range, by the parabola through three points."""
+        y = self.outcome.readout(key)
+        found = []
+        for lowest, height in ((True, y), (False, -y)):
+            left, here, right = height[:-2], height[1:-1], height[2:]
+            bend = left + right - 2 * here
+            turning = (left >= here) & (right >= here) & (bend > READOUTS[key].slack)
+            for i in np.flatnonzero(turning):
+                x = self.x[i + 1] + 0.5 * (left[i] - right[i]) / bend[i] * (self.x[i + 1] - self.x[i])
+                found.append(Extreme(float(x), float(self.at(x).readout(key)), lowest))
+        return sorted(found, key=lambda extreme: extreme.x)
+
+    def gaps(self, key: str | None = None) -> list[Gap]:
+        """Parts of the range without equilibrium, or without the readout ``key``."""
+        reasons = self.outcome.reasons(FINISHED, key)
+        found: list[Gap] = []
+        for position, reason in enumerate(reasons):
+            x = float(self.x[position])
+            if reason and position and reasons[position - 1] == reason:
+                found[-1] = Gap(found[-1].start, x, reason)
+            elif reason:
+                found.append(Gap(x, x, reason))
+        return found
+
+    def to_dict(self, readouts: Sequence[str]) -> dict[str, Any]:
+        """Plain lists by name; None where there is no answer."""
+        return {
+            "dial": self.address,
+            "unit": self.dial.unit,
+            "x": self.x.tolist(),
+            "readouts": {key: listed(self.outcome.readout(key)) for key in readouts},
+            "notes": [{"level": n.level, "where": n.where, "text": n.text} for n in self.outcome.notes],
+        }
+
+    def table(self, readouts: Sequence[str]) -> tuple[list[str], list[list[Any]]]:
+        """Heading and rows for a spreadsheet: dial, readouts, held doses, and why a row has no answer."""
+        held = {step: dose for step, dose in self.outcome.doses.items() if dose[2]}
+        heading = [
+            _headed(self.dial.label, self.dial.unit),
+            *(_headed(READOUTS[key].label, READOUTS[key].unit) for key in readouts),
+            *(_headed(f"Dose {step}", unit) for step, (_, unit, _) in held.items()),
+            "No answer because",
+        ]
+        columns = [
+            self.x.tolist(),
+            *(listed(self.outcome.readout(key)) for key in readouts),
+            *(listed(values) for values, _, _ in held.values()),
+            self.outcome.reasons().tolist(),
+        ]
+        return heading, [list(row) for row in zip(*columns, strict=True)]
+
+
+def sweep(
+    scenario: Scenario,
+    dial: str | None = None,
+    start: float | None = None,
+    stop: float | None = None,
+    points: int | None = None,
+    season: str | None = None,
+    overrides: Mapping[str, ArrayLike] = MappingProxyType({}),
+) -> Sweep:
+    """The plant along one dial.
+
+    What is not given comes from the scenario's own sweep where that is of the same dial, else from the bounds
+    of the dial (without upper bound: from its lower one to twice its value). ``overrides``: other dials.
+
+    Raises ScenarioError for an unknown dial, a range without length and a number of points outside 2 to 2001.
+    """
+    every = dials(scenario, season)
+    setting = scenario.sweep
+    if dial is None:
+        dial = setting.dial if setting is not None else _first(every)
+    if dial not in every:
+        raise ScenarioError("dial", no_dial(dial, every))
+    swept = every[dial]
+    usual_start, usual_stop, usual_points = _range(swept)
+    if setting is not None and setting.dial == dial:
+        usual_start, usual_stop, usual_points = setting.start, setting.stop, setting.points
+    start = usual_start if start is None else start
+    stop = usual_stop if stop is None else stop
+    points = usual_points if points is None else points
+    if not 2 <= points <= MOST_POINTS:
+        raise ScenarioError("points", f"{points} is out of range; allowed 2 to {MOST_POINTS}")
+    if not (np.isfinite(start) and np.isfinite(stop)) or start == stop:
+        raise ScenarioError("stop", f"{start:g} to {stop:g} is no range; allowed two different numbers")
+    x = np.linspace(start, stop, points)
+    plan = compiled(scenario, season)
+    overrides = dict(overrides)
+    overrides.pop(dial, None)
+    return Sweep(x, dial, swept, follow(plan, {**overrides, dial: x}), plan, overrides)
+
+
+def _first(every: Mapping[str, Dial]) -> str:
+    """The dial to sweep where nobody has said: a share, else a dose, else the first."""
+    kinds: tuple[Callable[[str], bool], ...] = (
+        lambda address: address.endswith(".share"),
+        lambda address: address.endswith(".dose"),
+        lambda address: True,
+    )
+    return next(address for kind in kinds for address in every if kind(address))
+
+
+def _range(dial: Dial) -> tuple[float, float, int]:
+    stop = dial.high if dial.high is not None else dial.low + 2 * (dial.value - dial.low)
+    return dial.low, stop if stop > dial.low else dial.low + 1.0, USUAL_POINTS
+
+
+def listed(values: np.ndarray) -> list[float | None]:
+    """A flat array as a list with None where there is no number."""
+    return [float(value) if np.isfinite(value) else None for value in values]
+
+
+def _headed(label: str, unit: str) -> str:
+    return f"{label} [{unit}]" if unit else label
