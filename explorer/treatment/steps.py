@@ -55,7 +55,7 @@ def settle(stream: Stream, residual: ArrayLike | None = None, solids: Sequence[s
         return replace(stream, floc={})
     residual = np.asarray(residual, float)
     totals = lifted(stream.totals, max(residual.ndim, np.ndim(stream.temperature)))
-    _, formed = precipitate(stream.system, totals, stream.temperature, solids)
+    water, formed = precipitate(stream.system, totals, stream.temperature, solids)
     formed = {solid: np.asarray(amount) for solid, amount in formed.items()}
     carbonate = next((solid for solid in solids if solid in CARBONATES), None)
     if carbonate is not None:
@@ -66,7 +66,7 @@ def settle(stream: Stream, residual: ArrayLike | None = None, solids: Sequence[s
     result = stream
     for solid, amount in formed.items():
         result = _without(result, _FORMULA[solid], amount).with_solid(solid, amount, _FORMULA[solid])
-    failed = np.isnan(sum(formed.values()))
+    failed = ~water.solved | np.isnan(sum(formed.values()))
     return replace(result, floc={}).flagged(failed, Problem.NOT_SOLVED)
 
 
@@ -119,16 +119,17 @@ def air(
     equilibrium with air of ``co2_ppm`` (dry, by volume) at ``altitude`` [m].
     """
     system, temperature = stream.system, stream.temperature
-    water = system.solve(stream.totals, temperature)
-    if co2 is None:
-        present = water.concentration("CO2(aq)")
-        saturated = co2_in_air(temperature, co2_ppm, altitude) / water.activity_coefficient(0)
-        co2 = present + np.asarray(approach, float) / 100 * (saturated - present)
-    after = water
+    after = system.solve(stream.totals, temperature)
+    present = after.concentration("CO2(aq)")
     # The second pass carries the small change of the activity coefficient.
     for _ in range(2):
-        held = np.asarray(co2, float) * after.activity_coefficient(0)
-        after, _ = system.equilibrate(stream.totals, temperature, carbon_dioxide=held)
+        coefficient = after.activity_coefficient(0)
+        if co2 is None:
+            saturated = co2_in_air(temperature, co2_ppm, altitude) / coefficient
+            wanted = present + np.asarray(approach, float) / 100 * (saturated - present)
+        else:
+            wanted = np.asarray(co2, float)
+        after, _ = system.equilibrate(stream.totals, temperature, carbon_dioxide=wanted * coefficient)
     return replace(stream, totals=after.totals).flagged(~after.solved, Problem.NOT_SOLVED)
 
 
