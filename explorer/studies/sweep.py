@@ -131,22 +131,17 @@ class Sweep:
             "notes": [{"level": n.level, "where": n.where, "text": n.text} for n in self.outcome.notes],
         }
 
-    def table(self, readouts: Sequence[str]) -> tuple[list[str], list[list[Any]]]:
-        """Heading and rows for a spreadsheet: dial, readouts, held doses, and why a row has no answer."""
-        held = {step: dose for step, dose in self.outcome.doses.items() if dose[2]}
-        heading = [
-            _headed(self.dial.label, self.dial.unit),
-            *(_headed(READOUTS[key].label, READOUTS[key].unit) for key in readouts),
-            *(_headed(f"Dose {step}", unit) for step, (_, unit, _) in held.items()),
-            "No answer because",
-        ]
-        columns = [
-            self.x.tolist(),
-            *(listed(self.outcome.readout(key)) for key in readouts),
-            *(listed(values) for values, _, _ in held.values()),
-            self.outcome.reasons().tolist(),
-        ]
-        return heading, [list(row) for row in zip(*columns, strict=True)]
+    def table(self, readouts: Sequence[str]) -> list[list[Any]]:
+        """Rows for a spreadsheet, the heading first: dial, readouts, held doses, why there is no answer."""
+        columns = [[_headed(self.dial.label, self.dial.unit), *self.x.tolist()]]
+        for readout in (READOUTS[key] for key in readouts):
+            values = listed(self.outcome.readout(readout.key))
+            columns.append([_headed(readout.label, readout.unit), *values])
+        for step, (values, unit, held) in self.outcome.doses.items():
+            if held:
+                columns.append([_headed(f"Dose of {self.outcome.stage(step).name}", unit), *listed(values)])
+        columns.append(["No answer because", *self.outcome.reasons().tolist()])
+        return [list(row) for row in zip(*columns, strict=True)]
 
 
 def sweep(
