@@ -3,6 +3,8 @@
 The two that are missing are found at the temperature at which the pH was read; after that only totals matter.
 """
 
+from collections.abc import Callable
+
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
@@ -118,17 +120,21 @@ def _dic_and_co2(
         with np.errstate(divide="ignore", invalid="ignore"):
             return np.log(part.concentration("CO2(aq)") / co2[points])
 
-    acidity, possible = _increasing_root(found, np.full(len(co2), 7.0), len(co2))
+    acidity, possible = _increasing_root(found, np.full(len(co2), 7.0), len(co2), highest=14.0)
     return possible & (co2 < dic) & _ph_and_dic(system, totals, temperature, 14.0 - acidity, dic)
 
 
-def _increasing_root(function, start: NDArray, number: int) -> tuple[NDArray, NDArray]:
-    """Root ≥ 0 of an increasing function of one value a point; ``function(values, points)`` → residuals.
+def _increasing_root(
+    function: Callable[[NDArray, NDArray], NDArray], start: NDArray, number: int, highest: float = np.inf
+) -> tuple[NDArray, NDArray]:
+    """Root between 0 and ``highest`` of an increasing function of one value a point.
 
-    Secant steps inside a bracket that only shrinks; where they leave it, the middle is taken. Returns the
-    roots and which points have one: no root where the function is positive at 0."""
+    ``function(values, points)`` gives the residuals of some points. Secant steps inside a bracket that only
+    shrinks; where they leave it, the middle is taken. Returns the roots and which points have one: none where
+    the function is positive at 0.
+    """
     points = np.arange(number)
-    low, high = np.zeros(number), np.full(number, np.inf)
+    low, high = np.zeros(number), np.full(number, highest)
     at_zero = function(low, points)
     root = np.where(np.abs(at_zero) < 1e-15, 0.0, np.nan)
     points = points[(at_zero < -1e-15) & np.isfinite(start)]

@@ -25,7 +25,7 @@ REASONS: tuple[str, ...] = (
 )
 """Reason text by code; code 0 is a solved point."""
 
-HELD_START_PH = 7.5
+HELD_START_PH = 8.5
 RETRY_PH = (8.0, 6.0, 10.0, 4.0, 12.0, 2.0)
 """Starting pH, one after the other, for points that the first guess does not lead home."""
 

@@ -102,10 +102,7 @@ class Network:
         del defined["H2O"]
         if not pairs:
             metals = {"Ca+2", "Mg+2", "Na+", "K+"}
-            defined = {
-                name: d for name, d in defined.items()
-                if not (metals & d.counts.keys() and len(d.counts.keys() - {PROTON}) > 1)
-            }  # fmt: skip
+            defined = {n: d for n, d in defined.items() if n in metals or not metals & d.counts.keys()}
         self._definitions = defined
         self.species: tuple[str, ...] = tuple(defined)
         self.index: dict[str, int] = {name: i for i, name in enumerate(self.species)}

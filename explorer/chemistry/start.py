@@ -13,7 +13,7 @@ from .organics import END_POINT_FRACTION, dissociated
 
 PASSES = 4
 """Scalings of the components before the Newton iteration."""
-TRACE = 1e-9
+TRACE = 1e-4
 """mol/L; start for a component whose total says nothing, because a solid can supply it."""
 GRID = np.linspace(0.0, 14.0, 57)
 """pH values of the table behind the first guess."""
@@ -66,7 +66,7 @@ def first_state(newton: Newton, problem: Problem, ph: NDArray) -> State:
     strength = np.clip(problem.inert + np.abs(totals).sum(axis=0), 1e-7, 0.5)
     state = State(np.concatenate([-LN10 * ph[None], x]), strength)
     held, lacking = np.maximum(newton.counts[:, 1:].T, 0.0), np.maximum(-newton.counts[:, 1:].T, 0.0)
-    power = 1.0 / held.max(axis=1)[:, None]
+    power = 1.0 / (held.max(axis=1) + lacking.max(axis=1))[:, None]
     for _ in range(PASSES):
         c = newton.concentrations(problem, state)
         have = lacking @ c + np.maximum(totals, 0.0)
