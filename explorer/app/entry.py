@@ -130,13 +130,11 @@ class Entries:
 
         def commit(value: Any) -> None:
             typed = str(value)
-            self.slips.pop(key, None)
             try:
                 refusal = take(typed)
             except ValueError as error:
                 refusal = str(error)
-            if refusal:
-                self.slips[key] = (typed, refusal)
+            self.refuse(key, typed, refusal)
 
         typed, refusal = self.slips.get(key, (shown, ""))
         box = node(
@@ -171,6 +169,18 @@ class Entries:
 
         entries = [node("option", text=words, value=name) for name, words in options.items()]
         return node("select", look, *entries, key=key, on=commit, value=value, aria_label=label)
+
+    def tick(self, key: str, label: str, ticked: bool, take: Callable[[bool], Any]) -> Node:
+        """A box to tick, with its label."""
+        box = node("input", key=key, on=lambda value: take(bool(value)), type="checkbox", checked=ticked)
+        box.properties["checked"] = ticked
+        return node("label", "switch", box, node("span", text=label))
+
+    def refuse(self, key: str, typed: str, refusal: str) -> None:
+        """Note a refusal at the field ``key``, or with an empty ``refusal`` that the field is good again."""
+        self.slips.pop(key, None)
+        if refusal:
+            self.slips[key] = (typed, refusal)
 
     def forget(self, prefix: str = "") -> None:
         """Drop what was refused in the fields whose key begins with ``prefix``."""

@@ -2,7 +2,7 @@
 // Every text goes in as text: nothing here reads markup.
 
 const TAGS = new Set(["div", "section", "span", "p", "h2", "h3", "h4", "ol", "ul", "li", "label", "button", "input",
-  "select", "option", "optgroup", "table", "thead", "tbody", "tr", "th", "td", "strong", "small"])
+  "select", "option", "optgroup", "table", "colgroup", "col", "thead", "tbody", "tr", "th", "td", "strong", "small", "details", "summary"])
 const ATTRIBUTE = /^(class|id|title|type|role|tabindex|placeholder|min|max|step|disabled|hidden|list|for|label|selected|scope|colspan|autocomplete|inputmode|maxlength|size|autofocus|popover|popovertarget|aria-[a-z]+|data-[a-z]+)$/
 const HELD_MS = 300   // a slider just moved by hand is not moved by an answer to an earlier position
 
@@ -202,6 +202,7 @@ export function render({ model, el }) {
     const sheet = event.target
     const opener = [...view.querySelectorAll("[popovertarget]")].find((b) => b.getAttribute("popovertarget") === sheet.id)
     opener?.setAttribute("aria-expanded", String(event.newState === "open"))
+    delete sheet.dataset.placed
     if (event.newState !== "open" || !opener) return
     const from = opener.getBoundingClientRect(), size = sheet.getBoundingClientRect()
     const below = window.innerHeight - from.bottom - 2 * GAP, above = from.top - 2 * GAP
@@ -211,6 +212,7 @@ export function render({ model, el }) {
     sheet.style.top = `${up ? from.top - GAP - height : from.bottom + GAP}px`
     const left = sheet.dataset.side === "left" ? from.left : from.right - size.width
     sheet.style.left = `${Math.min(Math.max(GAP, left), window.innerWidth - size.width - GAP)}px`
+    sheet.dataset.placed = ""
     const search = sheet.querySelector("[data-filter]")
     if (search) { search.value = ""; filter(search) }
     const first = search ?? sheet.querySelector("button")

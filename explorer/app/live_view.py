@@ -30,7 +30,8 @@ class Node:
     """One element: ``tag`` is its HTML name, ``key`` its name on the page and in reports from there.
 
     ``properties`` are HTML attributes; ``value`` is what an input shows, ``checked`` whether a box is ticked,
-    and ``colour`` sets the CSS variable of that name, as any name with ``--`` does. None and False leave an attribute out.
+    and ``colour`` sets the CSS variable of that name, as any name with ``--`` does. None and False leave an
+    attribute out.
     """
 
     tag: str

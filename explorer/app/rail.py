@@ -1,0 +1,119 @@
+"""The left rail: the process drawn as it flows, from source waters through steps to the finished water."""
+
+from typing import Any, ClassVar
+
+from explorer.app.axes import number_text
+from explorer.app.desk import Desk, facts, heading
+from explorer.app.live_view import LiveView, Node, node
+from explorer.app.pickers import Choice, picker
+from explorer.app.state import Session
+from explorer.app.step_card import train_list
+from explorer.app.water_card import water_card
+from explorer.scenario import editing
+from explorer.scenario.model import Scenario
+from explorer.scenario.readouts import MINUS, NO_VALUE, READOUTS, format_value
+
+READOUTS_SHOWN = ("ph", "alkalinity", "calcium", "charge_balance", "ccpp", "temperature", "cost")
+"""What the rail asks of the operating point."""
+
+
+class Rail(LiveView):
+    """Everything that can be set about waters and treatment. A turned dial changes texts in place; only an
+    edit of the structure draws cards anew."""
+
+    css: ClassVar[tuple[str, ...]] = ("live_view.css", "rail.css")
+
+    def __init__(self, session: Session, **settings: Any) -> None:
+        self.desk = Desk(session)
+        super().__init__(**({"sizing_mode": "stretch_width", "margin": 0} | settings))
+        session.want("rail", READOUTS_SHOWN)
+        session.param.watch(self._follow, ["values", "structure", "point"])
+        self.refresh()
+
+    @property
+    def view(self) -> "Rail":
+        """What the page shows."""
+        return self
+
+    def describe(self) -> Node:
+        return node(
+            "div", "rail",
+            node("section", "", *self._waters(), aria_label="Source waters"),
+            node("section", "", *self._treatment(), aria_label="Treatment, in order of flow"),
+            node("section", "", *self._cost(), aria_label="Running cost"),
+        )  # fmt: skip
+
+    def _follow(self, *events: Any) -> None:
+        if any(event.name == "structure" for event in events):
+            self.desk.settle()
+        self.refresh()
+
+    def _waters(self) -> list[Node]:
+        desk = self.desk
+        cards = [water_card(desk, water, place) for place, water in enumerate(desk.scenario.waters)]
+        return [heading("Source waters"), node("ul", "waters", *cards), *self._add_water()]
+
+    def _add_water(self) -> list[Node]:
+        desk = self.desk
+
+        def add(like: str) -> None:
+            def change(scenario: Scenario) -> None:
+                desk.opened = f"waters.{editing.add_water(scenario, like or None)}"
+
+            desk.entries.refuse("waters:add", "", desk.edit("Add a source water", change))
+
+        copies = [Choice(water.id, water.title, "copy") for water in desk.scenario.waters]
+        groups = {"New": [Choice("", "A new water", "to be filled in")], "Like one of these": copies}
+        return [
+            *picker("waters:add", "+ Add a source water", groups, add, hint="Search waters"),
+            desk.refusal("waters:add"),
+        ]
+
+    def _treatment(self) -> list[Node]:
+        desk = self.desk
+        blend = node("li", "", self._place("Blend", "blend", self._blend_state()), key="blend")
+        finished = node("li", "end", self._place("Finished water", "finished"), key="finished")
+        line = train_list(desk, desk.scenario.train, "", "blend", blend)
+        line.children.append(finished)
+        return [heading("Treatment, in order of flow"), line]
+
+    def _blend_state(self) -> str:
+        temperature = f"{self.desk.words('temperature', 'blend')} °C"
+        flow = self.desk.flow_text(self.desk.scenario.total_flow())
+        return f"{flow} · {temperature}" if flow else temperature
+
+    def _place(self, name: str, stage: str, state: str = "") -> Node:
+        """The card of a place on the line that is no step."""
+        desk = self.desk
+        head = node("div", "head", node("span", "name still", text=name), node("span", "aside", text=state))
+        found = facts(
+            f"pH {desk.words('ph', stage)}",
+            f"alk {desk.words('alkalinity', stage)}",
+            _calcium_carbonate(desk.reading("ccpp", stage)),
+            hint="Alkalinity in mg/L as CaCO₃; calcium carbonate to equilibrium with calcite",
+        )
+        return node("div", "card place", head, found)
+
+    def _cost(self) -> list[Node]:
+        """Cost of the chemicals, and how much of each is used a day."""
+        desk = self.desk
+        cost = desk.words("cost", "finished")
+        amount = f"{cost} {desk.scenario.currency} per ML" if cost != NO_VALUE else "no prices entered"
+        lines = [("Chemicals", amount.replace("  ", " "), "cost total")]
+        for name, use in desk.uses():
+            lines.append((name, f"{number_text(use, 0 if use >= 10 else 1)} kg/d", "cost"))
+        rows = [
+            node("div", look, node("span", text=name, title=name), node("span", text=words))
+            for name, words, look in lines
+        ]
+        return [heading("Running cost"), *rows]
+
+
+def _calcium_carbonate(potential: float) -> str:
+    """The precipitation potential with its sign as a word."""
+    readout = READOUTS["ccpp"]
+    text = format_value(potential, readout)
+    if text == NO_VALUE:
+        return f"CCPP {text}"
+    dissolves, precipitates = readout.sign_words
+    return f"{dissolves if text.startswith(MINUS) else precipitates} {text.lstrip(MINUS)} mg/L CaCO₃"

@@ -1,0 +1,175 @@
+"""Treatment steps on the rail: a train as a line of cards, each with its setting and what it did."""
+
+import math
+from dataclasses import replace
+
+from explorer.app.axes import number_text
+from explorer.app.desk import Desk, facts, unit_text
+from explorer.app.live_view import Node, node
+from explorer.app.pickers import Act, Choice, menu, picker
+from explorer.app.step_form import chemical_choices, step_form
+from explorer.app.text import in_sentence
+from explorer.scenario import editing
+from explorer.scenario.dials import Dial, step_name
+from explorer.scenario.model import DoseStep, Scenario, SideStreamStep, Step
+from explorer.scenario.readouts import READOUTS, format_value
+from explorer.scenario.steps import STEP_KINDS
+
+NOTICEABLE = {"ph": 0.005, "alkalinity": 0.05}
+"""Changes a step has to make before the card mentions them."""
+
+HOLD_SPANS = {"ph": (5.0, 11.0)}
+"""Ends of the slider of a held readout, where 0 to a round number would be no use."""
+
+
+def train_list(desk: Desk, train: list[Step], prefix: str, before: str = "", *ends: Node) -> Node:
+    """A train as a list of cards on their line, ended by the way to add a step.
+
+    prefix: address of what the train belongs to, with its dot ("" for the common train). before: id of the
+    stage the water comes from. ends: items that stand before the first card.
+    """
+    items = list(ends)
+    for position, step in enumerate(train):
+        items.append(step_card(desk, step, prefix, position, len(train), before))
+        before = step.id if step.on else before
+    items.append(node("li", "added", *add_step(desk, prefix), key=f"{prefix}train:add"))
+    return node("ol", "flow", *items)
+
+
+def step_card(desk: Desk, step: Step, prefix: str, position: int, count: int, before: str) -> Node:
+    """The card of one step; ``before`` is the stage the water comes from."""
+    key = f"{prefix}train.{step.id}"
+    opened = desk.opened == key
+    body = [
+        node("div", "head", *_head(desk, step, key, position, count)),
+        desk.refusal(key),
+        _effect(desk, step, before),
+        _setting(desk, step, key),
+    ]
+    if opened:
+        body.append(node("div", "details", *step_form(desk, step, key)))
+    if isinstance(step, SideStreamStep):
+        inner = train_list(desk, step.train, f"{key}.", before)
+        body.append(node("div", "inner", node("h4", text="In the side stream"), inner))
+    held = isinstance(step, DoseStep) and step.hold is not None
+    look = "card" + (" opened" if opened else "") + (" held" if held else "") + ("" if step.on else " off")
+    return node("li", "" if step.on else "idle", node("div", look, *body), key=key, data_reveal=opened)
+
+
+def _head(desk: Desk, step: Step, key: str, position: int, count: int) -> list[Node]:
+    name = step_name(desk.scenario, step)
+    if desk.naming == key:
+        return desk.name_field(key, step.id, name)
+    title = node(
+        "button", "open", node("span", "name", text=name), key=f"{key}:open", type="button",
+        on=lambda value: desk.open(key), aria_expanded=str(desk.opened == key).lower(), title=name,
+    )  # fmt: skip
+    return [
+        title,
+        _tag(desk, step),
+        *menu(key, f"More for {name}", _acts(desk, step, key, name, position, count)),
+    ]
+
+
+def _tag(desk: Desk, step: Step) -> Node:
+    """State of the step beside its name: out of service, or what it holds."""
+    if not step.on:
+        return node("span", "tag quiet", text="out of service")
+    if isinstance(step, DoseStep) and step.hold is not None:
+        readout = READOUTS[step.hold.readout]
+        value = format_value(step.hold.value, readout)
+        return node("span", "tag", text=f"holds {in_sentence(readout.short)} {value}", title=readout.label)
+    return node("span", "tag none")
+
+
+def _acts(desk: Desk, step: Step, key: str, name: str, position: int, count: int) -> list[Act]:
+    step_id = step.id
+    switch = "Take out of service" if step.on else "Put into service"
+
+    def moved(by: int) -> object:
+        act = desk.act(key, f"Move {name}", lambda scenario: editing.move_step(scenario, step_id, by))
+        return act if 0 <= position + by < count else None
+
+    remove = desk.act(key, f"Remove {name}", lambda scenario: editing.remove_step(scenario, step_id))
+    return [
+        Act("details", "Close" if desk.opened == key else "Open the settings", lambda: desk.open(key)),
+        Act("rename", "Rename", lambda: desk.rename(key)),
+        Act("up", "Move up", moved(-1)),
+        Act("down", "Move down", moved(1)),
+        Act(
+            "duplicate", "Duplicate",
+            desk.act(key, f"Duplicate {name}", lambda scenario: editing.duplicate_step(scenario, step_id)),
+        ),
+        Act(
+            "switch", switch,
+            desk.act(key, f"{switch}: {name}", lambda scenario: editing.switch_step(scenario, step_id)),
+        ),
+        Act("remove", "Remove", remove, danger=True),
+    ]  # fmt: skip
+
+
+def _effect(desk: Desk, step: Step, before: str) -> Node:
+    """What the step did: the dose a hold came to, pH before and after, alkalinity added or taken."""
+    words: list[str | tuple[str, str] | None] = [_computed_dose(desk, step)]
+    rise = desk.change("ph", before, step.id)
+    after = desk.words("ph", step.id)
+    seen = math.isfinite(rise) and abs(rise) >= NOTICEABLE["ph"]
+    words.append(f"pH {desk.words('ph', before)} → {after}" if seen else f"pH {after}")
+    gain = desk.change("alkalinity", before, step.id)
+    if math.isfinite(gain) and abs(gain) >= NOTICEABLE["alkalinity"]:
+        words.append(f"alk {number_text(gain, 1, signed=True)}")
+    return facts(*words, hint="What the step did; alkalinity in mg/L as CaCO₃")
+
+
+def _computed_dose(desk: Desk, step: Step) -> tuple[str, str] | None:
+    """The dose that a hold came to, with its unit."""
+    if not isinstance(step, DoseStep) or step.hold is None:
+        return None
+    value = desk.dose(step.id)
+    if not math.isfinite(value):
+        return "▲ not reached", "poor"
+    unit = unit_text(step.hold.ceiling.unit)
+    return f"doses {number_text(value, 2 if abs(value) < 10 else 1)} {unit}", "strong"
+
+
+def _setting(desk: Desk, step: Step, key: str) -> Node | None:
+    """The one dial of a step that is turned most, on its card."""
+    dial = main_dial(desk, step, key)
+    if dial is None:
+        return None
+    width = desk.tolerance(dial)
+    after = [node("span", "unit", text=width)] if width else []
+    held = step.hold.readout if isinstance(step, DoseStep) and step.hold is not None else ""
+    if held and dial.address.endswith(".hold.value"):
+        return desk.dial_row(dial, *after, span=HOLD_SPANS.get(held), digits=READOUTS[held].digits)
+    return desk.dial_row(dial, *after)
+
+
+def main_dial(desk: Desk, step: Step, key: str) -> Dial | None:
+    """The dial on a step's card: the held value of a hold, else the first number of the step."""
+    dials = desk.session.dials
+    names = ["hold.value", *step.fields()] if isinstance(step, DoseStep) else list(step.fields())
+    return next((dials[f"{key}.{name}"] for name in names if f"{key}.{name}" in dials), None)
+
+
+def add_step(desk: Desk, prefix: str) -> list[Node]:
+    """The list of everything that can be added at the end of a train."""
+    key = f"{prefix}train:add"
+
+    def add(choice: str) -> None:
+        kind, _, chemical = choice.partition(":")
+
+        def change(scenario: Scenario) -> None:
+            desk.opened = f"{prefix}train.{editing.add_step(scenario, prefix, kind, chemical or None)}"
+
+        desk.entries.refuse(key, "", desk.edit("Add a treatment step", change))
+
+    kinds = [
+        Choice(f"{kind}:", step.kind_title, "", (step.__doc__ or "").lower())
+        for kind, step in STEP_KINDS.items()
+        if step is not DoseStep
+    ]
+    doses = [replace(choice, key=f"dose:{choice.key}") for choice in chemical_choices(desk.scenario)]
+    groups = {"Dose a chemical": doses, "Other steps": kinds}
+    words = "+ Add a treatment step" if not prefix else "+ Add a step"
+    return [*picker(key, words, groups, add, hint="Search chemicals and steps"), desk.refusal(key)]
