@@ -252,6 +252,7 @@ def test_only_the_impossible_points_of_a_range_are_marked(system, sheet):
     ("change", "message"),
     [
         ({"ph": Measured(15.0)}, "ph: 15 is not a pH; allowed 0 to 14"),
+        ({"ph": Measured(7.0, read_at=90.0)}, "ph: read at 90 °C is out of range; allowed 0 to 60 °C"),
         ({"calcium": Measured(-1.0, unit="mg/L")}, "calcium: -1 mg/L is negative; allowed 0 or more"),
         (
             {"temperature": Measured(70.0, unit="°C")},
@@ -286,6 +287,23 @@ def test_an_analysis_that_cannot_be_used_is_refused_in_one_sentence(system, gran
         analysis_totals(entries, system)
     assert str(refused.value).startswith(message)
     assert refused.value.key == message.partition(":")[0]
+
+
+def test_only_the_points_out_of_range_are_marked_and_named(system, granite):
+    """Calcium above the hardness leaves no magnesium: those points are lost, with the entry named."""
+    del granite["magnesium"]
+    granite["total_hardness"] = Measured(19.0, unit="°dH")
+    intake = analysis_totals(granite, system, overrides={"calcium": [100.0, 116.0, 150.0]})
+    np.testing.assert_array_equal(intake.possible, [True, True, False])
+    assert [(n.where, n.text) for n in intake.notes if n.level == "error"] == [
+        ("magnesium", "is out of range; allowed 0 or more (1 of 3 points)")
+    ]
+
+
+def test_acid_water_may_have_less_than_no_alkalinity(system, sheet):
+    """pH 4 with −4.9 mg/L of alkalinity is a water."""
+    intake = analysis_totals(sheet(temperature=15, ph=4.0, alkalinity=-4.9, chloride=20), system)
+    assert intake.possible
 
 
 def test_an_unknown_way_to_close_the_balance_is_refused(system, granite):

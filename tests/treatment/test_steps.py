@@ -178,7 +178,7 @@ class TestAir:
         assert solved(air(pure, approach=100)).ph == pytest.approx(5.60, abs=0.02)
 
     def test_thin_air_holds_less(self):
-        """At 2000 m the air presses with 79.5 kPa (standard atmosphere); 1.23 kPa of it is vapour at 10 °C."""
+        """At 2000 m the air presses with 79.5 kPa (standard atmosphere); 1.23 of it vapour at 10 °C."""
         expected = (79.5 - 1.23) / (101.325 - 1.23)
         assert co2_in_air(10, altitude=2000) / co2_in_air(10) == pytest.approx(expected, rel=1e-3)
 

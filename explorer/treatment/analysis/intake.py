@@ -25,8 +25,14 @@ CLOSING_IONS: dict[str, float] = {"sodium": 1.0, "chloride": -1.0}
 AGREEMENT: dict[str, float] = {"alkalinity": 0.05, "dic": 0.10, "co2": 0.20, "total_hardness": 0.05}
 """Relative difference beyond which a redundant entry contradicts the others (common practice)."""
 
-TEMPERATURE_RANGE = (0.0, 60.0)
-PH_RANGE = (0.0, 14.0)
+_RANGES: dict[str, tuple[float, float, str]] = {
+    "temperature": (0.0, 60.0, "0 to 60 °C"),
+    "ph": (0.0, 14.0, "0 to 14"),
+    # Acid waters have less than none.
+    "alkalinity": (-np.inf, np.inf, "any number"),
+}
+_NOT_NEGATIVE = (0.0, np.inf, "0 or more")
+"""Range of an entry in base units, and the same in words."""
 
 _ROW = {"toc": "organic_carbon"}
 _NOT_A_TOTAL = {"temperature", "ph", "co2", "total_hardness", "tds", "conductivity"}
@@ -85,28 +91,24 @@ def analysis_totals(
     _hardness(amounts, entries, notes)
     shape = np.broadcast_shapes(*(amount.shape for amount in amounts.values()))
     totals = system.zeros(shape)
-    usable = np.ones(shape, bool)
+    usable = _in_range(amounts, shape, notes)
     for key, amount in amounts.items():
-        low, high = {"temperature": TEMPERATURE_RANGE, "ph": PH_RANGE}.get(key, (0.0, np.inf))
-        if key == "alkalinity":
-            low = -np.inf
-        usable &= (amount >= low) & (amount <= high)
         if key not in _NOT_A_TOTAL:
             totals[system.index[_ROW.get(key, key)]] = amount
     pair = [key for key in CARBONATE_KEYS if key in amounts][:2]
     reading = _reading_temperature(pair, entries, notes)
     fixed = {key: amounts[key] for key in pair}
 
-    def settle(totals: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+    def completed(totals: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
         return complete(system, totals, reading, **fixed)
 
-    totals, possible = settle(totals)
-    possible = possible & usable
+    totals, consistent = completed(totals)
+    if np.any(usable & ~consistent):
+        notes.append(_contradiction(pair, usable & ~consistent))
+    possible = consistent & usable
     temperature = np.broadcast_to(amounts["temperature"], shape)
-    if not possible.all():
-        notes.append(_impossible(pair, possible))
     if close_with != "none" and possible.any():
-        totals, closed = _close(totals, temperature, system, close_with, settle, notes)
+        totals, closed = _close(totals, temperature, system, close_with, completed, notes)
         possible = possible & closed
     _compare_redundant(amounts, pair, totals, reading, system, notes)
     return Intake(totals, temperature, possible, notes)
@@ -148,16 +150,26 @@ def _check_range(key: str, entry: Measured, amount: float) -> None:
     entered = f"{entry.central:g} {entry.unit}".strip()
     if not np.isfinite(amount):
         raise AnalysisError(key, "is not a finite number")
-    if key == "temperature":
-        low, high = TEMPERATURE_RANGE
-        if not low <= amount <= high:
-            raise AnalysisError(key, f"{entered} is out of range; allowed {low:g} to {high:g} °C")
-    elif key == "ph":
-        low, high = PH_RANGE
-        if not low <= amount <= high:
-            raise AnalysisError(key, f"{entered} is not a pH; allowed {low:g} to {high:g}")
-    elif amount < 0 and key != "alkalinity":
-        raise AnalysisError(key, f"{entered} is negative; allowed 0 or more")
+    low, high, allowed = _RANGES.get(key, _NOT_NEGATIVE)
+    if not low <= amount <= high:
+        what = {"ph": "is not a pH", "temperature": "is out of range"}.get(key, "is negative")
+        raise AnalysisError(key, f"{entered} {what}; allowed {allowed}")
+    if entry.read_at is not None and key in ("ph", "co2"):
+        coldest, warmest, allowed = _RANGES["temperature"]
+        if not coldest <= entry.read_at <= warmest:
+            raise AnalysisError(key, f"read at {entry.read_at:g} °C is out of range; allowed {allowed}")
+
+
+def _in_range(amounts: Mapping[str, np.ndarray], shape: tuple[int, ...], notes: list[Note]) -> np.ndarray:
+    """Points at which every amount is one a water can have; the others are noted by entry."""
+    usable = np.ones(shape, bool)
+    for key, amount in amounts.items():
+        low, high, allowed = _RANGES.get(key, _NOT_NEGATIVE)
+        outside = ~((amount >= low) & (amount <= high))
+        if outside.any():
+            notes.append(Note("error", key, f"is out of range; allowed {allowed}{_points(outside)}"))
+            usable &= ~outside
+    return usable
 
 
 def _hardness(amounts: dict[str, np.ndarray], entries: Mapping[str, Measured], notes: list[Note]) -> None:
@@ -207,12 +219,16 @@ _IMPOSSIBLE = {
 }
 
 
-def _impossible(pair: list[str], possible: np.ndarray) -> Note:
-    where = "alkalinity" if "alkalinity" in pair else pair[-1]
+def _contradiction(pair: list[str], where: np.ndarray) -> Note:
+    """What to say of the points at which no water has the two carbonate entries."""
+    entry = "alkalinity" if "alkalinity" in pair else pair[-1]
     text = _IMPOSSIBLE.get(tuple(pair), f"no water has these values of {pair[0]} and {pair[1]}: check both")
-    if possible.any():
-        text += f" ({np.count_nonzero(~possible)} of {possible.size} points)"
-    return Note("error", where, text)
+    return Note("error", entry, text + _points(where))
+
+
+def _points(where: np.ndarray) -> str:
+    """How many points a sentence is about, where it is not about all."""
+    return "" if where.all() else f" ({np.count_nonzero(where)} of {where.size} points)"
 
 
 def _close(
@@ -220,7 +236,7 @@ def _close(
     temperature: np.ndarray,
     system: System,
     ion: str,
-    settle: Callable[[np.ndarray], tuple[np.ndarray, np.ndarray]],
+    completed: Callable[[np.ndarray], tuple[np.ndarray, np.ndarray]],
     notes: list[Note],
 ) -> tuple[np.ndarray, np.ndarray]:
     """Adjust one conservative ion until the charges balance, and where that can be done.
@@ -235,7 +251,7 @@ def _close(
         adjusted = totals[row] - system.solve(totals, temperature).charge / CLOSING_IONS[ion]
         below |= adjusted < 0
         totals[row] = np.maximum(adjusted, 0)
-        totals, _ = settle(totals)
+        totals, _ = completed(totals)
     if below.all():
         allowed = ", ".join(["none", *(other for other in CLOSING_IONS if other != ion)])
         raise AnalysisError(
