@@ -35,7 +35,7 @@ HYDROXIDES: dict[str, Hydroxide] = {
 """Flocs by the name of the solid."""
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Flocculated:
     """The water left, the suspended floc [mol/L by solid], where the pH is too low for a floc to form, where
     the alkalinity does not suffice for all the metal, and where there was an answer at all."""

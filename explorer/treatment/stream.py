@@ -42,7 +42,7 @@ MENDABLE = (Problem.ALKALINITY_EXHAUSTED, Problem.OUTSIDE_WINDOW)
 """Problems of a floc that a later dose of alkali puts right as long as the floc is suspended."""
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Stream:
     """One water at one place of the plant, for any number of points at once.
 

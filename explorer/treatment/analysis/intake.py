@@ -39,7 +39,7 @@ _NOT_A_TOTAL = {"temperature", "ph", "co2", "total_hardness", "tds", "conductivi
 _CLOSING_PASSES = 4
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Intake:
     """A water ready for blending.
 
