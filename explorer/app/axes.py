@@ -1,4 +1,4 @@
-"""What the plots need of arithmetic: calm axis limits, label places, gaps, number texts. Pure functions."""
+"""What the plots need of arithmetic: calm axis limits, number texts. Pure functions."""
 
 from __future__ import annotations
 
@@ -72,46 +72,6 @@ def steady_limits(
         if previous[0] - slack <= low and high <= previous[1] + slack and high - low >= _KEEP_ABOVE * width:
             return previous
     return outward(low, high)
-
-
-def spread(places: Sequence[float], gap: float, low: float, high: float) -> list[float]:
-    """Label places moved apart to at least ``gap``, in the same order, inside ``low`` … ``high`` if they fit.
-
-    Each place moves as little as the others allow: overlapping labels share their middle.
-    """
-    order = sorted(range(len(places)), key=lambda index: places[index])
-    groups: list[list[float]] = []  # [sum of wanted tops, count]
-    for position, index in enumerate(order):
-        groups.append([places[index] - gap * position, 1.0])
-        while len(groups) > 1 and groups[-2][0] / groups[-2][1] > groups[-1][0] / groups[-1][1]:
-            total, count = groups.pop()
-            groups[-1][0] += total
-            groups[-1][1] += count
-    room = high - gap * max(0, len(places) - 1)
-    moved, position = [0.0] * len(places), 0
-    for total, count in groups:
-        base = min(max(total / count, low), max(room, low))
-        for _ in range(int(count)):
-            moved[order[position]] = base + gap * position
-            position += 1
-    return moved
-
-
-def gaps(x: np.ndarray, reasons: np.ndarray) -> list[tuple[float, float, str]]:
-    """Stretches of ``x`` that could not be solved: (from, to, reason), half a step wider than their points.
-
-    ``reasons`` holds "" where the point was solved.
-    """
-    edges = np.concatenate([[x[0]], (x[1:] + x[:-1]) / 2, [x[-1]]])
-    found: list[tuple[float, float, str]] = []
-    for index, reason in enumerate(str(reason) for reason in reasons):
-        if not reason:
-            continue
-        start, stop = float(edges[index]), float(edges[index + 1])
-        if found and found[-1][1] == start and found[-1][2] == reason:
-            start = found.pop()[0]
-        found.append((start, stop, reason))
-    return found
 
 
 def number_text(value: float, digits: int, signed: bool = False) -> str:

@@ -86,7 +86,7 @@ class FileDesk(JSComponent):
         self._changed()
 
     def open_bytes(self, content: bytes, name: str) -> str:
-        """Take over a scenario file; "" or the sentence that says why it is refused. The old one then stays."""
+        """Take over a scenario file; "" or the sentence why it is refused. The old scenario then stays."""
         if len(content) > LARGEST_FILE:
             return self._refuse(
                 name, f"is larger than {LARGEST_FILE // 1_000_000} MB; allowed are scenario files"

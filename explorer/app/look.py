@@ -151,16 +151,22 @@ VIEW_STYLES = ("live_view.css", "views.css")
 """Style files of the main column's views, which carry them because page styles stop at a shadow root."""
 
 
+VIEW_HOST_CSS = ":host { min-height: 0 !important; height: 100%; }"
+"""For a view that fills the place under the verdict and shrinks with it."""
+
 PLOT_GRID_CSS = """
 :host { display: grid !important; grid-template-columns: repeat(2, minmax(0, 1fr));
-  grid-template-rows: repeat(2, minmax(0, 1fr)); gap: 10px; margin-top: 9px !important; min-height: 0; }
+  /* the lower row carries the axis label */
+  grid-template-rows: calc(50% - 15px) calc(50% + 5px); gap: 10px; margin-top: 9px !important;
+  min-height: 0; }
 @media (max-width: 759px) {
   :host { grid-template-columns: minmax(0, 1fr); grid-template-rows: repeat(4, minmax(0, 1fr)); }
 }
 """
 
 PLOT_CARD_CSS = """
-:host { background: var(--card); border: 1px solid var(--line); border-radius: 7px; overflow: hidden; min-height: 0; }
+:host { background: var(--card); border: 1px solid var(--line); border-radius: 7px; overflow: hidden;
+  min-height: 0; }
 """
 
 
@@ -176,6 +182,7 @@ def bokeh_theme(palette: Palette) -> Theme:
             "background_fill_color": palette.card,
             "border_fill_color": palette.card,
             "outline_line_color": None,
+            "border_line_color": None,
         },
         "Axis": {
             "axis_line_color": palette.line,

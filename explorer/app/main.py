@@ -11,7 +11,7 @@ from explorer.app.files import Shelf, tab_name
 from explorer.app.runner import Conflate
 from explorer.app.shell import TITLE, Shell
 from explorer.app.state import Session, Work
-from explorer.scenario.files import open_scenario
+from explorer.scenario.files import ScenarioError, open_scenario
 from explorer.scenario.shipped import default_scenario_path
 
 SHELF = Shelf()
@@ -22,17 +22,29 @@ def build(path: Path | None = None, asked: str = "", shelf: Shelf = SHELF) -> Sh
     """The page for one tab.
 
     path: scenario file to start with, a shipped one where None. asked: name of the working copy the tab asks
-    for; unknown names start afresh. Raises ScenarioError where the file cannot be read.
+    for; unknown names start afresh. A file that cannot be read is said so on the page, which then shows the
+    shipped demo.
     """
     tab = tab_name(asked)
-    work = shelf.take(tab)
+    work, trouble = shelf.take(tab), ""
     if work is None:
-        start = path or default_scenario_path()
-        work = Work(open_scenario(start), file_name=start.name)
-    session = Session(work, runner=Conflate())
+        work, trouble = _opened(path)
+    session = Session(work, runner=Conflate(pn.state.curdoc))
     shelf.keep(tab, session.work)
     session.solve_now()
+    session.message = trouble or session.message
     return Shell(session, tab)
+
+
+def _opened(path: Path | None) -> tuple[Work, str]:
+    trouble = ""
+    if path is not None:
+        try:
+            return Work(open_scenario(path), path.name), ""
+        except ScenarioError as error:
+            trouble = f"{path.name} was not opened: {error}"
+    start = default_scenario_path()
+    return Work(open_scenario(start), start.name), trouble
 
 
 def create_app(path: Path | None = None) -> Callable[[], pn.Template]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 
@@ -9,7 +10,6 @@ import numpy as np
 
 from explorer.app.axes import (
     Limits,
-    gaps,
     number_text,
     range_text,
     short_number,
@@ -18,18 +18,25 @@ from explorer.app.axes import (
 from explorer.app.text import formula_text, in_sentence
 
 MOST_LINES = 6
-"""Species drawn one by one; the rest of a family is drawn as their sum."""
+"""Species drawn one by one at most; the rest of a family is drawn as their sum."""
 
-OTHERS = "others"
+PAIRS, OTHERS = "ion pairs", "others"
+
+METALS = ("aluminium", "iron")
+_METAL = re.compile(r"(Ca|Mg|Na|K|Al|Fe)(?![a-z])")
 
 
 Band = tuple[float | None, float | None]
 """Lower and upper bound of a target; None where there is none."""
 
 
+Missing = tuple[tuple[float, float, str], ...]
+"""Stretches without a result: from, to, reason."""
+
+
 @dataclass(frozen=True)
 class Line:
-    """One curve: ``name`` labels its end ("" in a plot with one curve); ``y`` is nan where nothing was solved."""
+    """One curve: ``name`` labels its end ("" in a plot with one curve); ``y`` is nan where not solved."""
 
     name: str
     y: np.ndarray
@@ -37,11 +44,12 @@ class Line:
 
 @dataclass(frozen=True)
 class Mark:
-    """A place on the plot worth a sign: where the curve crosses a bound of the target."""
+    """A place on the plot worth a sign: where the curve crosses a bound of the target, rising or falling."""
 
     x: float
     y: float
     text: str
+    rising: bool
 
 
 @dataclass(frozen=True)
@@ -59,7 +67,7 @@ class Picture:
     signed: bool = False
     band: Band | None = None
     marks: tuple[Mark, ...] = ()
-    gaps: tuple[tuple[float, float, str], ...] = ()
+    gaps: Missing = ()
     words: str = ""
     empty: str = ""
 
@@ -92,18 +100,31 @@ def band_of(targets: Sequence[Band]) -> Band | None:
     return low, high
 
 
-def crossing_marks(x: np.ndarray, y: np.ndarray, bounds: Sequence[float], along: Axis) -> tuple[Mark, ...]:
-    """Where the curve passes a bound, by linear interpolation between neighbouring solved points."""
+def crossing_marks(
+    x: np.ndarray, y: np.ndarray, targets: Sequence[Band], along: Axis, slack: float = 0.0
+) -> tuple[Mark, ...]:
+    """Where the curve passes a bound, by linear interpolation between neighbouring solved points.
+
+    A value within ``slack`` beyond a bound still counts as on its inner side.
+    """
+    lows = {low - slack: low for low, _ in targets if low is not None}
+    highs = {high + slack: high for _, high in targets if high is not None}
     marks = []
-    for bound in sorted(set(bounds)):
-        away = y - bound
+    for edge, bound in sorted((lows | highs).items()):
+        away = y - edge
         with np.errstate(invalid="ignore"):
             passing = np.nonzero(((away[:-1] < 0) & (away[1:] >= 0)) | ((away[:-1] >= 0) & (away[1:] < 0)))[0]
         for index in passing:
             part = away[index] / (away[index] - away[index + 1])
             place = float(x[index] + part * (x[index + 1] - x[index]))
-            marks.append(Mark(place, bound, along.at(place)))
+            marks.append(Mark(place, bound, along.at(place), bool(away[index + 1] > away[index])))
     return tuple(marks)
+
+
+def rising(x: np.ndarray, y: np.ndarray) -> np.ndarray:
+    """``y`` in the order of rising ``x``: a sweep may run downwards, an axis does not."""
+    y = np.broadcast_to(np.asarray(y, float), np.shape(x))
+    return y[::-1] if x[-1] < x[0] else y
 
 
 def least_span(digits: int, limit: float) -> float:
@@ -128,8 +149,9 @@ def readout_picture(
     y: np.ndarray,
     along: Axis,
     targets: Sequence[Band] = (),
-    reasons: np.ndarray | None = None,
+    missing: Missing = (),
     previous: Limits | None = None,
+    slack: float = 0.0,
 ) -> Picture:
     """One readout against the swept dial, with its target band and the places where it crosses a bound."""
     y = np.asarray(y, float)
@@ -137,12 +159,11 @@ def readout_picture(
     finite = y[np.isfinite(y)]
     largest = float(np.abs(finite).max()) if finite.size else 1.0
     limits = steady_limits(y, previous, least_span(quantity.digits, largest), bounds)
-    marks = crossing_marks(x, y, bounds, along)
-    notes = [quantity.unit] if quantity.unit else []
+    marks = crossing_marks(x, y, targets, along, slack)
+    notes = [quantity.unit.replace(" as ", " ")] if quantity.unit else []
     if targets:
         band = band_of(targets)
         notes.append("target " + range_text(*band) if band else "targets exclude each other")
-    missing = _gaps(x, y, reasons)
     return Picture(
         title=quantity.label,
         note=" · ".join(notes),
@@ -167,19 +188,18 @@ def species_picture(
     x: np.ndarray,
     along: Axis,
     logarithmic: bool = False,
-    reasons: np.ndarray | None = None,
+    missing: Missing = (),
     previous: Limits | None = None,
 ) -> Picture:
     """A family of species against the swept dial: percent of the family's sum, or log₁₀ of mol/L.
 
     ``members`` maps species names to concentrations, mol/L, of the shape of ``x``.
     """
-    amounts = {formula_text(name): np.asarray(amount, float) for name, amount in members.items()}
+    amounts = _named(family, members)
     total = sum(amounts.values(), np.zeros(len(x)))
     present = bool(np.any(total[np.isfinite(total)] > 0)) if amounts else False
     label = f"{family[:1].upper()}{family[1:]} species"
-    missing = _gaps(x, total, reasons) if amounts else ()
-    note = "log₁₀ of mol/L" if logarithmic else "% of the family, by amount of substance"
+    note = "log₁₀ of mol/L" if logarithmic else "mole percent"
     if not present:
         return Picture(
             label,
@@ -218,6 +238,16 @@ def species_picture(
     )
 
 
+def _named(family: str, members: Mapping[str, np.ndarray]) -> dict[str, np.ndarray]:
+    """Amounts by printed name; pairs with metal ions as their sum, except in the families of those metals."""
+    amounts: dict[str, np.ndarray] = {}
+    for name, amount in members.items():
+        paired = family not in METALS and _METAL.search(name) is not None
+        printed = PAIRS if paired else formula_text(name.removesuffix("(aq)"))
+        amounts[printed] = amounts.get(printed, 0.0) + np.asarray(amount, float)
+    return amounts
+
+
 def _foremost(amounts: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
     """The species worth a line of their own, largest first by their greatest amount; the others summed."""
 
@@ -235,15 +265,7 @@ def _foremost(amounts: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
     return chosen
 
 
-def _gaps(x: np.ndarray, y: np.ndarray, reasons: np.ndarray | None) -> tuple[tuple[float, float, str], ...]:
-    unsolved = ~np.isfinite(y)
-    if not unsolved.any():
-        return ()
-    given = np.broadcast_to("" if reasons is None else np.asarray(reasons, str), x.shape)
-    return tuple(gaps(x, np.where(unsolved, np.where(given == "", "no solution", given), "")))
-
-
-def _first_reason(missing: tuple[tuple[float, float, str], ...]) -> str:
+def _first_reason(missing: Missing) -> str:
     return missing[0][2] if missing else "no solution"
 
 
@@ -260,7 +282,7 @@ def _words(
     y: np.ndarray,
     along: Axis,
     marks: tuple[Mark, ...],
-    missing: tuple[tuple[float, float, str], ...],
+    missing: Missing,
 ) -> str:
     """The plot in one or two sentences, for screen readers."""
     unit = f" {quantity.unit}" if quantity.unit else ""

@@ -1,16 +1,16 @@
 """Linked plots over one swept dial: figures are built once, afterwards only columns and ranges change.
 
 The operating point is one editable span shared by all plots. Curves come as ``multi_line`` rows, so that more
-curves never mean more models. Labels that follow the pointer, and the rings on the operating point, live in the
-page alone (``sweep.js``): moving the pointer costs no message to the server.
+curves never mean more models. Labels that follow the pointer, names at the ends of curves and the rings on the
+operating point live in the page alone (``sweep.js``): moving the pointer costs no message to the server.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import replace
 from typing import Any
 
+from bokeh.core.properties import value
 from bokeh.events import MouseLeave, MouseMove, Pan, PanEnd, PanStart, Tap
 from bokeh.models import (
     BasicTicker,
@@ -25,7 +25,6 @@ from bokeh.models import (
 )
 from bokeh.plotting import figure
 
-from explorer.app.axes import number_text, spread
 from explorer.app.look import (
     CROSSING_MARKER,
     DASHES,
@@ -38,11 +37,15 @@ from explorer.app.look import (
 )
 from explorer.app.pictures import Axis, Picture
 
-_LABEL_GAP = 0.085  # least distance of two end labels, as part of the plot's height
 _SCRIPT = (FOLDER / "sweep.js").read_text(encoding="utf-8")
 _TICKS = """
-const text = Math.abs(tick) < 1e-12 ? "0" : String(Number(Math.abs(tick).toPrecision(6)))
-return (tick < 0 && text !== "0" ? "−" : "") + text + after
+let digits = 0
+for (const other of ticks) {
+  const decimals = String(Number(other.toPrecision(6))).split(".")[1] ?? ""
+  digits = Math.max(digits, decimals.length)
+}
+const text = Math.abs(tick).toFixed(Math.min(digits, 8))
+return (tick < 0 && Number(text) !== 0 ? "−" : "") + text + after
 """
 
 
@@ -69,13 +72,16 @@ class LinePlot:
         self.y_range = Range1d(0, 1)
         self.has_x_label = x_label
         self.lines = ColumnDataSource(
-            data={key: [] for key in ("xs", "ys", "colour", "dash", "label", "digits", "figures", "signed")}
+            data={
+                key: []
+                for key in ("xs", "ys", "colour", "dash", "label", "digits", "figures", "signed", "unit")
+            }
         )
-        self.ends = ColumnDataSource(data={"x": [], "y": [], "text": [], "colour": []})
-        self.crossings = ColumnDataSource(data={"x": [], "y": [], "text": [], "dx": [], "align": []})
+        self.ends = _in_page(x=[], y=[], text=[], colour=[])
+        self.crossings = ColumnDataSource(data={key: [] for key in ("x", "y", "text", "dx", "dy", "align")})
         self.gaps = ColumnDataSource(data={"x0": [], "x1": [], "x": [], "text": []})
         self.rings = _in_page(x=[], y=[], colour=[])
-        self.labels = _in_page(x=[], y=[], text=[], colour=[], dx=[], align=[])
+        self.labels = _in_page(x=[], y=[], text=[], colour=[], dx=[], dy=[], align=[])
         self.figure = self._build(x_range, point, cross, labels_right)
 
     def _build(self, x_range: Range1d, point: Span, cross: Span, labels_right: bool) -> figure:
@@ -89,7 +95,7 @@ class LinePlot:
             min_height=120,
             min_border_left=54,
             min_border_top=6,
-            min_border_right=74 if labels_right else 20,
+            min_border_right=74 if labels_right else 28,
             min_border_bottom=26,
             output_backend="canvas",
             html_attributes={"role": "img", "aria-label": self.name},
@@ -138,10 +144,10 @@ class LinePlot:
             y="y",
             text="text",
             source=self.crossings,
-            text_font=FONT,
+            text_font=value(FONT),
             text_font_size="11px",
             x_offset="dx",
-            y_offset=-5,
+            y_offset="dy",
             text_align="align",
             text_baseline="bottom",
             level="annotation",
@@ -152,7 +158,7 @@ class LinePlot:
             text="text",
             source=self.ends,
             text_color="colour",
-            text_font=FONT,
+            text_font=value(FONT),
             x_offset=7,
             text_font_size="12px",
             text_baseline="middle",
@@ -175,10 +181,11 @@ class LinePlot:
             text="text",
             source=self.labels,
             text_color="colour",
-            text_font=FONT,
+            text_font=value(FONT),
             text_font_size="12px",
             text_font_style="bold",
             x_offset="dx",
+            y_offset="dy",
             text_align="align",
             text_baseline="middle",
             background_fill_alpha=0.88,
@@ -239,17 +246,9 @@ class LinePlot:
             "digits": [picture.digits] * count,
             "figures": [picture.significant or 0] * count,
             "signed": [picture.signed] * count,
+            "unit": [picture.unit] * count,
         }
-        self.ends.data = self._end_labels(picture, colours)
-        width = float(picture.x[-1] - picture.x[0]) or 1.0
-        on_left = [(mark.x - float(picture.x[0])) / width > 0.8 for mark in picture.marks]
-        self.crossings.data = {
-            "x": [mark.x for mark in picture.marks],
-            "y": [mark.y for mark in picture.marks],
-            "text": [mark.text for mark in picture.marks],
-            "dx": [-6 if left else 6 for left in on_left],
-            "align": ["right" if left else "left" for left in on_left],
-        }
+        self.crossings.data = self._crossing_labels(picture)
         self.gaps.data = {
             "x0": [gap[0] for gap in picture.gaps],
             "x1": [gap[1] for gap in picture.gaps],
@@ -257,20 +256,22 @@ class LinePlot:
             "text": [gap[2] for gap in picture.gaps],
         }
 
-    def _end_labels(self, picture: Picture, colours: list[str]) -> dict[str, list[Any]]:
-        """Names at the right ends of the curves, moved apart where they would overlap."""
-        low, high = picture.limits
-        ends: list[tuple[float, float, str, str]] = []
-        for line, colour in zip(picture.lines, colours, strict=True):
-            solved = line.y[line.y == line.y]
-            if line.name and solved.size:
-                ends.append((float(picture.x[-1]), min(max(float(solved[-1]), low), high), line.name, colour))
-        places = spread([end[1] for end in ends], _LABEL_GAP * (high - low), low, high)
+    @staticmethod
+    def _crossing_labels(picture: Picture) -> dict[str, list[Any]]:
+        """Marks with their texts on the free side of the curve: above it, or below at an end of the axis."""
+        start, width = float(picture.x[0]), float(picture.x[-1] - picture.x[0]) or 1.0
+        sides = []
+        for mark in picture.marks:
+            part = (mark.x - start) / width
+            at_edge = part < 0.1 if mark.rising else part > 0.9
+            sides.append((mark.rising != at_edge, at_edge))
         return {
-            "x": [end[0] for end in ends],
-            "y": places,
-            "text": [end[2] for end in ends],
-            "colour": [end[3] for end in ends],
+            "x": [mark.x for mark in picture.marks],
+            "y": [mark.y for mark in picture.marks],
+            "text": [mark.text for mark in picture.marks],
+            "dx": [-7 if left else 7 for left, _ in sides],
+            "dy": [17 if below else -4 for _, below in sides],
+            "align": ["right" if left else "left" for left, _ in sides],
         }
 
 
@@ -310,7 +311,9 @@ class LinkedPlots:
                 "lines": plot.lines,
                 "rings": plot.rings,
                 "labels": plot.labels,
+                "ends": plot.ends,
                 "y_range": plot.y_range,
+                "axis": plot.figure.xaxis[0],
                 "figure": plot.figure,
             }
             for plot in self.plots.values()
@@ -333,8 +336,11 @@ class LinkedPlots:
         for name, picture in pictures.items():
             self.plots[name].show(picture, along)
 
-    def set_unit(self, unit: str) -> None:
-        """Unit behind every tick of the x axis where it is one sign wide; the axis label names it anyway."""
+    def set_axis(self, along: Axis) -> None:
+        """Decimals and unit of the places the page prints; short units stand behind every tick, too."""
+        unit = along.unit
+        if self.point.tags != [along.digits, unit]:
+            self.point.tags = [along.digits, unit]
         after = f" {unit}" if unit in {"%", "°C", "°F"} else ""
         for plot in self.plots.values():
             if plot.figure.xaxis[0].formatter.args["after"] != after:
@@ -359,13 +365,3 @@ class LinkedPlots:
     def _moved(self, attr: str, old: Any, new: Any) -> None:
         if not self._quiet and new is not None:
             self.turned(float(new))
-
-
-def pinned(picture: Picture, limits: tuple[float, float]) -> Picture:
-    """The same picture on other axis limits."""
-    return replace(picture, limits=limits)
-
-
-def value_label(value: float, picture: Picture) -> str:
-    """A value as the labels in the page print it."""
-    return number_text(value, picture.digits, picture.signed)

@@ -11,7 +11,9 @@ from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
 from typing import Any
 
-import panel as pn
+from bokeh.document import Document
+from panel.io.document import hold
+from panel.io.state import set_curdoc
 
 logger = logging.getLogger(__name__)
 
@@ -20,9 +22,13 @@ POOL = ThreadPoolExecutor(max_workers=2, thread_name_prefix="solve")
 
 
 class Conflate:
-    """Runner for one tab. Without an event loop (tests, scripts) it computes at once."""
+    """Runner for one tab, whose results are applied to ``document``.
 
-    def __init__(self, pool: ThreadPoolExecutor = POOL) -> None:
+    Without an event loop (tests, scripts) it computes at once.
+    """
+
+    def __init__(self, document: Document | None = None, pool: ThreadPoolExecutor = POOL) -> None:
+        self._document = document
         self._pool = pool
         self._next: tuple[Callable[[], Any], Callable[[Any], None]] | None = None
         self._task: asyncio.Task[None] | None = None
@@ -47,8 +53,9 @@ class Conflate:
             (compute, apply), self._next = self._next, None
             try:
                 result = await asyncio.get_running_loop().run_in_executor(self._pool, compute)
-                # Bokeh refuses changes outside of an event unless they are held; held ones leave as one message.
-                with pn.io.hold():
+                # Bokeh refuses changes outside of an event unless they are held; held, they leave as one
+                # message. The document is named because a drag in a plot does not leave it in the context.
+                with set_curdoc(self._document), hold(self._document):
                     apply(result)
             except Exception:
                 logger.exception("a calculation could not be shown")

@@ -33,7 +33,7 @@ class Shell:
         self.bar = Bar(session, example_titles(), self.files.open_example)
         self.rail = Rail(session)
         self.tiles = Tiles(session)
-        self.summary = Summary(session, self.tiles)
+        self.summary = Summary(session)
         self.message = Message(session)
         self.sweep = SweepView(session)
         self.foot = Foot(session)

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from typing import Any
 
 import numpy as np
@@ -10,9 +9,10 @@ import numpy as np
 from explorer.app.axes import number_text
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
+from explorer.app.pictures import rising
 from explorer.app.state import Session
 from explorer.app.text import in_sentence, plain, unit_text
-from explorer.app.tiles import FEWEST, MOST, Tiles
+from explorer.app.tiles import tile_label
 from explorer.app.verdict import TargetState, Verdict, verdict
 from explorer.scenario.dials import Dial
 from explorer.scenario.evaluate import Outcome
@@ -27,17 +27,23 @@ _GLYPHS = {"error": "✕", "caution": "▲", "info": "i"}
 
 
 def target_states(point: Outcome, swept: Sweep | None) -> list[TargetState]:
-    """Every target of an outcome at the operating point, with its readout along the sweep."""
+    """Every target of an outcome at the operating point, with its readout along the sweep, rising."""
     states = []
     for target, value, _met, _margin in point.targets():
         readout = READOUTS[target.readout]
-        along = None if swept is None else np.asarray(swept.outcome.readout(target.readout), float)
         states.append(
             TargetState(
-                readout.label, float(value), format_value(float(value), readout), unit_text(readout.unit),
-                target.low, target.high, along,
+                name=tile_label(readout),
+                value=float(value),
+                text=format_value(float(value), readout),
+                unit=unit_text(readout.unit),
+                low=target.low,
+                high=target.high,
+                along=None if swept is None else rising(swept.x, swept.outcome.readout(target.readout)),
+                slack=readout.slack,
+                said=readout.key == "ccpp",
             )
-        )  # fmt: skip
+        )
     return states
 
 
@@ -48,12 +54,11 @@ def session_verdict(session: Session) -> Verdict:
         return Verdict("No result yet.", "", False)
     reason = str(np.asarray(point.reasons("finished")).item() or "")
     states = target_states(point, swept)
+    ccpp = float(point.readout("ccpp"))
     if swept is None:
-        return verdict(states, float(point.readout("ccpp")), reason=reason)
-    return verdict(
-        states, float(point.readout("ccpp")), np.asarray(swept.x, float), unit_text(swept.dial.unit),
-        swept_name(swept.dial), reason,
-    )  # fmt: skip
+        return verdict(states, ccpp, reason=reason)
+    unit = unit_text(swept.dial.unit)
+    return verdict(states, ccpp, rising(swept.x, swept.x), unit, swept_name(swept.dial), reason)
 
 
 def swept_name(dial: Dial) -> str:
@@ -99,16 +104,15 @@ class Message(LiveView):
 
 
 class Summary(LiveView):
-    """The verdict line, with the list of cautions and the choice of tiles at its end."""
+    """The verdict line, with the list of cautions at its end."""
 
     css = VIEW_STYLES
 
-    def __init__(self, session: Session, tiles: Tiles, **settings: Any) -> None:
+    def __init__(self, session: Session, **settings: Any) -> None:
         self.session = session
-        self.tiles = tiles
         super().__init__(sizing_mode="stretch_width", **settings)
         session.want("verdict", ["ccpp"])
-        session.param.watch(self._changed, ["point", "stale", "structure", "choices"])
+        session.param.watch(self._changed, ["point", "stale", "structure"])
         self.refresh()
 
     def describe(self) -> Node:
@@ -117,9 +121,9 @@ class Summary(LiveView):
         return node(
             "div", "verdict stale" if self.session.stale else "verdict",
             node("p", f"finding {'good' if said.good else 'bad'}",
-                 node("span", "mark", text=glyph, aria_hidden="true"), node("strong", text=said.lead + " "),
+                 node("span", "mark", text=glyph, aria_hidden="true"), node("strong", text=said.lead),
                  node("span", text=said.rest), role="status"),
-            *self._notes(), *self._choice(),
+            *self._notes(),
         )  # fmt: skip
 
     def _notes(self) -> list[Node]:
@@ -130,6 +134,7 @@ class Summary(LiveView):
             return []
         count = len(serious) or len(notes)
         word = ("caution" if serious else "note") + ("s" if count > 1 else "")
+        mark = "▲ " if serious else ""
         rows = [
             node("li", "",
                  node("span", f"level {note.level}", text=_GLYPHS.get(note.level, "i")),
@@ -137,7 +142,7 @@ class Summary(LiveView):
             for note in sorted(notes, key=lambda note: list(_GLYPHS).index(note.level))
         ]  # fmt: skip
         return [
-            node("button", "link caution" if serious else "link", text=f"{'▲ ' if serious else ''}{count} {word}",
+            node("button", "link caution" if serious else "link", text=f"{mark}{count} {word}",
                  key="notes-button", type="button", popovertarget="notes", aria_expanded="false"),
             node("div", "wide", node("ul", "notes", *rows), key="notes", id="notes", popover="auto",
                  aria_label="Notes and cautions"),
@@ -149,35 +154,6 @@ class Summary(LiveView):
         names |= {step.id: step.name for _, step in self.session.scenario.steps()}
         found = next((names[part] for part in where.split(".") if names.get(part)), "")
         return f"{plain(found, 60)}: " if found else ""
-
-    def _choice(self) -> list[Node]:
-        chosen = self.tiles.chosen
-        groups: dict[str, list[Node]] = {}
-        for readout in READOUTS.values():
-            on = readout.key in chosen
-            full = len(chosen) >= MOST if not on else len(chosen) <= FEWEST
-            groups.setdefault(readout.group, []).append(
-                node("label", "",
-                     node("input", type="checkbox", key=f"tile:{readout.key}", checked=on, disabled=full,
-                          on=self._toggle(readout.key)),
-                     node("span", text=readout.label))
-            )  # fmt: skip
-        body = [part for name, rows in groups.items() for part in (node("h3", text=name), *rows)]
-        return [
-            node("button", "link", text="Choose readouts", key="choose-button", type="button",
-                 popovertarget="choose", aria_expanded="false"),
-            node("div", "wide", node("p", text=f"{FEWEST} to {MOST} tiles."), *body, key="choose", id="choose",
-                 popover="auto", role="dialog", aria_label="Choose readouts"),
-        ]  # fmt: skip
-
-    def _toggle(self, key: str) -> Callable[[Any], None]:
-        def take(on: Any) -> None:
-            others = [other for other in self.tiles.chosen if other != key]
-            kept = [*others, key] if on else others
-            if FEWEST <= len(kept) <= MOST:
-                self.session.choose(tiles=kept)
-
-        return take
 
     def _changed(self, *events: Any) -> None:
         self.refresh()

@@ -34,34 +34,54 @@ function number(value, digits, figures, signed) {
   return (value < 0 ? "−" : signed ? "+" : "") + text
 }
 
-const where = mine.hover ?? point.location
-for (const part of parts) {
-  const { xs, ys, colour, label, digits, figures, signed } = part.lines.data
-  const low = Math.min(part.y_range.start, part.y_range.end), span = Math.abs(part.y_range.end - part.y_range.start)
-  const rings = { x: [], y: [], colour: [] }
-  const labels = []
-  for (let i = 0; i < xs.length; i++) {
-    const own = at(xs[i], ys[i], point.location)
-    if (Number.isFinite(own) && own >= low - 1e-9 * span && own <= low + span * (1 + 1e-9)) {
-      rings.x.push(point.location); rings.y.push(own); rings.colour.push(colour[i])
-    }
-    const value = at(xs[i], ys[i], where)
-    if (Number.isFinite(value) && (mine.hover !== null || xs.length === 1))
-      labels.push({ y: value, text: (label[i] ? label[i] + " " : "") + number(value, digits[i], figures[i], signed[i]), colour: colour[i] })
-  }
-  // Labels keep their order and never cover each other; near the top or bottom they stay inside.
-  const gap = 19 * span / Math.max(60, part.figure.inner_height || 200)
+// Labels keep their order and never cover each other; near the top or bottom they stay inside.
+function settle(labels, gap, low, high) {
   labels.sort((a, b) => a.y - b.y)
-  labels.forEach((item, i) => { item.at = Math.max(item.y, low + gap / 2, i ? labels[i - 1].at + gap : -Infinity) })
-  for (let i = labels.length - 1, top = low + span - gap / 2; i >= 0; i--) {
+  labels.forEach((item, i) => { item.at = Math.max(item.y, low, i ? labels[i - 1].at + gap : -Infinity) })
+  for (let i = labels.length - 1, top = high; i >= 0; i--) {
     labels[i].at = Math.min(labels[i].at, top)
     top = labels[i].at - gap
   }
-  const left = (where - x_range.start) / (x_range.end - x_range.start) > 0.72
-  part.rings.data = rings
+  return labels
+}
+const [place_digits, place_unit] = point.tags.length ? point.tags : [0, ""]
+const column = (items, key) => items.map((item) => item[key])
+
+const where = mine.hover ?? point.location
+const left = (where - x_range.start) / (x_range.end - x_range.start) > 0.72
+for (const part of parts) {
+  const { xs, ys, colour, label, digits, figures, signed, unit } = part.lines.data
+  const low = Math.min(part.y_range.start, part.y_range.end), span = Math.abs(part.y_range.end - part.y_range.start)
+  const pixel = span / Math.max(60, part.figure.inner_height || 200)
+  const rings = [], labels = [], ends = []
+  for (let i = 0; i < xs.length; i++) {
+    const own = at(xs[i], ys[i], point.location)
+    if (own >= low - pixel && own <= low + span + pixel) rings.push({ x: point.location, y: own, colour: colour[i] })
+    const value = at(xs[i], ys[i], where)
+    if (Number.isFinite(value) && (mine.hover !== null || xs.length === 1)) labels.push({
+      y: value, colour: colour[i],
+      text: (label[i] ? label[i] + " " : "") + number(value, digits[i], figures[i], signed[i])
+        + (label[i] && unit[i] === "%" ? " %" : ""),
+    })
+    let last = ys[i].length - 1
+    while (last >= 0 && !Number.isFinite(ys[i][last])) last--
+    if (label[i] && last >= 0) ends.push({ y: ys[i][last], text: label[i], colour: colour[i] })
+  }
+  if (mine.hover !== null) labels.push({
+    y: low, colour: part.axis.major_label_text_color,
+    text: number(where, place_digits, 0, false) + (place_unit ? " " + place_unit : ""),
+  })
+  settle(labels, 19 * pixel, low + 9 * pixel, low + span - 9 * pixel)
+  settle(ends, 15 * pixel, low, low + span)
+  part.rings.data = { x: column(rings, "x"), y: column(rings, "y"), colour: column(rings, "colour") }
   part.labels.data = {
-    x: labels.map(() => where), y: labels.map((item) => item.at), text: labels.map((item) => item.text),
-    colour: labels.map((item) => item.colour), dx: labels.map(() => left ? -9 : 9),
+    x: labels.map(() => where), y: column(labels, "at"), text: column(labels, "text"), colour: column(labels, "colour"),
+    dx: labels.map(() => left ? -9 : 9),
+    // A single value stands clear of its curve: above it, or below where there is no room.
+    dy: labels.map((item) => xs.length > 1 || item.y === low ? 0 : item.y > low + 0.88 * span ? 14 : -14),
     align: labels.map(() => left ? "right" : "left"),
+  }
+  part.ends.data = {
+    x: ends.map(() => x_range.end), y: column(ends, "at"), text: column(ends, "text"), colour: column(ends, "colour"),
   }
 }

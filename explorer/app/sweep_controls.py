@@ -1,9 +1,8 @@
-"""The row above the sweep plots: which dial on x, over which range, what the plots show."""
+"""The row above the sweep plots: which dial on x, and over which range."""
 
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
 from typing import Any
 
 from explorer.app.axes import nice_step
@@ -14,29 +13,6 @@ from explorer.app.pickers import Choice, picker
 from explorer.app.state import Session
 from explorer.app.text import plain, unit_text
 from explorer.scenario.dials import Dial
-from explorer.scenario.readouts import READOUTS
-
-FAMILIES = ("carbonate", "chlorine", "ammonia", "phosphate", "silicate", "borate")
-FURTHER_FAMILIES = ("fluoride", "sulfate", "sulfite", "acetate", "citrate", "aluminium", "iron")
-DEFAULT_FAMILY, DEFAULT_READOUT = "carbonate", "ccpp"
-
-
-def family_choice(session: Session) -> str:
-    """Family of species shown; one of an acid that is gone falls back to the default."""
-    family = session.choices.get("family", DEFAULT_FAMILY)
-    return family if family in family_names(session) else DEFAULT_FAMILY
-
-
-def readout_choice(session: Session) -> str:
-    """Readout of the fourth plot."""
-    key = session.choices.get("readout", DEFAULT_READOUT)
-    return key if key in READOUTS else DEFAULT_READOUT
-
-
-def family_names(session: Session) -> dict[str, str]:
-    """Families of species that can be shown, key to name; the scenario's own acids last."""
-    names = {family: f"{family} species" for family in (*FAMILIES, *FURTHER_FAMILIES)}
-    return names | {acid.id: f"{plain(acid.name or acid.id, 40)} species" for acid in session.scenario.acids}
 
 
 def default_range(dial: Dial) -> tuple[float, float]:
@@ -52,7 +28,7 @@ def default_range(dial: Dial) -> tuple[float, float]:
 
 
 class SweepControls(LiveView):
-    """Changes the sweep of the scenario and what the plots show of it."""
+    """Changes the sweep of the scenario."""
 
     css = VIEW_STYLES
 
@@ -60,7 +36,7 @@ class SweepControls(LiveView):
         self.session = session
         self.entries = Entries()
         super().__init__(sizing_mode="stretch_width", **settings)
-        session.param.watch(self._changed, ["structure", "scenario", "choices"])
+        session.param.watch(self._changed, ["structure", "scenario"])
         self.refresh()
 
     def describe(self) -> Node:
@@ -68,9 +44,7 @@ class SweepControls(LiveView):
             "div", "controls",
             node("div", "group", node("span", text="Sweep"), *self._dial()),
             *self._range(),
-            node("div", "grow"),
-            node("div", "group", node("span", text="Show"), self._family(), self._scale()),
-            node("div", "group", *self._readout()),
+            node("span", text=self._rule()),
         )  # fmt: skip
 
     # ---- the dial on x and its range -----------------------------------------------------------------
@@ -122,41 +96,20 @@ class SweepControls(LiveView):
             unit=unit_text(dial.unit),
         )  # fmt: skip
 
-    # ---- what the plots show -------------------------------------------------------------------------
-
-    def _family(self) -> Node:
-        return self.entries.choice(
-            "family", "Family of species", family_names(self.session), family_choice(self.session),
-            lambda family: self.session.choose(family=family),
-        )  # fmt: skip
-
-    def _scale(self) -> Node:
-        logarithmic = bool(self.session.choices.get("log"))
-
-        def segment(key: str, text: str, hint: str, on: bool) -> Node:
-            return node("button", "", text=text, title=hint, key=f"scale:{key}", type="button",
-                        aria_pressed=str(on == logarithmic).lower(), on=self._set_scale(on))  # fmt: skip
-
-        return node(
-            "div", "segments",
-            segment("share", "%", "Percent of the family", False),
-            segment("log", "log", "log₁₀ of mol/L", True),
-            role="group", aria_label="Scale of the species plot",
-        )  # fmt: skip
-
-    def _set_scale(self, on: bool) -> Callable[[Any], None]:
-        return lambda value: self.session.choose(log=on)
-
-    def _readout(self) -> list[Node]:
-        groups: dict[str, list[Choice]] = {}
-        for readout in READOUTS.values():
-            groups.setdefault(readout.group, []).append(
-                Choice(readout.key, readout.label, unit_text(readout.unit), f"{readout.short} {readout.key}")
-            )
-        chosen = READOUTS[readout_choice(self.session)]
-        label = chosen.label if len(chosen.label) <= 28 else chosen.short
-        return picker("readout", f"{label} ▾", groups, lambda key: self.session.choose(readout=key), look="button",
-                      hint="Search readouts", title="The readout in the fourth plot")  # fmt: skip
+    def _rule(self) -> str:
+        """How the other waters follow when a share is swept."""
+        scenario = self.session.scenario
+        sweep = scenario.sweep
+        if sweep is None or not sweep.dial.endswith(".share") or len(scenario.waters) < 2:
+            return ""
+        names = {water.id: water.name for water in scenario.waters}
+        if scenario.balance_water in names:
+            return f"· {plain(names[scenario.balance_water], 40)} takes the rest"
+        return (
+            "· the other waters follow in proportion"
+            if len(names) > 2
+            else "· the other water takes the rest"
+        )
 
     def _changed(self, *events: Any) -> None:
         if any(event.name == "structure" for event in events):

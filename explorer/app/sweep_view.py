@@ -7,14 +7,32 @@ from typing import Any
 import numpy as np
 import panel as pn
 
-from explorer.app.live_view import LiveView, Node, node
-from explorer.app.look import PLOT_CARD_CSS, PLOT_GRID_CSS, VIEW_STYLES, Palette
-from explorer.app.pictures import Axis, Memory, Picture, Quantity, axis, readout_picture, species_picture
+from explorer.app.look import PLOT_CARD_CSS, PLOT_GRID_CSS, VIEW_HOST_CSS, Palette
+from explorer.app.pictures import (
+    Axis,
+    Memory,
+    Missing,
+    Picture,
+    Quantity,
+    axis,
+    readout_picture,
+    rising,
+    species_picture,
+)
+from explorer.app.plot_heads import (
+    Head,
+    ReadoutHead,
+    SpeciesHead,
+    family_choice,
+    family_names,
+    readout_choice,
+)
 from explorer.app.plots import LinkedPlots
 from explorer.app.state import Session
-from explorer.app.sweep_controls import SweepControls, family_choice, family_names, readout_choice
-from explorer.app.text import plain, unit_text
+from explorer.app.sweep_controls import SweepControls
+from explorer.app.text import compact, plain, unit_text
 from explorer.scenario.readouts import READOUTS, Readout
+from explorer.studies.sweep import Sweep
 
 PLOTS = ("ph", "species", "buffer", "chosen")
 """Plots in reading order; the second column carries the labels of the species at its right."""
@@ -23,7 +41,7 @@ PLOTS = ("ph", "species", "buffer", "chosen")
 def quantity_of(readout: Readout) -> Quantity:
     """A readout as the plots name it."""
     return Quantity(
-        readout.label,
+        compact(readout.label),
         unit_text(readout.unit),
         readout.digits,
         readout.significant,
@@ -31,29 +49,14 @@ def quantity_of(readout: Readout) -> Quantity:
     )
 
 
-class Head(LiveView):
-    """Title and note above one plot."""
-
-    css = VIEW_STYLES
-
-    def __init__(self, **settings: Any) -> None:
-        self.title, self.note, self.empty = "", "", ""
-        super().__init__(sizing_mode="stretch_width", **settings)
-        self.refresh()
-
-    def say(self, picture: Picture) -> None:
-        """Show the words of a picture."""
-        said = (picture.title, picture.note, picture.empty)
-        if said != (self.title, self.note, self.empty):
-            self.title, self.note, self.empty = said
-            self.refresh()
-
-    def describe(self) -> Node:
-        return node(
-            "div", "head",
-            node("h3", "title", text=self.title),
-            node("span", "note empty" if self.empty else "note", text=plain(self.empty, 160) or self.note),
-        )  # fmt: skip
+def missing(swept: Sweep, key: str | None = None) -> Missing:
+    """Stretches of a sweep without a result, as the plots draw them: half a step beyond their points."""
+    half = abs(float(swept.x[1] - swept.x[0])) / 2
+    low, high = sorted((float(swept.x[0]), float(swept.x[-1])))
+    return tuple(
+        (max(min(gap.start, gap.stop) - half, low), min(max(gap.start, gap.stop) + half, high), gap.reason)
+        for gap in swept.gaps(key)
+    )
 
 
 class SweepView:
@@ -63,7 +66,8 @@ class SweepView:
         self.session = session
         self.controls = SweepControls(session)
         self.plots = LinkedPlots(list(PLOTS), self._turned)
-        self.heads = {name: Head() for name in PLOTS}
+        kinds = {"species": SpeciesHead, "chosen": ReadoutHead}
+        self.heads: dict[str, Head] = {name: kinds.get(name, Head)(session) for name in PLOTS}
         self._memory = Memory()
         cards = [
             pn.Column(
@@ -74,7 +78,9 @@ class SweepView:
             for name, plot in self.plots.plots.items()
         ]  # fmt: skip
         grid = pn.Column(*cards, sizing_mode="stretch_both", margin=0, stylesheets=[PLOT_GRID_CSS])
-        self.view = pn.Column(self.controls, grid, sizing_mode="stretch_both", margin=0)
+        self.view = pn.Column(
+            self.controls, grid, sizing_mode="stretch_both", margin=0, stylesheets=[VIEW_HOST_CSS]
+        )
         self._want()
         session.param.watch(self._changed, ["swept", "point", "choices", "structure"])
         self.show()
@@ -89,7 +95,7 @@ class SweepView:
         if swept is None:
             return
         pictures, along = self.pictures()
-        self.plots.set_unit(along.unit)
+        self.plots.set_axis(along)
         self.plots.show(pictures, along)
         for name, picture in pictures.items():
             self.heads[name].say(picture)
@@ -98,36 +104,35 @@ class SweepView:
     def pictures(self) -> tuple[dict[str, Picture], Axis]:
         """What the plots show, from the session's sweep and choices alone."""
         swept = self.session.swept
-        x = np.asarray(swept.x, float)
+        x = rising(swept.x, swept.x)
         along = axis(plain(swept.dial.label, 60), unit_text(swept.dial.unit), x)
-        reasons = np.asarray(swept.outcome.reasons("finished"))
         pictures = {
             "ph": self._readout("ph", x, along),
-            "species": self._species(x, along, reasons),
+            "species": self._species(x, along),
             "buffer": self._readout("buffer_intensity", x, along),
             "chosen": self._readout(readout_choice(self.session), x, along),
         }
         return pictures, along
 
     def _readout(self, key: str, x: np.ndarray, along: Axis) -> Picture:
-        readout = READOUTS[key]
-        reasons = self.session.swept.outcome.reasons("finished", key)
+        readout, swept = READOUTS[key], self.session.swept
         targets = [(t.low, t.high) for t in self.session.scenario.targets if t.readout == key]
-        y = np.broadcast_to(np.asarray(self.session.swept.outcome.readout(key), float), x.shape)
+        y = rising(swept.x, swept.outcome.readout(key))
+        previous = self._memory.limits.get(key)
         picture = readout_picture(
-            quantity_of(readout), x, y, along, targets, reasons, self._memory.limits.get(key)
+            quantity_of(readout), x, y, along, targets, missing(swept, key), previous, readout.slack
         )
         return self._memory.keep(key, picture)
 
-    def _species(self, x: np.ndarray, along: Axis, reasons: np.ndarray) -> Picture:
+    def _species(self, x: np.ndarray, along: Axis) -> Picture:
+        swept = self.session.swept
         family, logarithmic = family_choice(self.session), bool(self.session.choices.get("log"))
-        solution = self.session.swept.outcome.solution("finished")
-        members = {name: np.broadcast_to(amount, x.shape) for name, amount in solution.family(family).items()}
+        found = swept.outcome.solution("finished").family(family)
+        members = {name: rising(swept.x, amount) for name, amount in found.items()}
         name = family_names(self.session)[family].removesuffix(" species")
         slot = f"{family} log" if logarithmic else family
-        picture = species_picture(
-            name, members, x, along, logarithmic, reasons, self._memory.limits.get(slot)
-        )
+        previous = self._memory.limits.get(slot)
+        picture = species_picture(name, members, x, along, logarithmic, missing(swept), previous)
         return self._memory.keep(slot, picture)
 
     def _want(self) -> None:
@@ -153,3 +158,6 @@ class SweepView:
             self._memory.limits.clear()
         if names & {"swept", "point", "choices"}:
             self.show()
+        if names & {"structure", "choices"}:
+            for head in self.heads.values():
+                head.refresh()

@@ -50,3 +50,8 @@ def unit_text(unit: str) -> str:
     """A unit as it is printed: "mg/L as CaCO3" → "mg/L as CaCO₃"."""
     amount, joint, basis = unit.partition(" as ")
     return f"{amount} as {formula_text(basis)}" if joint else unit
+
+
+def compact(label: str) -> str:
+    """A label for a narrow place: substances with a well-known formula by their formula."""
+    return label.replace("Calcium carbonate", "CaCO₃").replace("calcium carbonate", "CaCO₃")

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from typing import Any
 
@@ -13,9 +13,9 @@ from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
 from explorer.app.pictures import Band, band_of, least_span
 from explorer.app.state import Session
-from explorer.app.text import formula_text, plain, unit_text
+from explorer.app.text import compact, formula_text, plain, unit_text
 from explorer.scenario.model import Target
-from explorer.scenario.readouts import READOUTS, Readout, format_value, status
+from explorer.scenario.readouts import MINUS, READOUTS, Readout, format_value, status
 
 DEFAULTS = (
     "ph", "alkalinity", "buffer_intensity", "ccpp", "langelier_index", "hocl_percent",
@@ -71,6 +71,14 @@ def tile_label(readout: Readout) -> str:
     return readout.label if len(readout.label) <= 24 else formula_text(readout.short)
 
 
+def signed_label(readout: Readout, text: str) -> str:
+    """Name on the tile with the word for the sign of the value printed: "CaCO₃ dissolves"."""
+    if not readout.sign_words or not text.startswith((MINUS, "+")):
+        return tile_label(readout)
+    word = readout.sign_words[0 if text.startswith(MINUS) else 1]
+    return f"{tile_label(readout).removesuffix(' potential')} {word}"
+
+
 class Tiles(LiveView):
     """The chosen readouts of the finished water at the operating point."""
 
@@ -94,7 +102,48 @@ class Tiles(LiveView):
         count = len(self.chosen)
         tiles = [self._tile(key, index >= count - 2) for index, key in enumerate(self.chosen)]
         look = "tiles stale" if self.session.stale else "tiles"
-        return node("div", look, *tiles, role="group", aria_label="Readouts of the finished water")
+        row = node("div", look, *tiles, role="group", aria_label="Readouts of the finished water")
+        return node("div", "tile-row", row, *self._choice())
+
+    def _choice(self) -> list[Node]:
+        """The button "⋮" and the list of all readouts to choose from."""
+        chosen = self.chosen
+        groups: dict[str, list[Node]] = {}
+        for readout in READOUTS.values():
+            on = readout.key in chosen
+            full = len(chosen) <= FEWEST if on else len(chosen) >= MOST
+            box = node(
+                "input", type="checkbox", key=f"choose:{readout.key}", checked=on, disabled=full,
+                on=self._toggle(readout.key),
+            )  # fmt: skip
+            line = node("label", "", box, node("span", text=compact(readout.label)))
+            groups.setdefault(readout.group, []).append(line)
+        lists = [node("div", "", node("h3", text=name), *lines) for name, lines in groups.items()]
+        hint = f"Choose {FEWEST} to {MOST} readouts"
+        button = node(
+            "button", "choose", text="⋮", key="choose-button", type="button", popovertarget="choose",
+            title=hint, aria_label=hint, aria_haspopup="dialog", aria_expanded="false",
+        )  # fmt: skip
+        sheet = node(
+            "div",
+            "columns",
+            *lists,
+            key="choose",
+            id="choose",
+            popover="auto",
+            role="dialog",
+            aria_label=hint,
+        )
+        return [button, sheet]
+
+    def _toggle(self, key: str) -> Callable[[Any], None]:
+        def take(on: Any) -> None:
+            others = [other for other in self.chosen if other != key]
+            kept = [*others, key] if on else others
+            if FEWEST <= len(kept) <= MOST:
+                self.session.choose(tiles=kept)
+
+        return take
 
     def _tile(self, key: str, at_right: bool) -> Node:
         readout = READOUTS[key]
@@ -104,16 +153,13 @@ class Tiles(LiveView):
         band = band_of([(target.low, target.high) for target in targets])
         text = format_value(value, readout)
         unit = unit_text(readout.unit)
-        if readout.sign_words and np.isfinite(value):
-            if not text.startswith("−") and float(text):
-                text = f"+{text}"
-            word = readout.sign_words[0 if value < 0 else 1]
-            unit = f"{unit.replace(' as ', ' ')}, {word}"
+        if readout.sign_words and value > 0 and text.strip("0."):
+            text = f"+{text}"
         look, state = self._state(value, band, bool(targets), readout)
         percent = readout.unit == "%"
         return node(
             "div", "tile",
-            node("div", "label", text=tile_label(readout)),
+            node("div", "label", text=signed_label(readout, text)),
             node("div", "value", text=f"{text} %" if percent and np.isfinite(value) else text),
             node("div", "unit", text="" if percent else unit),
             self._gauge(key, value, band, readout),
@@ -128,7 +174,7 @@ class Tiles(LiveView):
             return "none", "no value"
         if band is None:
             return ("bad", "▲▼ targets clash") if aimed else ("none", "no target")
-        return _STATES[status(value, *band)]
+        return _STATES[status(value, *band, readout.slack)]
 
     def _gauge(self, key: str, value: float, band: Band | None, readout: Readout) -> Node:
         swept = self.session.swept

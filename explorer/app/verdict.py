@@ -15,8 +15,9 @@ from explorer.app.text import in_sentence
 class TargetState:
     """One target at the operating point and along the sweep.
 
-    ``value`` and the bounds are in the readout's ``unit``, ``text`` is the value as printed; ``along`` holds the
-    readout along the sweep (nan where not solved).
+    ``value`` and the bounds are in the readout's ``unit``, ``text`` is the value as printed; ``along`` holds
+    the readout along the sweep (nan where not solved). Within ``slack`` of a bound counts as inside, so that
+    a value held at a bound does not flicker.
     """
 
     name: str
@@ -26,6 +27,9 @@ class TargetState:
     low: float | None
     high: float | None
     along: np.ndarray | None = None
+    slack: float = 0.0
+    said: bool = False
+    """True where the sentence on calcium carbonate has given the value already."""
 
     @property
     def solved(self) -> bool:
@@ -33,7 +37,13 @@ class TargetState:
 
     @property
     def met(self) -> bool:
-        return self.solved and _inside(self.value, self.low, self.high)
+        return self.solved and _inside(self.value, *self.bounds)
+
+    @property
+    def bounds(self) -> tuple[float | None, float | None]:
+        """The bounds, wider by the slack."""
+        low = None if self.low is None else self.low - self.slack
+        return low, None if self.high is None else self.high + self.slack
 
     @property
     def room(self) -> float:
@@ -182,13 +192,14 @@ def verdict(
     limiting = min(solved, key=lambda state: state.room)
     wish = range_text(limiting.low, limiting.high)
     word = "Closest to its bound" if limiting.met else "Limiting"
-    rest = f"{word}: {in_sentence(limiting.name)} {limiting.text}{_spaced(limiting.unit)}, target {wish}"
+    value = "" if limiting.said and carbonate else f" {limiting.text}{_spaced(limiting.unit)}"
+    rest = f"{word}: {in_sentence(limiting.name)}{value}, target {wish}"
     if not good and x is not None and limiting.along is not None:
         all_met = _all_met(states, x)
-        places = stretches(x, limiting.along, limiting.low, limiting.high)
+        places = stretches(x, limiting.along, *limiting.bounds)
         rest += f", met {where(places, x, x_unit, x_name)}"
         if total > 1 and all_met is not None and all_met and all_met != places:
-            rest += f"; all targets met {where(all_met, x, x_unit, '')}"
+            rest += f"; all met {where(all_met, x, x_unit, '')}"
     return Verdict(lead, f"{carbonate} {rest}.".strip(), good)
 
 
@@ -197,7 +208,7 @@ def _all_met(states: Sequence[TargetState], x: np.ndarray) -> Stretches | None:
     for state in states:
         if state.along is None:
             return None
-        common = shared(common, stretches(x, state.along, state.low, state.high))
+        common = shared(common, stretches(x, state.along, *state.bounds))
     return common
 
 

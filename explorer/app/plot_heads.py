@@ -1,0 +1,125 @@
+"""What stands above each plot: its title, or the choice of what the plot shows."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import Any
+
+from explorer.app.entry import Entries
+from explorer.app.live_view import LiveView, Node, node
+from explorer.app.look import VIEW_STYLES
+from explorer.app.pickers import Choice, picker
+from explorer.app.pictures import Picture
+from explorer.app.state import Session
+from explorer.app.text import compact, plain, unit_text
+from explorer.app.tiles import tile_label
+from explorer.scenario.readouts import READOUTS
+
+FAMILIES = ("carbonate", "chlorine", "ammonia", "phosphate", "silicate", "borate")
+FURTHER_FAMILIES = ("fluoride", "sulfate", "sulfite", "acetate", "citrate", "aluminium", "iron")
+DEFAULT_FAMILY, DEFAULT_READOUT = "carbonate", "ccpp"
+
+
+def family_choice(session: Session) -> str:
+    """Family of species shown; one of an acid that is gone falls back to the default."""
+    family = session.choices.get("family", DEFAULT_FAMILY)
+    return family if family in family_names(session) else DEFAULT_FAMILY
+
+
+def readout_choice(session: Session) -> str:
+    """Readout of the fourth plot."""
+    key = session.choices.get("readout", DEFAULT_READOUT)
+    return key if key in READOUTS else DEFAULT_READOUT
+
+
+def family_names(session: Session) -> dict[str, str]:
+    """Families of species that can be shown, key to name; the scenario's own acids last."""
+    names = {family: f"{family} species" for family in (*FAMILIES, *FURTHER_FAMILIES)}
+    return names | {acid.id: f"{plain(acid.name or acid.id, 40)} species" for acid in session.scenario.acids}
+
+
+class Head(LiveView):
+    """Title and note above one plot."""
+
+    css = VIEW_STYLES
+
+    def __init__(self, session: Session, **settings: Any) -> None:
+        self.session = session
+        self.entries = Entries()
+        self.said = ("", "", "")
+        super().__init__(sizing_mode="stretch_width", **settings)
+        self.refresh()
+
+    def say(self, picture: Picture) -> None:
+        """Show the words of a picture."""
+        said = (picture.title, picture.note, picture.empty)
+        if said != self.said:
+            self.said = said
+            self.refresh()
+
+    def describe(self) -> Node:
+        _, note, empty = self.said
+        words = plain(empty, 160) or note
+        return node(
+            "div",
+            "head",
+            *self.heading(),
+            node("span", "note empty" if empty else "note", text=words, title=words),
+            *self.extras(),
+        )
+
+    def heading(self) -> list[Node]:
+        """The title, or the control that chooses what it names."""
+        return [node("h3", "title", text=self.said[0])]
+
+    def extras(self) -> list[Node]:
+        """Controls at the right end."""
+        return []
+
+
+class SpeciesHead(Head):
+    """Chooses the family of species and the scale."""
+
+    def heading(self) -> list[Node]:
+        names = {key: f"{name[:1].upper()}{name[1:]}" for key, name in family_names(self.session).items()}
+        shown = family_choice(self.session)
+        return [self.entries.choice("family", "Family of species", names, shown, self._show, look="pick")]
+
+    def extras(self) -> list[Node]:
+        logarithmic = bool(self.session.choices.get("log"))
+
+        def segment(key: str, text: str, hint: str, on: bool) -> Node:
+            pressed = str(on == logarithmic).lower()
+            return node(
+                "button", "", text=text, title=hint, aria_label=hint, key=f"scale:{key}", type="button",
+                aria_pressed=pressed, on=self._scale(on),
+            )  # fmt: skip
+
+        share = segment("share", "%", "Percent of the family", False)
+        log = segment("log", "log", "log₁₀ of mol/L", True)
+        return [node("div", "segments", share, log, role="group", aria_label="Scale of the species plot")]
+
+    def _show(self, family: str) -> None:
+        self.session.choose(family=family)
+
+    def _scale(self, on: bool) -> Callable[[Any], None]:
+        return lambda value: self.session.choose(log=on)
+
+
+class ReadoutHead(Head):
+    """Chooses the readout."""
+
+    def heading(self) -> list[Node]:
+        groups: dict[str, list[Choice]] = {}
+        for readout in READOUTS.values():
+            words = f"{readout.short} {readout.key}"
+            line = Choice(readout.key, compact(readout.label), unit_text(readout.unit), words)
+            groups.setdefault(readout.group, []).append(line)
+        label = tile_label(READOUTS[readout_choice(self.session)])
+        return picker(
+            "readout", f"{label} ▾", groups, self._show, look="pick", hint="Search readouts",
+            title="Choose the readout of this plot",
+        )  # fmt: skip
+
+    def _show(self, key: str) -> None:
+        self.session.choose(readout=key)
