@@ -5,7 +5,7 @@ from dataclasses import dataclass
 from functools import lru_cache
 
 from explorer.chemistry import System, WeakAcid
-from explorer.scenario.dials import dials, step_name
+from explorer.scenario.dials import Dial, dials, step_name
 from explorer.scenario.errors import ScenarioError, join, unknown
 from explorer.scenario.model import DoseStep, Scenario, Step, Target
 from explorer.scenario.operations import (
@@ -45,11 +45,11 @@ class Source:
 
 @dataclass(frozen=True)
 class Plan:
-    """What an evaluation runs on. ``inputs``: value of every dial by address, in its entered unit."""
+    """What an evaluation runs on. ``dials``: every dial by address, with its value in its entered unit."""
 
     system: System
     season: str
-    inputs: Mapping[str, float]
+    dials: Mapping[str, Dial]
     sources: tuple[Source, ...]
     balance: str | None
     flow_unit: str
@@ -74,7 +74,7 @@ def compiled(scenario: Scenario, season: str | None = None) -> Plan:
     return Plan(
         system=system_of(acids, float(scenario.organic_charge_density)),
         season=season,
-        inputs={address: dial.value for address, dial in dials(scenario, season).items()},
+        dials=dials(scenario, season),
         sources=tuple(_source(scenario, position, season) for position in range(len(scenario.waters))),
         balance=scenario.balance_water,
         flow_unit="" if scenario.flow is None else scenario.flow.unit,

@@ -55,8 +55,15 @@ class Dial:
     high: float | None
     step: float
     group: str
+    bounded: bool
+    """Whether ``low`` is a limit; else it is only where a slider starts."""
     store: Callable[[float], None] = field(repr=False, compare=False)
     """Writes a checked value into the scenario; ``turn`` is the way to call it."""
+
+    def allows(self, values: np.ndarray) -> np.ndarray:
+        """Which of some values [entered unit] are within the limits."""
+        within = np.isfinite(values) & (values <= (np.inf if self.high is None else self.high))
+        return within & (values >= self.low) if self.bounded else within
 
 
 def dials(scenario: Scenario, season: str | None = None) -> dict[str, Dial]:
@@ -174,6 +181,7 @@ def _fields(
             high,
             part.step or fine_step(value),
             group,
+            low is not None,
             partial(_store_field, owner, name),
         )
 
@@ -209,8 +217,6 @@ def _entries(water: Water, analysis: Analysis, prefix: str) -> Iterator[Dial]:
         low, high = rule.bounds if rule else (0.0, None)
         if key == "temperature":
             low, high = (float(from_base(end, entry.unit, key)) for end in (low, high))
-        if entry.below is not None:
-            high = entry.below
         yield Dial(
             f"{prefix}analysis.{key}",
             f"{rule.label if rule else key} of {water.title}",
@@ -220,6 +226,7 @@ def _entries(water: Water, analysis: Analysis, prefix: str) -> Iterator[Dial]:
             high,
             FINE_STEP.get(key) or fine_step(entry.central),
             water.title,
+            low is not None,
             partial(_store_entry, analysis, key),
         )
 
@@ -265,6 +272,7 @@ def _shares(scenario: Scenario) -> Iterator[Dial]:
             shares.WHOLE if takes_all else shares.WHOLE - sum(fixed),
             Water.param.share.step,
             water.title,
+            True,
             partial(_store_share, scenario, water.id),
         )
 

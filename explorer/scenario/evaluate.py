@@ -45,8 +45,10 @@ def follow(plan: Plan, dials: Mapping[str, ArrayLike] = MappingProxyType({})) ->
     """:func:`evaluate` for a scenario that is compiled already; the plan does not change with it."""
     turned = _turned(plan, dials)
     shape = np.broadcast_shapes(*(values.shape for values in turned.values()))
-    run = Run({address: np.asarray(value, float) for address, value in plan.inputs.items()} | turned)
+    run = Run({address: np.asarray(dial.value, float) for address, dial in plan.dials.items()} | turned)
     parts, flow, problem = _parts(plan, turned, run.inputs)
+    for address, values in turned.items():
+        problem = np.where(plan.dials[address].allows(values), problem, PlantProblem.OUT_OF_RANGE)
     ends = {
         source.id: _source(plan, source, flow * parts.get(source.id, 0.0), turned, run)
         for source in plan.sources
@@ -59,8 +61,8 @@ def follow(plan: Plan, dials: Mapping[str, ArrayLike] = MappingProxyType({})) ->
 
 def _turned(plan: Plan, dials: Mapping[str, ArrayLike]) -> dict[str, np.ndarray]:
     for address in dials:
-        if address not in plan.inputs:
-            raise ScenarioError("", no_dial(address, plan.inputs))
+        if address not in plan.dials:
+            raise ScenarioError("", no_dial(address, plan.dials))
     turned = {address: np.asarray(values, float) for address, values in dials.items()}
     try:
         np.broadcast_shapes(*(values.shape for values in turned.values()))
@@ -87,7 +89,7 @@ def _parts(
         }
         return parts, flow, np.where(still, PlantProblem.NO_FLOW, Problem.NONE)
     given = {source.id: turned[key] for source in running if (key := f"{source.address}.share") in turned}
-    shared = {source.id: plan.inputs[f"{source.address}.share"] for source in running}
+    shared = {source.id: plan.dials[f"{source.address}.share"].value for source in running}
     settled, possible = shares.settle(shared, given, plan.balance)
     flow = to_base(inputs["flow"], plan.flow_unit, "flow") if plan.flow_unit else np.array(np.nan)
     parts = {source: share / shares.WHOLE for source, share in settled.items()}

@@ -13,11 +13,21 @@ import numpy as np
 from explorer.scenario.holds import held_dose
 from explorer.scenario.readouts import Readout
 from explorer.scenario.stage import Stage
-from explorer.treatment.chemicals import Chemical, dose_in, dose_moles, product_dose, totals_vector
+from explorer.treatment.chemicals import (
+    Chemical,
+    dose_in,
+    dose_moles,
+    product_dose,
+    pump_rate,
+    totals_vector,
+)
 from explorer.treatment.notes import Note
 from explorer.treatment.steps import air, concentrate, limestone, settle
 from explorer.treatment.stream import Stream, blend, dose, set_temperature, split
 from explorer.treatment.units import to_base
+
+HOURS = 24
+"""A day."""
 
 MIXES_WITH = {"basicity": lambda value: value, "ratio": lambda value: 1 / value}
 """In what a product setting is linear: a product between two settings is a mixture of the two."""
@@ -41,6 +51,26 @@ class Dose:
     price: np.ndarray
     held: bool
     met: np.ndarray
+
+    @property
+    def active_use(self) -> np.ndarray:
+        """kg a day of the pure substance; nan where no flow is given."""
+        return self.moles * self.chemical.molar_mass * self.flow * HOURS
+
+    @property
+    def product_use(self) -> np.ndarray:
+        """kg a day of product; nan where flow or strength are not known."""
+        return self.product * self.flow * HOURS / 1000
+
+    @property
+    def pump_rate(self) -> np.ndarray:
+        """L/h of product; nan for products that are dry."""
+        return pump_rate(self.chemical, self.moles, self.flow, self.strength)
+
+    @property
+    def cost_per_day(self) -> np.ndarray:
+        """In the currency of the price; nan where no price is entered."""
+        return self.product_use * self.price
 
 
 @dataclass
@@ -116,6 +146,9 @@ class DoseOperation(_Operation):
             run.notes += [Note("caution", self.address, text) for text in answer.words]
         product = product_dose(self.chemical, moles, strength)
         price = np.asarray(np.nan if price is None else price, float)
+        if np.any(np.isfinite(price) & np.isnan(product) & np.isfinite(moles)):
+            text = "a price is entered but no product strength: the cost is not counted"
+            run.notes.append(Note("caution", self.address, text))
         run.doses[self.id] = Dose(
             self.chemical, np.asarray(value, float), self.unit, moles, before.flow, product, strength, price,
             self.held is not None, met,

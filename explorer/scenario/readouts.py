@@ -356,7 +356,8 @@ def format_value(value: float, readout: Readout) -> str:
         return NO_VALUE
     decimals = readout.digits
     if readout.significant is not None and value:
-        leading = int(np.floor(np.log10(abs(value)))) + 1
+        rounded = float(f"{value:.{readout.significant}g}")
+        leading = int(np.floor(np.log10(abs(rounded)))) + 1
         decimals = min(decimals, max(readout.significant - leading, 0))
     text = f"{value:.{decimals}f}"
     if not text.strip("-0."):

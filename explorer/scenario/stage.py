@@ -18,11 +18,13 @@ class PlantProblem(IntEnum):
 
     SHARES = 100
     NO_FLOW = 101
+    OUT_OF_RANGE = 102
 
 
 PROBLEM_WORDS: Mapping[int, str] = PROBLEMS | {
     PlantProblem.SHARES: "the shares do not add to 100 %",
     PlantProblem.NO_FLOW: "no water flows",
+    PlantProblem.OUT_OF_RANGE: "a dial is turned beyond what is allowed for it",
 }
 """Why a point has no answer, by the codes of ``Stage.problem``."""
 
