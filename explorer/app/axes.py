@@ -11,6 +11,8 @@ MINUS = "−"
 _NICE = (1.0, 2.0, 2.5, 5.0, 10.0)
 _KEEP_ABOVE = 0.4  # limits stay while the data fill at least this part of them
 
+_BEYOND = 0.04  # part of the span that stays in view beyond a target bound
+
 Limits = tuple[float, float]
 
 
@@ -58,9 +60,9 @@ def steady_limits(
     low, high = float(finite.min()), float(finite.max())
     span = max(high - low, least_span)
     for mark in sorted(marks, key=lambda mark: max(low - mark, mark - high)):
-        wider = max(high, mark) - min(low, mark)
-        if wider <= 3 * span:
-            low, high = min(low, mark), max(high, mark)
+        around = _BEYOND * max(span, abs(mark - low), abs(mark - high))
+        if max(high, mark) - min(low, mark) <= 3 * span:
+            low, high = min(low, mark - around), max(high, mark + around)
     if high - low < least_span:
         middle, floor_at_zero = (low + high) / 2, low >= 0
         low, high = middle - least_span / 2, middle + least_span / 2

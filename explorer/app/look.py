@@ -179,8 +179,9 @@ def bokeh_theme(palette: Palette) -> Theme:
     """Bokeh defaults of a palette. Applies to what a figure does not set itself."""
     attrs: dict[str, dict[str, Any]] = {
         "Plot": {
-            "background_fill_color": palette.card,
-            "border_fill_color": palette.card,
+            # The card shows through: a filled border leaves a light hairline at two edges of the canvas.
+            "background_fill_color": None,
+            "border_fill_color": None,
             "outline_line_color": None,
             "border_line_color": None,
         },

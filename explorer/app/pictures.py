@@ -44,12 +44,13 @@ class Line:
 
 @dataclass(frozen=True)
 class Mark:
-    """A place on the plot worth a sign: where the curve crosses a bound of the target, rising or falling."""
+    """Where the curve crosses a bound of a target: rising or falling, the upper or the lower bound."""
 
     x: float
     y: float
     text: str
     rising: bool
+    upper: bool
 
 
 @dataclass(frozen=True)
@@ -107,17 +108,17 @@ def crossing_marks(
 
     A value within ``slack`` beyond a bound still counts as on its inner side.
     """
-    lows = {low - slack: low for low, _ in targets if low is not None}
-    highs = {high + slack: high for _, high in targets if high is not None}
+    edges = {(low - slack, low, False) for low, _ in targets if low is not None}
+    edges |= {(high + slack, high, True) for _, high in targets if high is not None}
     marks = []
-    for edge, bound in sorted((lows | highs).items()):
+    for edge, bound, upper in sorted(edges):
         away = y - edge
         with np.errstate(invalid="ignore"):
             passing = np.nonzero(((away[:-1] < 0) & (away[1:] >= 0)) | ((away[:-1] >= 0) & (away[1:] < 0)))[0]
         for index in passing:
             part = away[index] / (away[index] - away[index + 1])
             place = float(x[index] + part * (x[index + 1] - x[index]))
-            marks.append(Mark(place, bound, along.at(place), bool(away[index + 1] > away[index])))
+            marks.append(Mark(place, bound, along.at(place), bool(away[index + 1] > away[index]), upper))
     return tuple(marks)
 
 
@@ -249,20 +250,22 @@ def _named(family: str, members: Mapping[str, np.ndarray]) -> dict[str, np.ndarr
 
 
 def _foremost(amounts: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
-    """The species worth a line of their own, largest first by their greatest amount; the others summed."""
+    """The species worth a line of their own, by their greatest amount; the others summed.
+
+    Their order is that of the family, so that a species keeps its colour and dash in every water.
+    """
 
     def greatest(name: str) -> float:
         finite = amounts[name][np.isfinite(amounts[name])]
         return float(finite.max()) if finite.size else 0.0
 
-    names = sorted(amounts, key=greatest, reverse=True)
-    top = greatest(names[0])
-    kept = [name for name in names[:MOST_LINES] if greatest(name) >= 1e-12 * top]
-    rest = [name for name in names if name not in kept]
-    chosen = {name: amounts[name] for name in kept}
-    if len(names) > MOST_LINES and rest:
-        chosen[OTHERS] = np.sum([amounts[name] for name in rest], axis=0)
-    return chosen
+    ranked = sorted((name for name in amounts if name != PAIRS), key=greatest, reverse=True)
+    kept = [name for name in ranked[:MOST_LINES] if greatest(name) > 0]
+    chosen = {name: amounts[name] for name in amounts if name in kept}
+    rest = [amounts[name] for name in ranked if name not in kept and greatest(name) > 0]
+    if PAIRS in amounts and greatest(PAIRS) > 0:
+        chosen[PAIRS] = amounts[PAIRS]
+    return chosen | ({OTHERS: np.sum(rest, axis=0)} if rest else {})
 
 
 def _first_reason(missing: Missing) -> str:

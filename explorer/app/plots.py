@@ -1,8 +1,8 @@
 """Linked plots over one swept dial: figures are built once, afterwards only columns and ranges change.
 
 The operating point is one editable span shared by all plots. Curves come as ``multi_line`` rows, so that more
-curves never mean more models. Labels that follow the pointer, names at the ends of curves and the rings on the
-operating point live in the page alone (``sweep.js``): moving the pointer costs no message to the server.
+curves never mean more models. Labels that follow the pointer, names at the ends of curves and the rings on
+the operating point live in the page (``sweep.js``): moving the pointer costs no message.
 """
 
 from __future__ import annotations
@@ -258,19 +258,19 @@ class LinePlot:
 
     @staticmethod
     def _crossing_labels(picture: Picture) -> dict[str, list[Any]]:
-        """Marks with their texts on the free side of the curve: above it, or below at an end of the axis."""
+        """Marks with their texts outside of the band and beside the curve, on the plot at both ends."""
         start, width = float(picture.x[0]), float(picture.x[-1] - picture.x[0]) or 1.0
         sides = []
         for mark in picture.marks:
             part = (mark.x - start) / width
-            at_edge = part < 0.1 if mark.rising else part > 0.9
-            sides.append((mark.rising != at_edge, at_edge))
+            left = (mark.rising == mark.upper or part > 0.88) and part > 0.12
+            sides.append((left, not mark.upper))
         return {
             "x": [mark.x for mark in picture.marks],
             "y": [mark.y for mark in picture.marks],
             "text": [mark.text for mark in picture.marks],
             "dx": [-7 if left else 7 for left, _ in sides],
-            "dy": [17 if below else -4 for _, below in sides],
+            "dy": [18 if below else -4 for _, below in sides],
             "align": ["right" if left else "left" for left, _ in sides],
         }
 

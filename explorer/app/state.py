@@ -91,8 +91,11 @@ class Work:
         )
 
 
-def solve(scenario: Scenario, wanted: Iterable[str] = ()) -> Results:
-    """Solve the operating point and the sweep of ``scenario`` and warm the ``wanted`` readouts.
+def solve(
+    scenario: Scenario, wanted: Iterable[str] = (), questions: Iterable[Callable[[Outcome], None]] = ()
+) -> Results:
+    """Solve the operating point and the sweep of ``scenario``, warm the ``wanted`` readouts of both, and put
+    the ``questions`` to the operating point.
 
     Never raises for something the user can mend: the sentence comes back in ``Results.message``.
     """
@@ -102,6 +105,8 @@ def solve(scenario: Scenario, wanted: Iterable[str] = ()) -> Results:
         for key in wanted:
             point.readout(key)
             swept.outcome.readout(key)
+        for question in questions:
+            question(point)
     except ValueError as error:
         return Results(None, None, str(error))
     return Results(point, swept)
@@ -144,6 +149,7 @@ class Session(param.Parameterized):
         self.runner: Runner = runner or Immediate()
         self._clock = clock
         self._wanted: dict[str, tuple[str, ...]] = {}
+        self._questions: dict[str, Callable[[Outcome], None]] = {}
         self._dials: dict[str, Dial] | None = None
         if record.saved is None:
             record.saved = record.scenario.to_dict()
@@ -284,15 +290,19 @@ class Session(param.Parameterized):
         """Tell which readouts a view will ask for, so that they are computed off the event loop."""
         self._wanted[view] = tuple(readouts)
 
+    def ask(self, view: str, question: Callable[[Outcome], None]) -> None:
+        """Tell what a view will ask of the operating point alone (its stages), for the same reason."""
+        self._questions[view] = question
+
     def solve_now(self) -> None:
         """Solve before anything else happens; for the first page, which should come with results."""
-        self._apply(solve(self.scenario, self._all_wanted()))
+        self._apply(solve(self.scenario, self._all_wanted(), self._questions.values()))
 
     def calculate(self) -> None:
         """Solve the scenario as it stands; results arrive in ``point`` and ``swept``."""
         snapshot = self.scenario.copy()
-        wanted = self._all_wanted()
-        self.runner.submit(lambda: solve(snapshot, wanted), self._apply)
+        wanted, questions = self._all_wanted(), tuple(self._questions.values())
+        self.runner.submit(lambda: solve(snapshot, wanted, questions), self._apply)
 
     def _all_wanted(self) -> set[str]:
         return {key for keys in self._wanted.values() for key in keys}

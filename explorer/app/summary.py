@@ -117,10 +117,10 @@ class Summary(LiveView):
 
     def describe(self) -> Node:
         said = session_verdict(self.session)
-        glyph = "✓" if said.good else "✕"
+        glyph, tone = {True: ("✓", "good"), False: ("✕", "bad"), None: ("", "open")}[said.good]
         return node(
             "div", "verdict stale" if self.session.stale else "verdict",
-            node("p", f"finding {'good' if said.good else 'bad'}",
+            node("p", f"finding {tone}",
                  node("span", "mark", text=glyph, aria_hidden="true"), node("strong", text=said.lead),
                  node("span", text=said.rest), role="status"),
             *self._notes(),

@@ -28,7 +28,14 @@ _STATES = {
     "below": ("bad", "▼ below"),
     "above": ("bad", "▲ above"),
 }
-_SHORT = {"ccpp": "CaCO₃ potential", "hocl_percent": "HOCl share", "dic": "Inorganic carbon"}
+_SHORT = {
+    "ccpp": "CaCO₃ potential",
+    "hocl_percent": "HOCl share",
+    "dic": "Inorganic carbon",
+    "chloride_sulfate_ratio": "Chloride to sulfate",
+    "si_calcite": "Calcite saturation index",
+    "si_aragonite": "Aragonite sat. index",
+}
 
 
 def default_tiles(targets: Iterable[Target]) -> list[str]:

@@ -65,11 +65,11 @@ class TargetState:
 
 @dataclass(frozen=True)
 class Verdict:
-    """``lead`` is the finding, ``rest`` what it rests on; both plain text."""
+    """``lead`` is the finding, ``rest`` what it rests on, both plain text; ``good`` is None without targets."""
 
     lead: str
     rest: str
-    good: bool
+    good: bool | None
 
     def __str__(self) -> str:
         return f"{self.lead} {self.rest}".strip()
@@ -178,7 +178,7 @@ def verdict(
         return Verdict("No result at this setting:", reason.rstrip(".") + ".", False)
     carbonate = calcium_carbonate(ccpp)
     if not states:
-        return Verdict("No targets entered.", carbonate, True)
+        return Verdict("No targets entered.", carbonate, None)
     met = sum(state.met for state in states)
     total = len(states)
     good = met == total
