@@ -8,11 +8,12 @@ from collections.abc import Mapping
 from dataclasses import replace
 
 from explorer.app.axes import number_text
-from explorer.app.desk import Desk, beside, unit_text
+from explorer.app.desk import Desk, beside
 from explorer.app.entry import parse_number, show_number
 from explorer.app.live_view import Node, node
 from explorer.app.pickers import Choice, picker
-from explorer.app.text import plain
+from explorer.app.text import plain, unit_text
+from explorer.scenario import editing
 from explorer.scenario.compile import system_of
 from explorer.scenario.measured import ENTRY_RULES
 from explorer.scenario.model import Analysis, Measured, Scenario, Water
@@ -66,11 +67,7 @@ class Sheet:
         water_id, season = self.water.id, self.season
 
         def change(scenario: Scenario) -> None:
-            analysis = scenario.water(water_id).analyses[season]
-            if measured is None:
-                analysis.entries = {key: value for key, value in analysis.entries.items() if key != entry}
-            else:
-                analysis.entries = analysis.entries | {entry: measured}
+            editing.set_entry(scenario.water(water_id).analyses[season], entry, measured)
 
         return self.desk.edit(f"{what} of {self.water.title}", change)
 
@@ -197,7 +194,7 @@ def _rows(sheet: Sheet, entry: str) -> list[Node]:
     if measured.note:
         marks.append(node("small", "remark", text=measured.note, title=plain(measured.note, 300)))
     cells = [
-        node("td", "label", node("span", text=label), *marks),
+        node("td", "label", node("span", text=label), *marks, title=label),
         node("td", "amount", value),
         node("td", "basis", _unit(sheet, entry, label)),
         node("td", "width", width),
@@ -305,24 +302,22 @@ def _findings(sheet: Sheet) -> list[Node]:
         found = sheet.desk.examination(sheet.analysis, sheet.system)
     except (AnalysisError, ValueError) as error:
         return [node("ul", "findings", node("li", "error", text=beside(str(error))))]
-    sums = f"cations {found.balance.cations:.2f}, anions {found.balance.anions:.2f} meq/L"
     balance = number_text(found.balance.percent, 1, signed=True)
     word, look = ("good", "good") if found.balance.acceptable else ("▲ poor", "poor")
     lines = [
-        ("Ion balance", [(f"{balance} % {word}", look), (sums, "")]),
-        ("Dissolved solids", [(_compared(found.tds, found.tds_entered, "mg/L"), "")]),
+        ("Ion balance", f"{balance} % {word}", look),
+        ("Cations, anions", f"{found.balance.cations:.2f}, {found.balance.anions:.2f} meq/L", ""),
+        ("Dissolved solids", _compared(found.tds, found.tds_entered, "mg/L"), ""),
         (
-            f"Conductivity at {found.conductivity_at:g} °C",
-            [(_compared(found.conductivity, found.conductivity_entered, "µS/cm"), "")],
+            f"Conductivity {found.conductivity_at:g} °C",
+            _compared(found.conductivity, found.conductivity_entered, "µS/cm"),
+            "",
         ),
     ]
     grid = [
         part
-        for caption, words in lines
-        for part in (
-            node("span", text=caption),
-            node("span", "facts", *(node("span", look, text=text) for text, look in words)),
-        )
+        for caption, words, look in lines
+        for part in (node("span", text=caption), node("span", look, text=words))
     ]
     notes = [
         node("li", LEVELS[note.level], text=f"{note.where}: {note.text}", key=f"{sheet.key}:note-{place}")

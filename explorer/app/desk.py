@@ -11,12 +11,14 @@ from explorer.app.axes import nice_step, number_text
 from explorer.app.entry import Entries, message, show_number
 from explorer.app.live_view import Node, node
 from explorer.app.state import Change, Session
-from explorer.app.text import formula_text
+from explorer.app.sweep_controls import default_range
+from explorer.app.text import unit_text
 from explorer.chemistry import System
 from explorer.scenario import editing
 from explorer.scenario.dials import Dial, fine_step
 from explorer.scenario.model import Analysis, Scenario
-from explorer.scenario.readouts import READOUTS, format_value
+from explorer.scenario.operations import Dose
+from explorer.scenario.readouts import MINUS, READOUTS, format_value
 from explorer.treatment.analysis import Examination, examine
 from explorer.treatment.units import from_base
 
@@ -29,12 +31,6 @@ POSITIONS = 200
 def beside(sentence: str) -> str:
     """A refusal as it stands beside the field itself: without the path that leads to the field."""
     return _PATH.sub("", sentence)
-
-
-def unit_text(unit: str) -> str:
-    """A unit as it is printed: "mg/L as CaCO3" → "mg/L as CaCO₃"."""
-    amount, joint, basis = unit.partition(" as ")
-    return f"{amount} as {formula_text(basis)}" if joint else unit
 
 
 class Desk:
@@ -73,15 +69,23 @@ class Desk:
         """The same as text without unit."""
         return format_value(self.reading(readout, stage), READOUTS[readout])
 
-    def change(self, readout: str, before: str, after: str) -> float:
-        """How much a result rises from one stage to another; nan while there is none."""
-        return self.reading(readout, after) - self.reading(readout, before)
+    def rise(self, readout: str, before: str, after: str) -> str:
+        """How much a result rises from one stage to another, signed; "" where it stays or there is none."""
+        difference = self.reading(readout, after) - self.reading(readout, before)
+        words = format_value(abs(difference), READOUTS[readout])
+        if not math.isfinite(difference) or not words.strip("0."):
+            return ""
+        return f"{'+' if difference > 0 else MINUS}{words}"
 
     def dose(self, step_id: str) -> float:
         """Dose of a step in its entered unit, as computed where it is held; nan while there is none."""
-        point = self.session.point
-        dose = point.dosing.get(step_id) if point is not None else None
+        dose = self.dosing(step_id)
         return math.nan if dose is None else float(dose.value)
+
+    def dosing(self, step_id: str) -> Dose | None:
+        """What a dose step adds, None while there is no result."""
+        point = self.session.point
+        return point.dosing.get(step_id) if point is not None else None
 
     def uses(self) -> list[tuple[str, float]]:
         """Chemicals with their use in kg a day: of product, or of active substance where none is known."""
@@ -110,7 +114,9 @@ class Desk:
         if stated is None:
             return ""
         minus, plus = stated.sides
-        unit = f" {stated.unit}" if stated.unit else ""
+        # Percent of a percentage and percentage points are not the same.
+        points = " points" if dial.unit == "%" else ""
+        unit = f" {stated.unit}" if stated.unit else points
         return f"±{plus:g}{unit}" if minus == plus else f"+{plus:g} −{minus:g}{unit}"
 
     def examination(self, analysis: Analysis, system: System) -> Examination:
@@ -168,6 +174,12 @@ class Desk:
     def rename(self, key: str) -> None:
         """Let the name of a card be typed."""
         self.naming = key
+
+    def sweep(self, dial: Dial, span: tuple[float, float] | None = None) -> None:
+        """Put a dial on the x axis; a refusal stands at its field."""
+        start, stop = span or default_range(dial)
+        refusal = beside(self.session.set_sweep(dial=dial.address, start=start, stop=stop))
+        self.entries.refuse(dial.address, show_number(dial.value), refusal)
 
     # ---- parts of cards ------------------------------------------------------------------------------
 

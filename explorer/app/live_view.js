@@ -174,7 +174,8 @@ export function render({ model, el }) {
       element.select()
     }
     if (!sheet) return
-    const choices = [...sheet.querySelectorAll("button")].filter((button) => button.offsetParent)
+    const choices = [...sheet.querySelectorAll("button")].filter((button) => button.checkVisibility())
+    choices.sort((one, other) => one.getBoundingClientRect().top - other.getBoundingClientRect().top)
     const at = choices.indexOf(element)
     const step = { ArrowDown: 1, ArrowUp: -1 }[event.key]
     if (step && choices.length) {
@@ -189,34 +190,43 @@ export function render({ model, el }) {
   function filter(search) {
     const words = search.value.toLowerCase().split(/\s+/).filter(Boolean)
     const sheet = search.closest("[popover]")
-    for (const choice of sheet.querySelectorAll("[data-words]"))
+    for (const choice of sheet.querySelectorAll("[data-words]")) {
       choice.hidden = !words.every((word) => choice.dataset.words.includes(word))
+      choice.style.order = words.length && choice.dataset.words.startsWith(words[0]) ? 0 : 1
+    }
     for (const group of sheet.querySelectorAll("[data-group]"))
       group.hidden = !group.querySelector("[data-words]:not([hidden])")
     for (const none of sheet.querySelectorAll("[data-none]"))
       none.hidden = Boolean(sheet.querySelector("[data-words]:not([hidden])"))
   }
 
-  const GAP = 4
+  view.addEventListener("beforetoggle", (event) => {
+    const search = event.newState === "open" ? event.target.querySelector("[data-filter]") : null
+    if (search) { search.value = ""; filter(search) }
+  }, true)
+
+  const GAP = 4, TALLEST = 460
   view.addEventListener("toggle", (event) => {
     const sheet = event.target
     const opener = [...view.querySelectorAll("[popovertarget]")].find((b) => b.getAttribute("popovertarget") === sheet.id)
     opener?.setAttribute("aria-expanded", String(event.newState === "open"))
     delete sheet.dataset.placed
+    sheet.style.maxHeight = ""
     if (event.newState !== "open" || !opener) return
     const from = opener.getBoundingClientRect(), size = sheet.getBoundingClientRect()
     const below = window.innerHeight - from.bottom - 2 * GAP, above = from.top - 2 * GAP
-    const up = size.height > below && above > below
-    sheet.style.maxHeight = `${Math.max(120, up ? above : below)}px`
-    const height = Math.min(size.height, up ? above : below)
-    sheet.style.top = `${up ? from.top - GAP - height : from.bottom + GAP}px`
+    const wanted = Math.min(size.height, TALLEST)
+    const up = wanted > below && above > below
+    const height = Math.min(wanted, Math.max(120, up ? above : below))
+    sheet.style.maxHeight = `${height}px`
+    // Held at the side of its button, so that a list that gets shorter stays there.
+    sheet.style.top = up ? "auto" : `${from.bottom + GAP}px`
+    sheet.style.bottom = up ? `${window.innerHeight - from.top + GAP}px` : "auto"
     const left = sheet.dataset.side === "left" ? from.left : from.right - size.width
     sheet.style.left = `${Math.min(Math.max(GAP, left), window.innerWidth - size.width - GAP)}px`
     sheet.dataset.placed = ""
-    const search = sheet.querySelector("[data-filter]")
-    if (search) { search.value = ""; filter(search) }
-    const first = search ?? sheet.querySelector("button")
-    first?.focus()
+    // A search field takes the focus by itself when its sheet opens, before this: typing may have begun.
+    if (!sheet.querySelector("[data-filter]")) sheet.querySelector("button")?.focus()
   }, true)
 
   model.on("tree", showTree)

@@ -81,7 +81,7 @@ def picker(
     ]
     search = node(
         "input", "words", key=f"{sheet}:search", type="text", placeholder=hint, aria_label=hint,
-        autocomplete="off", data_filter=True,
+        autocomplete="off", data_filter=True, autofocus=True,
     )  # fmt: skip
     button = node(
         "button", look, text=label, key=f"{sheet}-button", type="button", popovertarget=sheet,

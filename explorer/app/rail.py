@@ -10,11 +10,21 @@ from explorer.app.state import Session
 from explorer.app.step_card import train_list
 from explorer.app.water_card import water_card
 from explorer.scenario import editing
+from explorer.scenario.evaluate import Outcome
 from explorer.scenario.model import Scenario
 from explorer.scenario.readouts import MINUS, NO_VALUE, READOUTS, format_value
 
-READOUTS_SHOWN = ("ph", "alkalinity", "calcium", "charge_balance", "ccpp", "temperature", "cost")
-"""What the rail asks of the operating point."""
+
+def asked(point: Outcome) -> None:
+    """Everything the rail reads from the operating point, asked once so that it is there when it is read."""
+    for stage in point.stages:
+        keys = ["ph", "alkalinity"]
+        if stage.kind == "water":
+            keys += ["calcium", "charge_balance"]
+        if stage.kind == "blend" or stage is point.stages[-1]:
+            keys += ["ccpp", "temperature", "cost"]
+        for key in keys:
+            stage.readout(key)
 
 
 class Rail(LiveView):
@@ -26,7 +36,7 @@ class Rail(LiveView):
     def __init__(self, session: Session, **settings: Any) -> None:
         self.desk = Desk(session)
         super().__init__(**({"sizing_mode": "stretch_width", "margin": 0} | settings))
-        session.want("rail", READOUTS_SHOWN)
+        session.ask("rail", asked)
         session.param.watch(self._follow, ["values", "structure", "point"])
         self.refresh()
 
@@ -106,6 +116,8 @@ class Rail(LiveView):
             node("div", look, node("span", text=name, title=name), node("span", text=words))
             for name, words, look in lines
         ]
+        if len(rows) > 1:
+            rows.append(node("p", "hint", text="kg a day of product, as far as its strength is known"))
         return [heading("Running cost"), *rows]
 
 

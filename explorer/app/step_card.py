@@ -4,19 +4,16 @@ import math
 from dataclasses import replace
 
 from explorer.app.axes import number_text
-from explorer.app.desk import Desk, facts, unit_text
+from explorer.app.desk import Desk, facts
 from explorer.app.live_view import Node, node
 from explorer.app.pickers import Act, Choice, menu, picker
 from explorer.app.step_form import chemical_choices, step_form
-from explorer.app.text import in_sentence
+from explorer.app.text import in_sentence, unit_text
 from explorer.scenario import editing
 from explorer.scenario.dials import Dial, step_name
 from explorer.scenario.model import DoseStep, Scenario, SideStreamStep, Step
 from explorer.scenario.readouts import READOUTS, format_value
 from explorer.scenario.steps import STEP_KINDS
-
-NOTICEABLE = {"ph": 0.005, "alkalinity": 0.05}
-"""Changes a step has to make before the card mentions them."""
 
 HOLD_SPANS = {"ph": (5.0, 11.0)}
 """Ends of the slider of a held readout, where 0 to a round number would be no use."""
@@ -43,7 +40,8 @@ def step_card(desk: Desk, step: Step, prefix: str, position: int, count: int, be
     body = [
         node("div", "head", *_head(desk, step, key, position, count)),
         desk.refusal(key),
-        _effect(desk, step, before),
+        _state(desk, step),
+        _effect(desk, step, before) if step.on else None,
         _setting(desk, step, key),
     ]
     if opened:
@@ -64,22 +62,29 @@ def _head(desk: Desk, step: Step, key: str, position: int, count: int) -> list[N
         "button", "open", node("span", "name", text=name), key=f"{key}:open", type="button",
         on=lambda value: desk.open(key), aria_expanded=str(desk.opened == key).lower(), title=name,
     )  # fmt: skip
-    return [
-        title,
-        _tag(desk, step),
-        *menu(key, f"More for {name}", _acts(desk, step, key, name, position, count)),
-    ]
+    dial = main_dial(desk, step, key)
+    width = desk.tolerance(dial) if dial else ""
+    aside = node("span", "aside", text=width, title="Tolerance of the setting" if width else None)
+    acts = _acts(desk, step, key, name, position, count)
+    return [title, aside, *menu(key, f"More for {name}", acts)]
 
 
-def _tag(desk: Desk, step: Step) -> Node:
-    """State of the step beside its name: out of service, or what it holds."""
+def _state(desk: Desk, step: Step) -> Node | None:
+    """What the step holds and the dose that takes, or that it is out of service."""
     if not step.on:
-        return node("span", "tag quiet", text="out of service")
-    if isinstance(step, DoseStep) and step.hold is not None:
-        readout = READOUTS[step.hold.readout]
-        value = format_value(step.hold.value, readout)
-        return node("span", "tag", text=f"holds {in_sentence(readout.short)} {value}", title=readout.label)
-    return node("span", "tag none")
+        return node("div", "state", node("span", "tag quiet", text="out of service"))
+    if not isinstance(step, DoseStep) or step.hold is None:
+        return None
+    readout = READOUTS[step.hold.readout]
+    held = f"holds {in_sentence(readout.short)} {format_value(step.hold.value, readout)}"
+    dose = desk.dose(step.id)
+    words, look = "▲ not reached", "poor"
+    if math.isfinite(dose):
+        unit = unit_text(step.hold.ceiling.unit)
+        words, look = f"doses {number_text(dose, 2 if abs(dose) < 10 else 1)} {unit}", "strong"
+    return node(
+        "div", "state", node("span", "tag", text=held, title=readout.label), node("span", look, text=words)
+    )
 
 
 def _acts(desk: Desk, step: Step, key: str, name: str, position: int, count: int) -> list[Act]:
@@ -90,9 +95,11 @@ def _acts(desk: Desk, step: Step, key: str, name: str, position: int, count: int
         act = desk.act(key, f"Move {name}", lambda scenario: editing.move_step(scenario, step_id, by))
         return act if 0 <= position + by < count else None
 
+    dial = main_dial(desk, step, key)
     remove = desk.act(key, f"Remove {name}", lambda scenario: editing.remove_step(scenario, step_id))
     return [
         Act("details", "Close" if desk.opened == key else "Open the settings", lambda: desk.open(key)),
+        Act("sweep", "Sweep this", (lambda: desk.sweep(dial, _span(step, dial))) if dial else None),
         Act("rename", "Rename", lambda: desk.rename(key)),
         Act("up", "Move up", moved(-1)),
         Act("down", "Move down", moved(1)),
@@ -110,26 +117,14 @@ def _acts(desk: Desk, step: Step, key: str, name: str, position: int, count: int
 
 def _effect(desk: Desk, step: Step, before: str) -> Node:
     """What the step did: the dose a hold came to, pH before and after, alkalinity added or taken."""
-    words: list[str | tuple[str, str] | None] = [_computed_dose(desk, step)]
-    rise = desk.change("ph", before, step.id)
+    words: list[str] = []
     after = desk.words("ph", step.id)
-    seen = math.isfinite(rise) and abs(rise) >= NOTICEABLE["ph"]
-    words.append(f"pH {desk.words('ph', before)} → {after}" if seen else f"pH {after}")
-    gain = desk.change("alkalinity", before, step.id)
-    if math.isfinite(gain) and abs(gain) >= NOTICEABLE["alkalinity"]:
-        words.append(f"alk {number_text(gain, 1, signed=True)}")
+    words.append(
+        f"pH {desk.words('ph', before)} → {after}" if desk.rise("ph", before, step.id) else f"pH {after}"
+    )
+    if gain := desk.rise("alkalinity", before, step.id):
+        words.append(f"alk {gain}")
     return facts(*words, hint="What the step did; alkalinity in mg/L as CaCO₃")
-
-
-def _computed_dose(desk: Desk, step: Step) -> tuple[str, str] | None:
-    """The dose that a hold came to, with its unit."""
-    if not isinstance(step, DoseStep) or step.hold is None:
-        return None
-    value = desk.dose(step.id)
-    if not math.isfinite(value):
-        return "▲ not reached", "poor"
-    unit = unit_text(step.hold.ceiling.unit)
-    return f"doses {number_text(value, 2 if abs(value) < 10 else 1)} {unit}", "strong"
 
 
 def _setting(desk: Desk, step: Step, key: str) -> Node | None:
@@ -137,12 +132,13 @@ def _setting(desk: Desk, step: Step, key: str) -> Node | None:
     dial = main_dial(desk, step, key)
     if dial is None:
         return None
-    width = desk.tolerance(dial)
-    after = [node("span", "unit", text=width)] if width else []
-    held = step.hold.readout if isinstance(step, DoseStep) and step.hold is not None else ""
-    if held and dial.address.endswith(".hold.value"):
-        return desk.dial_row(dial, *after, span=HOLD_SPANS.get(held), digits=READOUTS[held].digits)
-    return desk.dial_row(dial, *after)
+    digits = READOUTS[step.hold.readout].digits if dial.address == f"{key}.hold.value" else None
+    return desk.dial_row(dial, span=_span(step, dial), digits=digits)
+
+
+def _span(step: Step, dial: Dial) -> tuple[float, float] | None:
+    held = dial.address.endswith(".hold.value")
+    return HOLD_SPANS.get(step.hold.readout) if held else None
 
 
 def main_dial(desk: Desk, step: Step, key: str) -> Dial | None:

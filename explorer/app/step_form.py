@@ -3,11 +3,12 @@
 import math
 from typing import Any
 
-from explorer.app.desk import Desk, unit_text
+from explorer.app.axes import number_text
+from explorer.app.desk import Desk, facts
 from explorer.app.entry import show_number
 from explorer.app.live_view import Node, node
 from explorer.app.pickers import Choice, picker
-from explorer.app.text import formula_text, plain
+from explorer.app.text import formula_text, plain, unit_text
 from explorer.scenario import editing
 from explorer.scenario.entity import Entity
 from explorer.scenario.fields import Choice as OneOf
@@ -16,7 +17,7 @@ from explorer.scenario.model import DoseStep, Hold, Quantity, Scenario, Step
 from explorer.scenario.quantity import Amount
 from explorer.scenario.readouts import READOUTS
 from explorer.treatment.catalogue import SETTINGS
-from explorer.treatment.chemicals import Chemical, dose_in, dose_moles
+from explorer.treatment.chemicals import Chemical, dose_in, dose_moles, pump_rate
 from explorer.treatment.units import from_base, to_base
 
 OWN_PLACE = ("id", "name", "on", "note", "chemical", "dose", "hold")
@@ -178,7 +179,7 @@ def step_form(desk: Desk, step: Step, key: str) -> list[Node]:
         if given and owned and name not in OWN_PLACE:
             form.declared(step, name, **usual)
     form.declared(step, "note")
-    return [node("div", "form", *form.lines), *_cautions(form)]
+    return [node("div", "form", *form.lines), *(_product_use(form) if dosing else []), *_cautions(form)]
 
 
 def _chemical(form: Form, step: DoseStep) -> None:
@@ -287,6 +288,19 @@ def _usual(form: Form) -> dict[str, float | None]:
 
 PRODUCT_SETTINGS = ("basicity", "ratio")
 """Settings that only some products have."""
+
+
+def _product_use(form: Form) -> list[Node]:
+    """What the dose takes of the product: kg a day, t a year, and what the pump has to deliver."""
+    dose = form.desk.dosing(form.step.id)
+    if dose is None or not math.isfinite(float(dose.product) * float(dose.flow)):
+        return []
+    use = float(dose.product) * float(dose.flow) * 24 / 1000
+    words = [f"{number_text(use, 0 if use >= 10 else 1)} kg/d of product", f"{use * 0.36525:.3g} t/year"]
+    rate = float(pump_rate(dose.chemical, dose.moles, dose.flow, dose.strength))
+    if math.isfinite(rate):
+        words.append(f"{rate:.3g} L/h")
+    return [facts(*words, hint="At the flow and dose now; litres at the density of the product")]
 
 
 def _cautions(form: Form) -> list[Node]:

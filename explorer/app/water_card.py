@@ -10,6 +10,7 @@ from explorer.app.look import water_colour
 from explorer.app.pickers import Act, menu
 from explorer.app.step_card import train_list
 from explorer.scenario import editing
+from explorer.scenario.dials import Dial
 from explorer.scenario.model import Water
 from explorer.treatment.analysis import balance_of
 
@@ -29,7 +30,12 @@ def water_card(desk: Desk, water: Water, position: int) -> Node:
         body.append(node("div", "details", *analysis_editor(desk, water)))
     if opened or water.train:
         body.append(
-            node("div", "inner", node("h4", text="Before the blend"), train_list(desk, water.train, key))
+            node(
+                "div",
+                "inner",
+                node("h4", text="Before the blend"),
+                train_list(desk, water.train, f"{key}.", water.id),
+            )
         )
     look = "card" + (" opened" if opened else "") + ("" if water.on else " off")
     return node("li", look, *body, key=key, data_reveal=opened)
@@ -58,8 +64,10 @@ def _acts(desk: Desk, water: Water, key: str) -> list[Act]:
     name, water_id = water.title, water.id
     switch = "Take out of service" if water.on else "Put into service"
     remove = desk.act(key, f"Remove {name}", lambda scenario: editing.remove_water(scenario, water_id))
+    dial = _dial(desk, water)
     return [
         Act("details", "Close" if desk.opened == key else "Open the analysis", lambda: desk.open(key)),
+        Act("sweep", "Sweep this", (lambda: desk.sweep(dial)) if dial else None),
         Act("rename", "Rename", lambda: desk.rename(key)),
         Act(
             "duplicate", "Duplicate",
@@ -95,6 +103,10 @@ def _balance(desk: Desk, stage: str) -> tuple[str, str]:
 
 def _amount(desk: Desk, water: Water, colour: str) -> Node | None:
     """Share or flow of the water as slider and number; nothing to set for a single water with a share."""
-    dials = desk.session.dials
-    dial = dials.get(f"waters.{water.id}.flow") or dials.get(f"waters.{water.id}.share")
+    dial = _dial(desk, water)
     return desk.dial_row(dial, colour=colour) if dial else None
+
+
+def _dial(desk: Desk, water: Water) -> Dial | None:
+    dials = desk.session.dials
+    return dials.get(f"waters.{water.id}.flow") or dials.get(f"waters.{water.id}.share")
