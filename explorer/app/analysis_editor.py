@@ -255,7 +255,7 @@ def _about(sheet: Sheet, entry: str) -> Node:
             text="Remove",
             key=f"{key}:remove",
             type="button",
-            on=lambda pressed: entries.refuse(key, "", sheet.put(entry, None)),
+            on=lambda pressed: entries.refuse(key, refusal=sheet.put(entry, None)),
             aria_label=f"Remove {label}",
         )
     )
@@ -270,7 +270,7 @@ def _add_entry(sheet: Sheet) -> list[Node]:
     def add(entry: str) -> None:
         unit = next(iter(sheet.units(entry)))
         refusal = sheet.put(entry, Measured(value=START.get(entry, 0.0), unit=unit))
-        sheet.desk.entries.refuse(f"{sheet.key}:add", "", refusal)
+        sheet.desk.entries.refuse(f"{sheet.key}:add", refusal=refusal)
 
     choices = [
         Choice(entry, sheet.label(entry), unit_text(next(iter(sheet.units(entry)))), entry)
@@ -338,7 +338,7 @@ def _closing(sheet: Sheet) -> list[Node]:
         def change(scenario: Scenario) -> None:
             scenario.water(water_id).analyses[season].close_with = ion
 
-        desk.entries.refuse(f"{sheet.key}:close", "", desk.edit("Close the ion balance", change))
+        desk.entries.refuse(f"{sheet.key}:close", refusal=desk.edit("Close the ion balance", change))
 
     words = {"none": "leave it open", "sodium": "adjust sodium", "chloride": "adjust chloride"}
     return [

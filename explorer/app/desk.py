@@ -142,11 +142,11 @@ class Desk:
 
     def act(self, place: str, label: str, change: Change) -> Callable[[], None]:
         """What a button does that changes the scenario; a refusal stands at the card ``place``."""
-        return lambda: self.entries.refuse(place, "", self.edit(label, change))
+        return lambda: self.entries.refuse(place, refusal=self.edit(label, change))
 
     def refusal(self, place: str) -> Node:
         """Where the refusals of :meth:`act` stand."""
-        return message(self.entries.slips.get(place, ("", ""))[1])
+        return message(self.entries.refusal(place))
 
     def open(self, key: str) -> None:
         """Open a card, and close it when it is open: one card at a time."""

@@ -7,7 +7,8 @@ the field, marked, with one sentence beside it, while the model keeps its last g
 
 import math
 import re
-from collections.abc import Callable
+from collections.abc import Callable, Container
+from dataclasses import dataclass
 from typing import Any, ClassVar
 
 import param
@@ -74,15 +75,27 @@ def show_number(value: float | None, step: float | None = None) -> str:
     return text if "e" not in text else f"{value:.7f}".rstrip("0").rstrip(".")
 
 
+@dataclass(frozen=True)
+class Slip:
+    """A refused entry: the sentence, the text as typed, and what the field showed before.
+
+    typed, shown: None where nothing was typed, as when a button was pressed.
+    """
+
+    refusal: str
+    typed: str | None = None
+    shown: str | None = None
+
+
 class Entries:
     """The input fields of one view: builds them, reads what is typed, remembers what was refused.
 
-    A field is known by its key. ``slips`` holds for each refused field the text as typed and the sentence;
-    it is forgotten when the field is next entered with success.
+    A field is known by its key. ``slips`` holds what was refused; a slip is forgotten when the field is next
+    entered with success, or when its value changes from elsewhere.
     """
 
     def __init__(self) -> None:
-        self.slips: dict[str, tuple[str, str]] = {}
+        self.slips: dict[str, Slip] = {}
 
     def number(
         self,
@@ -134,9 +147,14 @@ class Entries:
                 refusal = take(typed)
             except ValueError as error:
                 refusal = str(error)
-            self.refuse(key, typed, refusal)
+            self.refuse(key, typed, refusal, shown)
 
-        typed, refusal = self.slips.get(key, (shown, ""))
+        slip = self.slips.get(key)
+        if slip is not None and slip.shown not in (None, shown):
+            self.refuse(key)
+            slip = None
+        typed = shown if slip is None or slip.typed is None else slip.typed
+        refusal = self.refusal(key)
         box = node(
             "input",
             look,
@@ -176,15 +194,19 @@ class Entries:
         box.properties["checked"] = ticked
         return node("label", "switch", box, node("span", text=label))
 
-    def refuse(self, key: str, typed: str, refusal: str) -> None:
-        """Note a refusal at the field ``key``, or with an empty ``refusal`` that the field is good again."""
+    def refuse(self, key: str, typed: str | None = None, refusal: str = "", shown: str | None = None) -> None:
+        """Note a refusal at the field ``key``; without a refusal, that the field is good again."""
         self.slips.pop(key, None)
         if refusal:
-            self.slips[key] = (typed, refusal)
+            self.slips[key] = Slip(refusal, typed, shown)
 
-    def forget(self, prefix: str = "") -> None:
-        """Drop what was refused in the fields whose key begins with ``prefix``."""
-        self.slips = {key: slip for key, slip in self.slips.items() if not key.startswith(prefix)}
+    def refusal(self, key: str) -> str:
+        """What was refused at ``key``, "" when nothing was."""
+        return self.slips[key].refusal if key in self.slips else ""
+
+    def forget(self, standing: Container[str] = ()) -> None:
+        """Drop what was refused, except at the keys that are still ``standing``."""
+        self.slips = {key: slip for key, slip in self.slips.items() if key in standing}
 
 
 def message(text: str) -> Node:
@@ -220,7 +242,7 @@ class NumberEntry(LiveView):
     @property
     def message(self) -> str:
         """The sentence beside the field, "" when the field is good."""
-        return self.entries.slips.get("number", ("", ""))[1]
+        return self.entries.refusal("number")
 
     def enter(self, text: str) -> None:
         """What typing ``text`` and pressing Enter does."""

@@ -146,6 +146,11 @@ class LiveView(JSComponent):
             serial = json.loads(self.patch).get("serial", 0) + 1
             self.patch = json.dumps({"serial": serial, "changes": self._changes}, ensure_ascii=False)
 
+    @property
+    def nodes(self) -> list[Node]:
+        """All nodes on the page, in reading order."""
+        return self._nodes
+
     def shown(self, key: str) -> Node:
         """The node with this key as it is on the page; KeyError when there is none."""
         return self._nodes[0].find(key)

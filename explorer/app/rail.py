@@ -50,13 +50,14 @@ class Rail(LiveView):
             "div", "rail",
             node("section", "", *self._waters(), aria_label="Source waters"),
             node("section", "", *self._treatment(), aria_label="Treatment, in order of flow"),
-            node("section", "", *self._cost(), aria_label="Running cost"),
+            node("section", "", *self._cost(), key="cost", aria_label="Running cost"),
         )  # fmt: skip
 
     def _follow(self, *events: Any) -> None:
         if any(event.name == "structure" for event in events):
             self.desk.settle()
         self.refresh()
+        self.desk.entries.forget(standing=self)
 
     def _waters(self) -> list[Node]:
         desk = self.desk
@@ -70,7 +71,7 @@ class Rail(LiveView):
             def change(scenario: Scenario) -> None:
                 desk.opened = f"waters.{editing.add_water(scenario, like or None)}"
 
-            desk.entries.refuse("waters:add", "", desk.edit("Add a source water", change))
+            desk.entries.refuse("waters:add", refusal=desk.edit("Add a source water", change))
 
         copies = [Choice(water.id, water.title, "copy") for water in desk.scenario.waters]
         groups = {"New": [Choice("", "A new water", "to be filled in")], "Like one of these": copies}

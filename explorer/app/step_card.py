@@ -158,7 +158,7 @@ def add_step(desk: Desk, prefix: str) -> list[Node]:
         def change(scenario: Scenario) -> None:
             desk.opened = f"{prefix}train.{editing.add_step(scenario, prefix, kind, chemical or None)}"
 
-        desk.entries.refuse(key, "", desk.edit("Add a treatment step", change))
+        desk.entries.refuse(key, refusal=desk.edit("Add a treatment step", change))
 
     kinds = [
         Choice(f"{kind}:", step.kind_title, "", (step.__doc__ or "").lower())

@@ -88,7 +88,7 @@ class Form:
             self.line(field.label, box, refusal, title=title)
 
     def _answer(self, key: str, name: str, value: Any, part: str) -> None:
-        self.desk.entries.refuse(key, "", self.put(name, value, part))
+        self.desk.entries.refuse(key, refusal=self.put(name, value, part))
 
     def _number(
         self,
@@ -133,7 +133,7 @@ class Form:
             same = (
                 original if unit == original.unit else Quantity(self.converted(name, value, unit, part), unit)
             )
-            self.desk.entries.refuse(f"{key}.unit", "", self.put(name, same, part))
+            self.desk.entries.refuse(f"{key}.unit", refusal=self.put(name, same, part))
 
         return self.desk.entries.choice(
             f"{key}.unit", "Unit", {unit: unit_text(unit) for unit in units}, value.unit, take
@@ -191,7 +191,7 @@ def _chemical(form: Form, step: DoseStep) -> None:
         refusal = desk.edit(
             "Another chemical", lambda scenario: editing.change_chemical(scenario, step.id, name)
         )
-        desk.entries.refuse(f"{key}.chemical", "", refusal)
+        desk.entries.refuse(f"{key}.chemical", refusal=refusal)
 
     catalogue = {"Chemicals": chemical_choices(desk.scenario)}
     form.line(
@@ -229,7 +229,7 @@ def _held(form: Form, hold: Hold) -> None:
                 # The old number means nothing in the new unit: start from the water as it is.
                 held.value = round(now, READOUTS[name].digits)
 
-        form.desk.entries.refuse(key, "", form.desk.edit("Held readout", change))
+        form.desk.entries.refuse(key, refusal=form.desk.edit("Held readout", change))
 
     form.line(
         "Holds",
@@ -252,7 +252,7 @@ def _which(form: Form, step: Step) -> None:
             for other in step.either:
                 setattr(owner, other, start if other == name else None)
 
-        desk.entries.refuse(key, "", desk.edit(f"{words[name]}: {step.title}", change))
+        desk.entries.refuse(key, refusal=desk.edit(f"{words[name]}: {step.title}", change))
 
     form.line("Set by", desk.entries.choice(key, "Set by", words, given, take), desk.refusal(key))
 
