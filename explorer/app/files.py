@@ -13,8 +13,9 @@ from typing import Any
 import param
 from panel.custom import JSComponent
 
+from explorer.app.history import Work
 from explorer.app.look import VIEW_STYLES, styles
-from explorer.app.state import Session, Work
+from explorer.app.state import Session
 from explorer.app.text import plain
 from explorer.scenario.files import LARGEST_FILE, ScenarioError, dumps, open_scenario, read_scenario
 from explorer.scenario.shipped import shipped

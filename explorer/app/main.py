@@ -8,9 +8,10 @@ from pathlib import Path
 import panel as pn
 
 from explorer.app.files import Shelf, tab_name
+from explorer.app.history import Work
 from explorer.app.runner import Conflate
 from explorer.app.shell import TITLE, Shell
-from explorer.app.state import Session, Work
+from explorer.app.state import Session
 from explorer.scenario.files import ScenarioError, open_scenario
 from explorer.scenario.shipped import default_scenario_path
 

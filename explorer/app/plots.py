@@ -7,6 +7,7 @@ the operating point live in the page (``sweep.js``): moving the pointer costs no
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from typing import Any
 
@@ -79,7 +80,9 @@ class LinePlot:
         )
         self.ends = _in_page(x=[], y=[], text=[], colour=[])
         self.crossings = ColumnDataSource(data={key: [] for key in ("x", "y", "text", "dx", "dy", "align")})
-        self.gaps = ColumnDataSource(data={"x0": [], "x1": [], "x": [], "text": []})
+        self.gaps = ColumnDataSource(
+            data={key: [] for key in ("x0", "x1", "x", "y", "text", "reason", "angle")}
+        )
         self.rings = _in_page(x=[], y=[], colour=[])
         self.labels = _in_page(x=[], y=[], text=[], colour=[], dx=[], dy=[], align=[])
         self.figure = self._build(x_range, point, cross, labels_right)
@@ -120,6 +123,20 @@ class LinePlot:
             hatch_scale=8,
             hatch_weight=0.6,
             hatch_alpha=0.5,
+        )
+        self.gap_text = fig.text(
+            x="x",
+            y="y",
+            text="text",
+            angle="angle",
+            source=self.gaps,
+            text_font=value(FONT),
+            text_font_size="11px",
+            text_align="center",
+            text_baseline="middle",
+            background_fill_alpha=0.9,
+            padding=3,
+            border_radius=3,
         )
         self.curve = fig.multi_line(
             xs="xs",
@@ -221,6 +238,7 @@ class LinePlot:
         self.palette = palette
         self.band.update(fill_color=palette.ok, line_color=palette.ok)
         self.gap.glyph.update(fill_color=palette.track, hatch_color=palette.soft)
+        self.gap_text.glyph.update(text_color=palette.soft, background_fill_color=palette.card)
         self.crossing.glyph.update(fill_color=palette.card, line_color=palette.ink)
         self.crossing_text.glyph.update(text_color=palette.soft)
         self.ring.glyph.update(fill_color=palette.card)
@@ -249,11 +267,21 @@ class LinePlot:
             "unit": [picture.unit] * count,
         }
         self.crossings.data = self._crossing_labels(picture)
-        self.gaps.data = {
+        self.gaps.data = self._gap_labels(picture)
+
+    @staticmethod
+    def _gap_labels(picture: Picture) -> dict[str, list[Any]]:
+        """Stretches without a result; their words stand upright, or are left out, where there is no room."""
+        width = float(picture.x[-1] - picture.x[0]) or 1.0
+        parts = [(stop - start) / width for start, stop, _ in picture.gaps]
+        return {
             "x0": [gap[0] for gap in picture.gaps],
             "x1": [gap[1] for gap in picture.gaps],
             "x": [(gap[0] + gap[1]) / 2 for gap in picture.gaps],
-            "text": [gap[2] for gap in picture.gaps],
+            "y": [sum(picture.limits) / 2] * len(parts),
+            "text": ["no result" if part > 0.04 else "" for part in parts],
+            "reason": [gap[2] for gap in picture.gaps],
+            "angle": [0.0 if part > 0.2 else math.pi / 2 for part in parts],
         }
 
     @staticmethod
@@ -310,6 +338,7 @@ class LinkedPlots:
             {
                 "lines": plot.lines,
                 "rings": plot.rings,
+                "gaps": plot.gaps,
                 "labels": plot.labels,
                 "ends": plot.ends,
                 "y_range": plot.y_range,

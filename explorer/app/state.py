@@ -18,98 +18,23 @@ parameter       when it changes
 
 from __future__ import annotations
 
+import math
 import time
 from collections.abc import Callable, Iterable
-from dataclasses import dataclass, field
-from typing import Any, Protocol
+from typing import Any
 
 import param
 
+from explorer.app.calculation import Immediate, Results, Runner, solve
+from explorer.app.history import MOST_STEPS, Step, Work
 from explorer.scenario.dials import Dial, dials, get_value, turn
-from explorer.scenario.evaluate import Outcome, evaluate
+from explorer.scenario.evaluate import Outcome
 from explorer.scenario.model import Scenario, SweepSetting
-from explorer.studies.sweep import Sweep, sweep
 
-MERGE_SECONDS = 0.8  # turns of one dial that follow each other faster than this are one undo step
-HISTORY_LIMIT = 200
+MERGE_SECONDS = 0.8
+"""Turns of one dial that follow each other faster than this are one undo step."""
 
 Change = Callable[[Scenario], None]
-
-
-@dataclass(frozen=True)
-class Results:
-    """What one calculation brought: both results, or the sentence that says why there are none."""
-
-    point: Outcome | None
-    swept: Sweep | None
-    message: str = ""
-
-
-class Runner(Protocol):
-    """Runs calculations; may drop a waiting one when a newer one arrives, never applies them out of order."""
-
-    def submit(self, compute: Callable[[], Results], apply: Callable[[Results], None]) -> None: ...
-
-
-class Immediate:
-    """Runner without a queue: computes and applies before ``submit`` returns (tests, headless use)."""
-
-    def submit(self, compute: Callable[[], Results], apply: Callable[[Results], None]) -> None:
-        apply(compute())
-
-
-@dataclass
-class Step:
-    """One undo step: its name, what it merges with, and the scenario before it."""
-
-    label: str
-    key: str
-    before: dict[str, Any]
-    at: float
-
-
-@dataclass
-class Work:
-    """The plain record behind a session: what has to survive a reload of the tab."""
-
-    scenario: Scenario
-    file_name: str = "scenario.json"
-    saved: dict[str, Any] | None = None
-    choices: dict[str, Any] = field(default_factory=dict)
-    past: list[Step] = field(default_factory=list)
-    future: list[Step] = field(default_factory=list)
-
-    def copy(self) -> Work:
-        """Independent record: the scenario is copied, history entries are never mutated and may be shared."""
-        return Work(
-            self.scenario.copy(),
-            self.file_name,
-            self.saved,
-            dict(self.choices),
-            list(self.past),
-            list(self.future),
-        )
-
-
-def solve(
-    scenario: Scenario, wanted: Iterable[str] = (), questions: Iterable[Callable[[Outcome], None]] = ()
-) -> Results:
-    """Solve the operating point and the sweep of ``scenario``, warm the ``wanted`` readouts of both, and put
-    the ``questions`` to the operating point.
-
-    Never raises for something the user can mend: the sentence comes back in ``Results.message``.
-    """
-    try:
-        point = evaluate(scenario)
-        swept = sweep(scenario)
-        for key in wanted:
-            point.readout(key)
-            swept.outcome.readout(key)
-        for question in questions:
-            question(point)
-    except ValueError as error:
-        return Results(None, None, str(error))
-    return Results(point, swept)
 
 
 class Session(param.Parameterized):
@@ -151,6 +76,7 @@ class Session(param.Parameterized):
         self._wanted: dict[str, tuple[str, ...]] = {}
         self._questions: dict[str, Callable[[Outcome], None]] = {}
         self._dials: dict[str, Dial] | None = None
+        self._curve = self._shown_curve = 0
         if record.saved is None:
             record.saved = record.scenario.to_dict()
         self._refresh_marks()
@@ -188,7 +114,7 @@ class Session(param.Parameterized):
 
     def turn(self, address: str, value: float) -> str:
         """Turn one dial and recalculate; "" or the sentence that says why the value is refused."""
-        merge = self._merges(address)
+        merge, keeps_curve = self._merges(address), self._keeps_curve(address, value)
         before = None if merge else self.scenario.to_dict()
         label = self.dials[address].label if address in self.dials else address
         try:
@@ -202,7 +128,7 @@ class Session(param.Parameterized):
             self._remember(Step(label, address, before, self._clock()))
         self._dials = None
         self.param.update(unsaved=True, can_undo=True, can_redo=False, values=self.values + 1)
-        self.calculate()
+        self.calculate(keeps_curve)
         return ""
 
     def edit(self, label: str, change: Change, key: str = "", rebuild: bool = True) -> str:
@@ -277,7 +203,6 @@ class Session(param.Parameterized):
         """Remember what a view shows, by name of the choice; neither an undo step nor an unsaved change."""
         self.work.choices |= choices
         self.choices = dict(self.work.choices)
-        self.calculate()
 
     def mark_saved(self) -> None:
         """The scenario as it stands has been written to a file."""
@@ -296,13 +221,30 @@ class Session(param.Parameterized):
 
     def solve_now(self) -> None:
         """Solve before anything else happens; for the first page, which should come with results."""
-        self._apply(solve(self.scenario, self._all_wanted(), self._questions.values()))
+        self._apply(solve(self.scenario, self._all_wanted(), self._questions.values(), curve=self._curve))
 
-    def calculate(self) -> None:
-        """Solve the scenario as it stands; results arrive in ``point`` and ``swept``."""
-        snapshot = self.scenario.copy()
+    def calculate(self, keeps_curve: bool = False) -> None:
+        """Solve the scenario as it stands; results arrive in ``point`` and ``swept``.
+
+        keeps_curve: nothing the sweep depends on has changed since the last call.
+        """
+        if not keeps_curve:
+            self._curve += 1
+        snapshot, curve = self.scenario.copy(), self._curve
         wanted, questions = self._all_wanted(), tuple(self._questions.values())
-        self.runner.submit(lambda: solve(snapshot, wanted, questions), self._apply)
+        swept = self.swept if curve == self._shown_curve else None
+        self.runner.submit(lambda: solve(snapshot, wanted, questions, swept, curve), self._apply)
+
+    def _keeps_curve(self, address: str, value: float) -> bool:
+        """Whether turning a dial to ``value`` leaves the sweep as it is: the operating point moves along it.
+
+        At the end of a range other shares may become zero and lose their proportion, so ends do not count.
+        """
+        if self.swept is None or address != self.swept.address or address not in self.dials:
+            return False
+        dial = self.dials[address]
+        high = math.inf if dial.high is None else dial.high
+        return all(dial.low < number < high for number in (dial.value, value))
 
     def _all_wanted(self) -> set[str]:
         return {key for keys in self._wanted.values() for key in keys}
@@ -311,6 +253,7 @@ class Session(param.Parameterized):
         if results.point is None:
             self.param.update(message=results.message, stale=self.point is not None)
         else:
+            self._shown_curve = results.curve
             self.param.update(point=results.point, swept=results.swept, message="", stale=False)
 
     # ---- history -------------------------------------------------------------------------------------
@@ -321,7 +264,7 @@ class Session(param.Parameterized):
 
     def _remember(self, step: Step) -> None:
         self.work.past.append(step)
-        del self.work.past[:-HISTORY_LIMIT]
+        del self.work.past[:-MOST_STEPS]
         self.work.future.clear()
 
     def _travel(self, source: list[Step], destination: list[Step]) -> None:

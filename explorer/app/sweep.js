@@ -71,6 +71,10 @@ for (const part of parts) {
     y: low, colour: part.axis.major_label_text_color,
     text: number(where, place_digits, 0, false) + (place_unit ? " " + place_unit : ""),
   })
+  const { x0, x1, reason } = part.gaps.data
+  for (let i = 0; i < x0.length; i++)
+    if (mine.hover !== null && where >= x0[i] && where <= x1[i])
+      labels.push({ y: low + 0.5 * span, text: reason[i], colour: part.axis.major_label_text_color })
   settle(labels, 19 * pixel, low + 9 * pixel, low + span - 9 * pixel)
   settle(ends, 15 * pixel, low, low + span)
   part.rings.data = { x: column(rings, "x"), y: column(rings, "y"), colour: column(rings, "colour") }
@@ -78,7 +82,7 @@ for (const part of parts) {
     x: labels.map(() => where), y: column(labels, "at"), text: column(labels, "text"), colour: column(labels, "colour"),
     dx: labels.map(() => left ? -9 : 9),
     // A single value stands clear of its curve: above it, or below where there is no room.
-    dy: labels.map((item) => xs.length > 1 || item.y === low ? 0 : item.y > low + 0.88 * span ? 14 : -14),
+    dy: labels.map((item) => xs.length > 1 || labels.length > 2 || item.y === low ? 0 : item.y > low + 0.88 * span ? 14 : -14),
     align: labels.map(() => left ? "right" : "left"),
   }
   part.ends.data = {

@@ -13,6 +13,7 @@ from explorer.app.pickers import Choice, picker
 from explorer.app.state import Session
 from explorer.app.text import plain, unit_text
 from explorer.scenario.dials import Dial
+from explorer.studies.sweep import Sweep
 
 
 def default_range(dial: Dial) -> tuple[float, float]:
@@ -27,6 +28,21 @@ def default_range(dial: Dial) -> tuple[float, float]:
     return dial.low, top if high is None else min(high, top)
 
 
+def gap_words(swept: Sweep | None) -> str:
+    """Where the sweep has no result and why, "" where it has results all along."""
+    gaps = swept.gaps() if swept is not None else []
+    if not gaps:
+        return ""
+    first = gaps[0]
+    start, stop = sorted((first.start, first.stop))
+    unit = unit_text(swept.dial.unit)
+    place = (
+        f"at {show_number(start)}" if start == stop else f"from {show_number(start)} to {show_number(stop)}"
+    )
+    more = f", and {len(gaps) - 1} more" if len(gaps) > 1 else ""
+    return f"▲ No result {place}{' ' if unit else ''}{unit}: {plain(first.reason, 120)}{more}"
+
+
 class SweepControls(LiveView):
     """Changes the sweep of the scenario."""
 
@@ -35,8 +51,9 @@ class SweepControls(LiveView):
     def __init__(self, session: Session, **settings: Any) -> None:
         self.session = session
         self.entries = Entries()
+        self._gap = ""
         super().__init__(sizing_mode="stretch_width", **settings)
-        session.param.watch(self._changed, ["structure", "scenario"])
+        session.param.watch(self._changed, ["structure", "scenario", "swept"])
         self.refresh()
 
     def describe(self) -> Node:
@@ -45,6 +62,7 @@ class SweepControls(LiveView):
             node("div", "group", node("span", text="Sweep"), *self._dial()),
             *self._range(),
             node("span", text=self._rule()),
+            node("span", "gap", text=self._gap, role="status"),
         )  # fmt: skip
 
     # ---- the dial on x and its range -----------------------------------------------------------------
@@ -112,6 +130,11 @@ class SweepControls(LiveView):
         )
 
     def _changed(self, *events: Any) -> None:
-        if any(event.name == "structure" for event in events):
+        names = {event.name for event in events}
+        if "structure" in names:
             self.entries.forget()
-        self.refresh()
+        gap = gap_words(self.session.swept)
+        # The list of dials is long: a sweep that only has other results must not build it again.
+        if gap != self._gap or names != {"swept"}:
+            self._gap = gap
+            self.refresh()

@@ -94,6 +94,8 @@ class Tiles(LiveView):
     def __init__(self, session: Session, **settings: Any) -> None:
         self.session = session
         self._limits: dict[str, Limits] = {}
+        self._listed: list[str] = []
+        self._list: list[Node] = []
         super().__init__(sizing_mode="stretch_width", **settings)
         self._want()
         session.param.watch(self._changed, ["point", "stale", "structure", "choices"])
@@ -113,8 +115,13 @@ class Tiles(LiveView):
         return node("div", "tile-row", row, *self._choice())
 
     def _choice(self) -> list[Node]:
-        """The button "⋮" and the list of all readouts to choose from."""
+        """The button "⋮" and the list of all readouts to choose from, built anew only for another choice."""
         chosen = self.chosen
+        if self._listed != chosen:
+            self._listed, self._list = chosen, self._build_choice(chosen)
+        return self._list
+
+    def _build_choice(self, chosen: list[str]) -> list[Node]:
         groups: dict[str, list[Node]] = {}
         for readout in READOUTS.values():
             on = readout.key in chosen

@@ -65,7 +65,7 @@ class TargetState:
 
 @dataclass(frozen=True)
 class Verdict:
-    """``lead`` is the finding, ``rest`` what it rests on, both plain text; ``good`` is None without targets."""
+    """``lead`` is the finding, ``rest`` what it rests on, both plain; ``good`` is None without targets."""
 
     lead: str
     rest: str
