@@ -1,8 +1,4 @@
-"""The analysis of a water, opened on its card: a laboratory sheet that can be corrected line by line.
-
-Changing a unit converts the number, so that the water stays what it is. The number as it was entered is kept
-until the next is typed: changing the unit back shows it again, digit for digit.
-"""
+"""The analysis of a water, opened on its card: a laboratory sheet that can be corrected line by line."""
 
 from collections.abc import Mapping
 from dataclasses import replace
@@ -11,14 +7,16 @@ from explorer.app.axes import number_text
 from explorer.app.desk import Desk, beside
 from explorer.app.entry import parse_number, show_number
 from explorer.app.live_view import Node, node
+from explorer.app.other_units import conversion, in_unit, take_along
 from explorer.app.pickers import Choice, picker
+from explorer.app.state import Change
 from explorer.app.text import plain, unit_text
 from explorer.scenario import editing
 from explorer.scenario.compile import system_of
 from explorer.scenario.measured import ENTRY_RULES
 from explorer.scenario.model import Analysis, Measured, Scenario, Water
 from explorer.treatment.analysis import AnalysisError, entry_units
-from explorer.treatment.units import Units, from_base, to_base, units_for
+from explorer.treatment.units import Units, from_base, units_for
 
 LEVELS = {"info": "", "caution": "caution", "error": "error"}
 
@@ -61,15 +59,15 @@ class Sheet:
 
     # ---- changes ---------------------------------------------------------------------------------------
 
-    def put(self, entry: str, measured: Measured | None) -> str:
-        """Replace an entry, or take it out; "" or the refusal."""
-        what = self.label(entry)
+    def put(self, entry: str, measured: Measured | None, also: Change = lambda scenario: None) -> str:
+        """Replace an entry, or take it out, and make a change that goes with it; "" or the refusal."""
         water_id, season = self.water.id, self.season
 
         def change(scenario: Scenario) -> None:
             editing.set_entry(scenario.water(water_id).analyses[season], entry, measured)
+            also(scenario)
 
-        return self.desk.edit(f"{what} of {self.water.title}", change)
+        return self.desk.edit(f"{self.label(entry)} of {self.water.title}", change)
 
     def take(self, entry: str, text: str) -> str:
         """A typed value, or "<" and the limit of a non-detect; "" or the refusal."""
@@ -83,45 +81,20 @@ class Sheet:
             value = parse_number(typed, low, high, measured.unit)
             address = f"{self.key}.{entry}"
             if measured.value is not None and address in self.desk.session.dials:
-                refusal = self.desk.turn(address, value)
-            else:
-                refusal = self.put(entry, replace(measured, value=value, below=None))
-        if not refusal:
-            self.desk.originals.pop(f"{self.key}.{entry}", None)
+                return self.desk.turn(address, value)
+            refusal = self.put(entry, replace(measured, value=value, below=None))
         return refusal
 
-    def change_unit(self, entry: str, unit: str) -> str:
-        """Express an entry in another unit, exactly; the number as entered comes back with its unit."""
+    def change_unit(self, entry: str, unit: str) -> None:
+        """Express an entry in another unit; a refusal stands at the entry."""
         address = f"{self.key}.{entry}"
         measured = self.analysis.entries[entry]
-        original = self.desk.originals.setdefault(address, measured)
-        if unit == original.unit:
-            converted = replace(
-                measured,
-                unit=unit,
-                value=original.value,
-                below=original.below,
-                plus_minus=original.plus_minus,
-            )
-        else:
-            converted = in_unit(measured, unit, self.quantity(entry))
-        return self.put(entry, converted)
-
-
-def in_unit(measured: Measured, unit: str, quantity: str | Units) -> Measured:
-    """The same measurement in another unit: value, limit and half-width converted without rounding."""
-
-    def convert(number: float | None, zero: float = 0.0) -> float | None:
-        if number is None:
-            return None
-        return float(from_base(to_base(number, measured.unit, quantity), unit, quantity)) - zero
-
-    # A width has no zero point: that of °F must not come in.
-    zero = convert(0.0)
-    return replace(
-        measured, unit=unit, value=convert(measured.value), below=convert(measured.below),
-        plus_minus=convert(measured.plus_minus, zero),
-    )  # fmt: skip
+        original = self.desk.originals.of(address, measured)
+        converted = original if unit == original.unit else in_unit(measured, unit, self.quantity(entry))
+        convert = conversion(self.quantity(entry), measured.unit, unit)
+        refusal = self.put(entry, converted, lambda scenario: take_along(scenario, address, convert))
+        self.desk.originals.keep(address, original, converted)
+        self.desk.entries.refuse(address, refusal=refusal)
 
 
 def analysis_editor(desk: Desk, water: Water) -> list[Node]:

@@ -10,6 +10,7 @@ import numpy as np
 from explorer.app.axes import nice_step, number_text
 from explorer.app.entry import Entries, message, show_number
 from explorer.app.live_view import Node, node
+from explorer.app.other_units import Originals
 from explorer.app.state import Change, Session
 from explorer.app.sweep_controls import default_range
 from explorer.app.text import unit_text
@@ -37,15 +38,15 @@ class Desk:
     """One rail's working state apart from the scenario; lives as long as the browser tab.
 
     opened: key of the card that shows its details ("" for none, one at a time). unfolded: key of the analysis
-    row that shows its note. naming: key of the card being renamed. originals: value and unit of entries as
-    they were typed, by field key, kept while only the unit is changed so that changing it back loses nothing.
+    row that shows its note. naming: key of the card being renamed. originals: entries as they were before
+    their unit was changed.
     """
 
     def __init__(self, session: Session) -> None:
         self.session = session
         self.entries = Entries()
         self.opened = self.unfolded = self.naming = ""
-        self.originals: dict[str, Any] = {}
+        self.originals = Originals()
         self._reach: dict[str, float] = {}
         self._examined: tuple[Any, Examination] | None = None
 
@@ -133,7 +134,6 @@ class Desk:
 
     def turn(self, address: str, value: float) -> str:
         """Turn a dial; "" or the refusal, fit to stand beside its field."""
-        self.originals.pop(address, None)
         return beside(self.session.turn(address, value))
 
     def edit(self, label: str, change: Change, key: str = "") -> str:
@@ -156,10 +156,6 @@ class Desk:
     def unfold(self, key: str) -> None:
         """Unfold what more there is about a line of the analysis, and fold it when it is unfolded."""
         self.unfolded = "" if self.unfolded == key else key
-
-    def original(self, key: str, entered: Any) -> Any:
-        """What was entered at ``key`` before its unit was first changed; ``entered`` where it was not yet."""
-        return self.originals.setdefault(key, entered)
 
     def settle(self) -> None:
         """After another scenario or a removal: nothing stays open that is no longer there."""

@@ -7,7 +7,9 @@ from explorer.app.axes import number_text
 from explorer.app.desk import Desk, facts
 from explorer.app.entry import show_number
 from explorer.app.live_view import Node, node
+from explorer.app.other_units import Conversion, conversion, take_along
 from explorer.app.pickers import Choice, picker
+from explorer.app.state import Change
 from explorer.app.text import formula_text, plain, unit_text
 from explorer.scenario import editing
 from explorer.scenario.entity import Entity
@@ -18,7 +20,6 @@ from explorer.scenario.quantity import Amount
 from explorer.scenario.readouts import READOUTS
 from explorer.treatment.catalogue import SETTINGS
 from explorer.treatment.chemicals import Chemical, dose_in, dose_moles, pump_rate
-from explorer.treatment.units import from_base, to_base
 
 OWN_PLACE = ("id", "name", "on", "note", "chemical", "dose", "hold")
 """Fields that the card itself or a part of its own looks after."""
@@ -37,14 +38,15 @@ class Form:
         boxes = [box] if isinstance(box, Node) else box
         self.lines += [label, node("div", "pair", *boxes), *messages]
 
-    def put(self, name: str, value: Any, part: str = "") -> str:
-        """Set a declared field of the step, or of its ``part``; "" or the refusal."""
+    def put(self, name: str, value: Any, part: str = "", also: Change = lambda scenario: None) -> str:
+        """Set a declared field of the step, or of its ``part``, and make a change that goes with it."""
         step_id = self.step.id
         label = (getattr(self.step, part) if part else self.step).fields()[name].label
 
         def change(scenario: Scenario) -> None:
             owner = scenario.step(step_id)
             setattr(getattr(owner, part) if part else owner, name, value)
+            also(scenario)
 
         return self.desk.edit(f"{label} of {self.step.title}", change)
 
@@ -129,15 +131,15 @@ class Form:
         units = self.units(name, part)
 
         def take(unit: str) -> None:
-            original = self.desk.original(key, value)
-            same = (
-                original if unit == original.unit else Quantity(self.converted(name, value, unit, part), unit)
-            )
-            self.desk.entries.refuse(f"{key}.unit", refusal=self.put(name, same, part))
+            convert = self.conversion(name, value.unit, unit, part)
+            original = self.desk.originals.of(key, value)
+            same = original if unit == original.unit else Quantity(convert(value.value), unit)
+            refusal = self.put(name, same, part, lambda scenario: take_along(scenario, key, convert))
+            self.desk.originals.keep(key, original, same)
+            self.desk.entries.refuse(f"{key}.unit", refusal=refusal)
 
-        return self.desk.entries.choice(
-            f"{key}.unit", "Unit", {unit: unit_text(unit) for unit in units}, value.unit, take
-        )
+        names = {unit: unit_text(unit) for unit in units}
+        return self.desk.entries.choice(f"{key}.unit", "Unit", names, value.unit, take)
 
     def units(self, name: str, part: str = "") -> tuple[str, ...]:
         """Units of a declared amount."""
@@ -149,17 +151,13 @@ class Form:
         """The chemical of a dose step."""
         return self.desk.scenario.product(self.step)
 
-    def converted(self, name: str, value: Quantity, unit: str, part: str = "") -> float:
-        """A declared amount in another unit."""
+    def conversion(self, name: str, old: str, new: str, part: str = "") -> Conversion:
+        """Between two units of a declared amount."""
         field = (getattr(self.step, part) if part else self.step).fields()[name]
         if field.units:
-            return float(from_base(to_base(value.value, value.unit, field.quantity), unit, field.quantity))
-        strength = self.step.strength
-        return float(
-            dose_in(
-                self.chemical, dose_moles(self.chemical, value.value, value.unit, strength), unit, strength
-            )
-        )
+            return conversion(field.quantity, old, new)
+        product, strength = self.chemical, self.step.strength
+        return lambda dose: float(dose_in(product, dose_moles(product, dose, old, strength), new, strength))
 
 
 def step_form(desk: Desk, step: Step, key: str) -> list[Node]:
