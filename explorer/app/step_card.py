@@ -77,14 +77,13 @@ def _state(desk: Desk, step: Step) -> Node | None:
         return None
     readout = READOUTS[step.hold.readout]
     held = f"holds {in_sentence(readout.short)} {format_value(step.hold.value, readout)}"
-    dose = desk.dose(step.id)
-    words, look = "▲ not reached", "poor"
-    if math.isfinite(dose):
-        unit = unit_text(step.hold.ceiling.unit)
-        words, look = f"doses {number_text(dose, 2 if abs(dose) < 10 else 1)} {unit}", "strong"
-    return node(
-        "div", "state", node("span", "tag", text=held, title=readout.label), node("span", look, text=words)
-    )
+    dosing = desk.dosing(step.id)
+    words, look = "▲ no dose found", "poor"
+    if dosing is not None and math.isfinite(dose := float(dosing.value)):
+        amount = f"doses {number_text(dose, 2 if abs(dose) < 10 else 1)} {unit_text(step.hold.ceiling.unit)}"
+        words, look = (amount, "strong") if bool(dosing.met) else (f"▲ not met, {amount}", "poor")
+    tag = node("span", "tag", text=held, title=readout.label)
+    return node("div", "state", tag, node("span", look, text=words))
 
 
 def _acts(desk: Desk, step: Step, key: str, name: str, position: int, count: int) -> list[Act]:

@@ -64,7 +64,7 @@ def test_declared_number_is_turned() -> None:
 
 
 def test_one_of_two_settings() -> None:
-    """Of settings that exclude each other, choosing one clears the other and starts from the water as it is."""
+    """Choosing one of two settings clears the other and starts from the water as it is."""
     rail, key = opened("train:add:air:")
     rail.report(f"{key}:which", "co2")
     step = step_of(rail, key)
@@ -138,7 +138,7 @@ def test_another_chemical() -> None:
 
 
 def test_dose_that_holds_the_ph() -> None:
-    """A dose turns into a hold at the pH the water has, and its card tells what is held and the dose it takes."""
+    """A dose becomes a hold at the pH the water has; its card tells what is held and with which dose."""
     rail, key = opened("train:add:dose:sodium_hydroxide")
     ph = rail.desk.reading("ph", step_of(rail, key).id)
     rail.report(f"{key}:which", "hold")
@@ -157,7 +157,7 @@ def test_hold_out_of_reach_is_told() -> None:
     rail.report(f"{key}:which", "hold")
     rail.report(f"{key}.hold.value", "11")
     rail.report(f"{key}.hold.ceiling", "2")
-    assert "▲" in rail.shown(key).words()
+    assert "▲ not met, doses 2.00 mg/L" in rail.shown(key).words()
 
 
 def test_hold_turned_into_a_fixed_dose() -> None:
