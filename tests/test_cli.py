@@ -114,7 +114,7 @@ def test_solve_prints_a_table_for_people(run, written, raw):
     assert lines["pH"].split()[1:] == ["8.00", "7.4", "to", "8.5", "in", "range"]
     assert lines["Nitrate"].split()[-2:] == ["10", "above"]
     assert rest.splitlines()[1].split() == ["Sodium", "hypochlorite", "1.2", "mg/L", "as", "Cl2"]
-    assert "dissolves" in lines["Calcium carbonate precipitation potential"]
+    assert "precipitates" in lines["Calcium carbonate precipitation potential"]
     assert "nan" not in out
 
 

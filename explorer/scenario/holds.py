@@ -9,19 +9,23 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.optimize import elementwise
 
 from explorer.scenario.readouts import Readout, format_value
+from explorer.scenario.roots import find_roots
 from explorer.scenario.stage import Stage
 from explorer.treatment.stream import MENDABLE, Problem, Stream
 
 RELATIVE_DOSE = 1e-13
-"""Width of the bracket, relative to the ceiling, at which the search ends."""
-
-MOST_STEPS = 100
+"""To what part of the ceiling a dose is found."""
 
 SEARCHABLE = (Problem.NONE, *MENDABLE)
 """States of a water that the search may pass through: the dose it ends at may put them right."""
+
+STRONGEST = 1.0
+"""Ionic strength [mol/L] beyond which nothing is believed; a ceiling may lie far above all sense."""
+
+NO_ALKALINITY = 1e-14
+"""eq/L too much or too little at the held pH that count as none: 1e-8 in pH for the softest water."""
 
 Adder = Callable[[Stream, np.ndarray], Stream]
 """The stream after a dose of mol/L; works point by point on flat streams."""
@@ -41,11 +45,18 @@ def excess(stream: Stream, readout: Readout, goal: np.ndarray) -> np.ndarray:
 
     For pH it is the alkalinity [eq/L] beyond that of the water at the goal: nearly linear in every dose,
     where the pH itself is steep and flat by turns, so the search takes few steps.
+    nan where there is no answer.
     """
     if readout.key == "ph":
-        at_goal = stream.system.solve(stream.totals, stream.temperature, ph=goal)
-        return stream.total("alkalinity") - at_goal.totals[stream.system.index["alkalinity"]]
-    return readout.compute(Stage("", "", "", stream)) - goal
+        water = stream.system.solve(stream.totals, stream.temperature, ph=goal)
+        beyond = stream.total("alkalinity") - water.totals[stream.system.index["alkalinity"]]
+    else:
+        stage = Stage("", "", "", stream)
+        beyond = readout.compute(stage) - goal
+        if not readout.equilibrium:
+            return beyond
+        water = stage.solution
+    return np.where(water.ionic_strength <= STRONGEST, beyond, np.nan)
 
 
 def held_dose(stream: Stream, add: Adder, readout: Readout, goal: ArrayLike, ceiling: ArrayLike) -> HeldDose:
@@ -58,31 +69,24 @@ def held_dose(stream: Stream, add: Adder, readout: Readout, goal: ArrayLike, cei
     flat = stream.at(shape)
     goals, ceilings = (np.broadcast_to(part, shape).ravel().astype(float) for part in (goal, ceiling))
 
-    narrow = {"xatol": RELATIVE_DOSE * np.max(ceilings, initial=0.0), "xrtol": RELATIVE_DOSE, "fatol": 0}
-
     def beyond(moles: np.ndarray, point: np.ndarray) -> np.ndarray:
-        point = point.astype(int)
         after = add(flat.at(flat.shape, point), moles)
         return np.where(np.isin(after.problem, SEARCHABLE), excess(after, readout, goals[point]), np.nan)
 
-    with np.errstate(invalid="ignore"):
-        found = elementwise.find_root(
-            beyond,
-            (np.zeros_like(ceilings), ceilings),
-            args=(np.arange(ceilings.size),),
-            tolerances=narrow,
-            maxiter=MOST_STEPS,
-        )
-    none, most = found.f_bracket
-    unmet = ~found.success & np.isfinite(none) & np.isfinite(most)
+    enough = NO_ALKALINITY if readout.key == "ph" else 1e-6 * readout.slack
+    roots = find_roots(beyond, np.zeros_like(ceilings), ceilings, relative=RELATIVE_DOSE, enough=enough)
+    none, most = roots.at_low, roots.at_high
+    unmet = ~roots.found & np.isfinite(none) & np.isfinite(most)
     without = unmet & (np.abs(none) <= np.abs(most))
-    moles = np.where(found.success, found.x, np.where(unmet, np.where(without, 0.0, ceilings), np.nan))
+    moles = np.where(roots.found, roots.x, np.where(unmet, np.where(without, roots.low, roots.high), np.nan))
+    far, known = unmet & ~without, roots.high == ceilings
     words = [
         *_say(without & (none > 0), goals, readout, "is above {goal} without any of it"),
         *_say(without & (none < 0), goals, readout, "is below {goal} without any of it"),
-        *_say(unmet & ~without, goals, readout, "cannot be brought to {goal}: the dose stays at its ceiling"),
+        *_say(far & known, goals, readout, "cannot be brought to {goal}: the dose stays at its ceiling"),
+        *_say(far & ~known, goals, readout, "cannot be brought to {goal}: larger doses have no answer"),
     ]
-    return HeldDose(moles.reshape(shape), found.success.reshape(shape), words)
+    return HeldDose(moles.reshape(shape), roots.found.reshape(shape), words)
 
 
 def _say(where: np.ndarray, goals: np.ndarray, readout: Readout, sentence: str) -> list[str]:

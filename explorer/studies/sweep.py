@@ -7,20 +7,20 @@ from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.optimize import elementwise
 
 from explorer.scenario.compile import Plan, compiled
 from explorer.scenario.dials import Dial, dials, no_dial
 from explorer.scenario.errors import ScenarioError
 from explorer.scenario.evaluate import Outcome, follow
-from explorer.scenario.model import Scenario, Target
+from explorer.scenario.model import Scenario, SweepSetting, Target
 from explorer.scenario.outcome import FINISHED
 from explorer.scenario.readouts import READOUTS
+from explorer.scenario.roots import find_roots
 
 USUAL_POINTS, MOST_POINTS = 101, 2001
 
-REFINED = 1e-9
-"""Width, as a part of the range, to which a crossing is refined."""
+REFINED = 1e-7
+"""To what part of the distance of two points a crossing between them is found."""
 
 
 @dataclass(frozen=True)
@@ -70,7 +70,7 @@ class Sweep:
         return [crossing.x for crossing in self.crossed(target)]
 
     def crossed(self, target: Target) -> list[Crossing]:
-        """Crossings of both limits of a target, in the order of the dial; each found to 1e-9 of the range."""
+        """Crossings of both limits of a target, in the order of the dial; found between the points."""
         found: list[Crossing] = []
         for limit, outwards in ((target.low, -1.0), (target.high, 1.0)):
             if limit is not None:
@@ -86,12 +86,13 @@ class Sweep:
         before = np.flatnonzero((outside[:-1] != outside[1:]) & known[:-1] & known[1:])
         if not before.size:
             return
-        found = elementwise.find_root(
-            lambda x: self.at(x).readout(key) - edge,
-            (self.x[before], self.x[before + 1]),
-            tolerances={"xatol": REFINED * abs(self.x[-1] - self.x[0]), "xrtol": 0, "fatol": 0},
+        roots = find_roots(
+            lambda x, _: self.at(x).readout(key) - edge,
+            self.x[before],
+            self.x[before + 1],
+            relative=REFINED,
         )
-        for x, i, refined in zip(found.x, before, found.success, strict=True):
+        for x, i, refined in zip(roots.x, before, roots.found, strict=True):
             part = beyond[i] / (beyond[i] - beyond[i + 1])
             straight = self.x[i] + part * (self.x[i + 1] - self.x[i])
             yield Crossing(float(x if refined else straight), limit, bool(outside[i + 1] == (outwards > 0)))
@@ -133,13 +134,13 @@ class Sweep:
 
     def table(self, readouts: Sequence[str]) -> list[list[Any]]:
         """Rows for a spreadsheet, the heading first: dial, readouts, held doses, why there is no answer."""
-        columns = [[_headed(self.dial.label, self.dial.unit), *self.x.tolist()]]
+        columns = [[headed(self.dial.label, self.dial.unit), *self.x.tolist()]]
         for readout in (READOUTS[key] for key in readouts):
             values = listed(self.outcome.readout(readout.key))
-            columns.append([_headed(readout.label, readout.unit), *values])
+            columns.append([headed(readout.label, readout.unit), *values])
         for step, (values, unit, held) in self.outcome.doses.items():
             if held:
-                columns.append([_headed(f"Dose of {self.outcome.stage(step).name}", unit), *listed(values)])
+                columns.append([headed(f"Dose of {self.outcome.stage(step).name}", unit), *listed(values)])
         columns.append(["No answer because", *self.outcome.reasons().tolist()])
         return [list(row) for row in zip(*columns, strict=True)]
 
@@ -167,16 +168,11 @@ def sweep(
     if dial not in every:
         raise ScenarioError("dial", no_dial(dial, every))
     swept = every[dial]
-    usual_start, usual_stop, usual_points = _range(swept)
-    if setting is not None and setting.dial == dial:
-        usual_start, usual_stop, usual_points = setting.start, setting.stop, setting.points
-    start = usual_start if start is None else start
-    stop = usual_stop if stop is None else stop
-    points = usual_points if points is None else points
+    start, stop = swept_range(swept, setting, start, stop)
+    if points is None:
+        points = setting.points if setting is not None and setting.dial == dial else USUAL_POINTS
     if not 2 <= points <= MOST_POINTS:
         raise ScenarioError("points", f"{points} is out of range; allowed 2 to {MOST_POINTS}")
-    if not (np.isfinite(start) and np.isfinite(stop)) or start == stop:
-        raise ScenarioError("stop", f"{start:g} to {stop:g} is no range; allowed two different numbers")
     x = np.linspace(start, stop, points)
     plan = compiled(scenario, season)
     overrides = dict(overrides)
@@ -194,9 +190,31 @@ def _first(every: Mapping[str, Dial]) -> str:
     return next(address for kind in kinds for address in every if kind(address))
 
 
-def _range(dial: Dial) -> tuple[float, float, int]:
-    stop = dial.high if dial.high is not None else dial.low + 2 * (dial.value - dial.low)
-    return dial.low, stop if stop > dial.low else dial.low + 1.0, USUAL_POINTS
+def swept_range(
+    dial: Dial,
+    setting: SweepSetting | None,
+    start: float | None = None,
+    stop: float | None = None,
+    path: str = "",
+) -> tuple[float, float]:
+    """First and last value of a dial: as given, else of the scenario's own sweep where it is of this dial,
+    else the bounds of the dial (without upper bound: twice its value).
+
+    Raises ScenarioError, with ``path`` before the field, where that is no range.
+    """
+    if setting is not None and setting.dial == dial.address:
+        usual_start, usual_stop = setting.start, setting.stop
+    else:
+        usual_start = dial.low
+        usual_stop = dial.high if dial.high is not None else dial.low + 2 * (dial.value - dial.low)
+        usual_stop = usual_stop if usual_stop > dial.low else dial.low + 1.0
+    start = usual_start if start is None else start
+    stop = usual_stop if stop is None else stop
+    if not (np.isfinite(start) and np.isfinite(stop)) or start == stop:
+        raise ScenarioError(
+            f"{path}stop", f"{start:g} to {stop:g} is no range; allowed two different numbers"
+        )
+    return start, stop
 
 
 def listed(values: np.ndarray) -> list[float | None]:
@@ -204,5 +222,6 @@ def listed(values: np.ndarray) -> list[float | None]:
     return [float(value) if np.isfinite(value) else None for value in values]
 
 
-def _headed(label: str, unit: str) -> str:
+def headed(label: str, unit: str) -> str:
+    """Heading of a column: label and unit."""
     return f"{label} [{unit}]" if unit else label

@@ -126,3 +126,25 @@ def test_a_point_without_water_has_no_dose(plant):
     outcome = evaluate(scenario, {"waters.river.analysis.ph": np.array([8.6, 12.0])})
     assert np.isfinite(outcome.doses["caustic"][0]).tolist() == [True, False]
     assert outcome.reasons()[1] == "no water has the entered analysis"
+
+
+def test_a_ceiling_far_beyond_all_chemistry_does_no_harm(plant):
+    """With a ceiling at which no equilibrium exists the dose is found all the same."""
+    train = [plant.held("caustic", "sodium_hydroxide", "ccpp", 20.0, 1e9, "mg/L")]
+    outcome = evaluate(plant({"river": 50, "well": 50}, train), {"waters.well.share": SHARES})
+    assert outcome.readout("ccpp") == pytest.approx(20.0, abs=1e-5)
+
+
+def test_a_readout_that_only_a_dose_brings_into_being_can_be_held(plant):
+    """Without calcium there is no saturation index to start from; enough calcium chloride makes one."""
+    raw = plant.dict({"well": 100}, [plant.held("salt", "calcium_chloride", "si_calcite", 0.0, 900, "mg/L")])
+    raw["waters"][0]["analyses"]["winter"] = plant.sheet("well", calcium=None, ph=7.6)
+    assert evaluate(plant.read(raw)).readout("si_calcite") == pytest.approx(0.0, abs=1e-6)
+
+
+def test_a_hold_of_something_that_cannot_be_says_so(plant):
+    """Acid never raises the Langelier index, and in the end there is none: no dose, and the note."""
+    train = [plant.held("acid", "sulfuric_acid", "langelier_index", 2.0, 1000, "mg/L")]
+    outcome = evaluate(plant({"well": 100}, train))
+    assert float(outcome.doses["acid"][0]) == 0
+    assert any("is below 2.00 without any of it" in note.text for note in outcome.notes)
