@@ -56,7 +56,9 @@ def follow(plan: Plan, dials: Mapping[str, ArrayLike] = MappingProxyType({})) ->
     blended = _blend(ends, parts, problem)
     run.stages.append(blended)
     run.follow(plan.train, blended)
-    return Outcome(shape, plan.season, tuple(run.stages), run.doses, plan.targets, run.notes)
+    return Outcome(
+        shape, plan.season, tuple(run.stages), run.doses, plan.targets, run.notes, parts, ends, run.inputs
+    )
 
 
 def _turned(plan: Plan, dials: Mapping[str, ArrayLike]) -> dict[str, np.ndarray]:
@@ -114,7 +116,7 @@ def _source(
     except AnalysisError as error:
         raise ScenarioError(f"{source.path}.{error.key}", error.message) from None
     if source.on:
-        if not intake.possible.any():
+        if not overrides and not intake.possible.any():
             fault = next(note for note in intake.notes if note.level == "error")
             raise ScenarioError(f"{source.path}.{fault.where}", fault.text)
         run.notes += [replace(note, where=prefix + note.where) for note in intake.notes]

@@ -1,21 +1,20 @@
 """The answer of an evaluation: every stage of the plant, at every point."""
 
 from collections.abc import Mapping
-from dataclasses import dataclass
 from functools import cached_property
 
 import numpy as np
 
 from explorer.chemistry import Solution
+from explorer.scenario.alarms import alarms_of
 from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.model import Target
 from explorer.scenario.operations import Dose
 from explorer.scenario.readouts import READOUTS
-from explorer.scenario.stage import Stage
-from explorer.treatment.chlorine import KINETICS_NOTE
+from explorer.scenario.stage import BLEND, FINISHED, Stage
 from explorer.treatment.notes import Note
 
-FINISHED, BLEND = "finished", "blend"
+__all__ = ["BLEND", "FINISHED", "Outcome"]
 
 
 class Outcome:
@@ -23,6 +22,9 @@ class Outcome:
 
     Nothing is solved before it is asked for. Results come in the units of their readouts, nan where there is
     no answer; :meth:`reasons` says why.
+
+    ``dosing``: what each dose step adds, by id. ``parts``: of each water in service in the blend (0 to 1), by
+    id. ``ends``: the stage in which each water reaches the blend. ``inputs``: every dial value by address.
     """
 
     def __init__(
@@ -33,9 +35,12 @@ class Outcome:
         doses: Mapping[str, Dose],
         targets: tuple[Target, ...],
         notes: list[Note],
+        parts: Mapping[str, np.ndarray],
+        ends: Mapping[str, Stage],
+        inputs: Mapping[str, np.ndarray],
     ) -> None:
         self.shape, self.season, self.stages = shape, season, stages
-        self.dosing = doses
+        self.dosing, self.parts, self.ends, self.inputs = doses, parts, ends, inputs
         self._targets, self._notes = targets, notes
         self._by_id = {stage.id: stage for stage in stages} | {FINISHED: stages[-1]}
 
@@ -84,44 +89,5 @@ class Outcome:
 
     @cached_property
     def notes(self) -> list[Note]:
-        """What there is to say: of the analyses, the holds, points without answer, and limits of validity."""
-        finished = self.stage()
-        notes = list(self._notes)
-        notes += _unanswered(self.reasons())
-        if any(np.any(stage.total("monochloramine") > 0) for stage in self.stages):
-            notes.append(Note("info", FINISHED, KINETICS_NOTE))
-        for limit in LIMITS:
-            value = finished.readout(limit.key)
-            outside = (value < limit.low) | (value > limit.high)
-            if outside.any():
-                notes.append(Note("caution", FINISHED, limit.text))
-        return notes
-
-
-@dataclass(frozen=True)
-class Limit:
-    """Where a readout of the finished water calls for a caution."""
-
-    key: str
-    low: float
-    high: float
-    text: str
-
-
-LIMITS = (
-    Limit("ionic_strength", -np.inf, 0.1, "ionic strength above 0.1 mol/L: results are a guide only"),
-    Limit("ph", 4.0, 11.5, "pH outside 4 to 11.5: beyond what the constants are meant for"),
-    Limit("buffer_intensity", 0.2, np.inf, "buffer intensity below 0.2 mmol/L per pH: the pH is hard to hold;"
-          " small dose errors and carbon dioxide from the air move it"),
-)  # fmt: skip
-"""Common practice; the Davies equation for ionic strength."""
-
-
-def _unanswered(reasons: np.ndarray) -> list[Note]:
-    """One note for each reason that keeps points of the finished water from an answer."""
-    texts, counts = np.unique(reasons.astype(str), return_counts=True)
-    return [
-        Note("error", FINISHED, text + (f" ({count} of {reasons.size} points)" if reasons.size > 1 else ""))
-        for text, count in zip(texts.tolist(), counts.tolist(), strict=True)
-        if text
-    ]
+        """What there is to say: of the analyses and the holds, and every alarm."""
+        return [*self._notes, *alarms_of(self)]

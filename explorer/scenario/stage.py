@@ -12,6 +12,9 @@ from explorer.chemistry.equilibrium import REASONS
 from explorer.scenario.readouts import READOUTS
 from explorer.treatment.stream import PROBLEMS, Stream
 
+BLEND, FINISHED = "blend", "finished"
+"""Ids of the stage in which the waters meet, and of the last one."""
+
 
 class PlantProblem(IntEnum):
     """Problems of the plant as a whole, beside those of a single water in ``Problem``."""
