@@ -4,16 +4,20 @@
 const TAGS = new Set(["div", "section", "span", "p", "h2", "h3", "h4", "ol", "ul", "li", "label", "button", "input",
   "select", "option", "optgroup", "table", "colgroup", "col", "thead", "tbody", "tr", "th", "td", "strong", "small", "details", "summary"])
 const ATTRIBUTE = /^(class|id|title|type|role|tabindex|placeholder|min|max|step|disabled|hidden|list|for|label|selected|scope|colspan|autocomplete|inputmode|maxlength|size|autofocus|popover|popovertarget|aria-[a-z]+|data-[a-z]+)$/
-const HELD_MS = 300   // a slider just moved by hand is not moved by an answer to an earlier position
 
 export function render({ model, el }) {
   const view = document.createElement("div")
   view.className = "live-view"
   let order = []      // elements in reading order: a patch addresses them by position
-  const held = new Map()   // slider -> time until which answers wait
+  let sent = 0, heard = 0   // number of the last report, and of the last that Python had heard when it answered
 
   const scope = () => view.getRootNode()
-  const tell = (element, value) => model.send_msg({ key: element._key, value: value ?? null })
+  const tell = (element, value) => {
+    element._report = ++sent
+    model.send_msg({ key: element._key, value: value ?? null, number: sent })
+  }
+
+  const waiting = new Map()   // slider -> newest value, sent once a frame
 
   // ---- tree -> page ------------------------------------------------------------------------------
 
@@ -28,8 +32,8 @@ export function render({ model, el }) {
       const selected = scope().activeElement === element
       element.value = text
       if (selected) element.select()
-    } else if (element.type === "range" && (held.get(element) ?? 0) > performance.now()) {
-      element._waiting = text
+    } else if (element.type === "range" && (waiting.has(element) || (element._report ?? 0) > heard)) {
+      return   // an answer to an earlier position: the slider is further by now
     } else {
       element.value = text
       paint(element)
@@ -106,14 +110,17 @@ export function render({ model, el }) {
   function showTree() {
     const focused = scope().activeElement?._key
     order = []
-    const root = JSON.parse(model.tree)
-    fit(view, root.length ? [root] : [])
+    const tree = JSON.parse(model.tree)
+    heard = tree.heard ?? heard
+    fit(view, tree.root ? [tree.root] : [])
     if (focused && scope().activeElement?._key !== focused)
       order.find((element) => element._key === focused)?.focus()
   }
 
   function showPatch() {
-    for (const [position, properties] of Object.entries(JSON.parse(model.patch).changes ?? {})) {
+    const patch = JSON.parse(model.patch)
+    heard = patch.heard ?? heard
+    for (const [position, properties] of Object.entries(patch.changes ?? {})) {
       const element = order[Number(position)]
       if (!element) continue
       for (const [name, value] of Object.entries(properties)) {
@@ -129,26 +136,17 @@ export function render({ model, el }) {
 
   // ---- page -> Python ----------------------------------------------------------------------------
 
-  const waiting = new Map()      // slider -> newest value, sent once a frame
   view.addEventListener("input", (event) => {
     const element = event.target
     if (element.hasAttribute("data-filter")) return filter(element)
     if (element.type !== "range") return
     paint(element)
-    held.set(element, performance.now() + HELD_MS)
     if (!waiting.has(element)) requestAnimationFrame(() => {
       tell(element, Number(waiting.get(element)))
       waiting.delete(element)
-      setTimeout(() => release(element), HELD_MS + 20)
     })
     waiting.set(element, element.value)
   })
-  function release(slider) {
-    if ((held.get(slider) ?? 0) > performance.now() || slider._waiting === undefined) return
-    slider.value = slider._waiting
-    slider._waiting = undefined
-    paint(slider)
-  }
   view.addEventListener("change", (event) => {
     const element = event.target
     if (!element.hasAttribute("data-on") || element.type === "range") return

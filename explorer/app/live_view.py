@@ -93,10 +93,11 @@ class LiveView(JSComponent):
     """Shows a tree of nodes and brings what the user does to the nodes' handlers.
 
     ``tree`` is the whole tree as JSON text, ``patch`` everything that has changed in place since: for each
-    node, by its position in reading order, the attributes with their new values (null: taken away).
+    node, by its position in reading order, the attributes with their new values (null: taken away). Both say
+    which report of the page was the last ``heard``, so that a slider that is further by then is left alone.
     """
 
-    tree = param.String(default="[]")
+    tree = param.String(default="{}")
     patch = param.String(default="{}")
 
     _esm = "live_view.js"
@@ -108,6 +109,7 @@ class LiveView(JSComponent):
         self._nodes: list[Node] = []
         self._changes: dict[int, dict[str, Any]] = {}
         self._handlers: dict[str, Handler] = {}
+        self._serial = self._heard = 0
         styles = [(FOLDER / name).read_text(encoding="utf-8") for name in self.css]
         super().__init__(**({"stylesheets": styles} | settings))
 
@@ -126,7 +128,7 @@ class LiveView(JSComponent):
         self._handlers = {item.key: item.on for item in nodes if item.on is not None}
         if _shape(nodes) != _shape(self._nodes):
             self._nodes, self._changes = nodes, {}
-            self.param.update(tree=json.dumps(_wire(root), ensure_ascii=False), patch="{}")
+            self.param.update(tree=_text(heard=self._heard, root=_wire(root)), patch="{}")
             return
         changed = False
         for position, (old, new) in enumerate(zip(self._nodes, nodes, strict=True)):
@@ -143,8 +145,8 @@ class LiveView(JSComponent):
         self._nodes = nodes
         if changed:
             # The serial makes a repeated answer a new value, which otherwise would not be sent.
-            serial = json.loads(self.patch).get("serial", 0) + 1
-            self.patch = json.dumps({"serial": serial, "changes": self._changes}, ensure_ascii=False)
+            self._serial += 1
+            self.patch = _text(serial=self._serial, heard=self._heard, changes=self._changes)
 
     @property
     def nodes(self) -> list[Node]:
@@ -167,4 +169,10 @@ class LiveView(JSComponent):
 
     def _handle_msg(self, data: Any) -> None:
         if isinstance(data, dict) and isinstance(data.get("key"), str):
+            if isinstance(data.get("number"), int):
+                self._heard = data["number"]
             self.report(data["key"], data.get("value"))
+
+
+def _text(**parts: Any) -> str:
+    return json.dumps(parts, ensure_ascii=False)
