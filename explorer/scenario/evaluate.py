@@ -116,7 +116,7 @@ def _source(
     except AnalysisError as error:
         raise ScenarioError(f"{source.path}.{error.key}", error.message) from None
     if source.on:
-        if not overrides and not intake.possible.any():
+        if not intake.possible.shape and not intake.possible:
             fault = next(note for note in intake.notes if note.level == "error")
             raise ScenarioError(f"{source.path}.{fault.where}", fault.text)
         run.notes += [replace(note, where=prefix + note.where) for note in intake.notes]
