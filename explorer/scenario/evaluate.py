@@ -16,7 +16,7 @@ from explorer.scenario.errors import ScenarioError
 from explorer.scenario.model import Scenario
 from explorer.scenario.operations import Run, added
 from explorer.scenario.outcome import BLEND, Outcome
-from explorer.scenario.stage import PlantProblem, Stage
+from explorer.scenario.stage import PlantProblem, Stage, Worked
 from explorer.treatment.analysis import AnalysisError, Intake, Measured, analysis_totals
 from explorer.treatment.stream import Problem, Stream, blend
 from explorer.treatment.units import to_base
@@ -108,11 +108,14 @@ def _source(
     }
     try:
         if overrides:
-            intake = analysis_totals(
-                dict(source.entries), plan.system, close_with=source.close_with, overrides=overrides
+            worked, intake = (
+                None,
+                analysis_totals(
+                    dict(source.entries), plan.system, close_with=source.close_with, overrides=overrides
+                ),
             )
         else:
-            intake = _intake(plan.system, source.entries, source.close_with)
+            worked, intake = _intake(plan.system, source.entries, source.close_with)
     except AnalysisError as error:
         raise ScenarioError(f"{source.path}.{error.key}", error.message) from None
     if source.on:
@@ -121,17 +124,19 @@ def _source(
             raise ScenarioError(f"{source.path}.{fault.where}", fault.text)
         run.notes += [replace(note, where=prefix + note.where) for note in intake.notes]
     stream = Stream(plan.system, intake.totals, intake.temperature, flow)
-    stage = Stage(
-        source.id, source.name, "water", stream.flagged(~intake.possible, Problem.IMPOSSIBLE_ANALYSIS)
-    )
+    stream = stream.flagged(~intake.possible, Problem.IMPOSSIBLE_ANALYSIS)
+    stage = Stage(source.id, source.name, "water", stream, worked=worked)
     run.stages.append(stage)
     return run.follow(source.train, stage)
 
 
 @lru_cache(maxsize=128)
-def _intake(system: System, entries: tuple[tuple[str, Measured], ...], close_with: str) -> Intake:
-    """Totals of an analysis as entered, kept: most turns of a dial leave most analyses alone."""
-    return analysis_totals(dict(entries), system, close_with=close_with)
+def _intake(
+    system: System, entries: tuple[tuple[str, Measured], ...], close_with: str
+) -> tuple[Worked, Intake]:
+    """Totals of an analysis as entered, and what is known of the water: kept, as most turns of a dial leave
+    most analyses alone."""
+    return Worked(), analysis_totals(dict(entries), system, close_with=close_with)
 
 
 def _blend(ends: Mapping[str, Stage], parts: Mapping[str, np.ndarray], problem: np.ndarray) -> Stage:

@@ -1,8 +1,8 @@
 """One place of the plant: the water there, and its readouts."""
 
 from collections.abc import Mapping
+from dataclasses import dataclass, field
 from enum import IntEnum
-from functools import cached_property
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -32,18 +32,35 @@ PROBLEM_WORDS: Mapping[int, str] = PROBLEMS | {
 """Why a point has no answer, by the codes of ``Stage.problem``."""
 
 
+@dataclass
+class Worked:
+    """What has been worked out about a water so far: its equilibrium, and readouts by key."""
+
+    solution: Solution | None = None
+    values: dict[str, np.ndarray] = field(default_factory=dict)
+
+
 class Stage:
     """A water at one place, for any number of points. Everything is worked out when asked for, and kept.
 
     ``stream``: what flows there. ``cost``: price of the chemicals so far per ML of this water, nan where no
-    price is entered. Arrays broadcast against the shape of the outcome they belong to.
+    price is entered. ``worked``: shared by stages that differ in nothing but their flow. Arrays broadcast
+    against the shape of the outcome they belong to.
     """
 
-    def __init__(self, id: str, name: str, kind: str, stream: Stream, cost: ArrayLike = np.nan) -> None:
+    def __init__(
+        self,
+        id: str,
+        name: str,
+        kind: str,
+        stream: Stream,
+        cost: ArrayLike = np.nan,
+        worked: Worked | None = None,
+    ) -> None:
         self.id, self.name, self.kind = id, name, kind
         self.stream = stream
         self.cost = np.asarray(cost, float)
-        self._values: dict[str, np.ndarray] = {}
+        self._worked = Worked() if worked is None else worked
 
     @property
     def system(self) -> System:
@@ -75,10 +92,12 @@ class Stage:
         """Codes into :data:`PROBLEM_WORDS`."""
         return np.asarray(self.stream.problem)
 
-    @cached_property
+    @property
     def solution(self) -> Solution:
         """The equilibrium of the water."""
-        return self.system.solve(self.totals, self.temperature)
+        if self._worked.solution is None:
+            self._worked.solution = self.system.solve(self.totals, self.temperature)
+        return self._worked.solution
 
     def total(self, key: str) -> np.ndarray:
         """One row of the totals."""
@@ -86,11 +105,12 @@ class Stage:
 
     def readout(self, key: str) -> np.ndarray:
         """A readout in its unit; nan where there is no answer. Raises KeyError for an unknown key."""
-        if key not in self._values:
+        values = self._worked.values
+        if key not in values:
             with np.errstate(invalid="ignore", divide="ignore", over="ignore"):
                 value = np.asarray(READOUTS[key].compute(self), float)
-            self._values[key] = np.where((self.problem == 0) & np.isfinite(value), value, np.nan)
-        return self._values[key]
+            values[key] = np.where((self.problem == 0) & np.isfinite(value), value, np.nan)
+        return values[key]
 
     def reasons(self, key: str | None = None) -> np.ndarray:
         """Why a point has no equilibrium, or with a readout's ``key`` no such value; "" where it has."""

@@ -78,7 +78,8 @@ def test_a_ph_without_reading_temperature_is_taken_at_the_water_temperature_and_
     """Nothing is assumed in silence."""
     notes = analysis_totals(granite, system).notes
     assert [note.text for note in notes if note.where == "ph"] == [
-        "reading temperature not given: 11 °C, that of the water, is used"
+        "reading temperature not given: 11 °C, that of the water, is used;"
+        " enter the one at which the pH was read"
     ]
 
 

@@ -25,6 +25,9 @@ CLOSING_IONS: dict[str, float] = {"sodium": 1.0, "chloride": -1.0}
 AGREEMENT: dict[str, float] = {"alkalinity": 0.05, "dic": 0.10, "co2": 0.20, "total_hardness": 0.05}
 """Relative difference beyond which a redundant entry contradicts the others (common practice)."""
 
+READING_TEMPERATURE = "reading_temperature"
+"""Key of the alarm for a pH that does not say at which temperature it was read."""
+
 _RANGES: dict[str, tuple[float, float, str]] = {
     "temperature": (0.0, 60.0, "0 to 60 °C"),
     "ph": (0.0, 14.0, "0 to 14"),
@@ -206,8 +209,11 @@ def _reading_temperature(pair: list[str], entries: Mapping[str, Measured], notes
                 return entries[key].read_at
             if key == "ph":
                 entered = f"{water.central:g} {water.unit}"
-                text = f"reading temperature not given: {entered}, that of the water, is used"
-                notes.append(Note("info", key, text))
+                text = (
+                    f"reading temperature not given: {entered}, that of the water, is used;"
+                    " enter the one at which the pH was read"
+                )
+                notes.append(Note("caution", key, text, READING_TEMPERATURE, "common practice"))
             break
     return float(find_unit(water.unit, "temperature").to_base(water.central))
 
