@@ -88,7 +88,6 @@ def equilibrium(recipe: dict[str, float], temperature: float) -> tuple[dict[str,
     def excess(strength: float) -> float:
         return 0.5 * charges**2 @ solve(strength) - strength
 
-    solve(strength := brentq(excess, 1e-9, 0.9, xtol=1e-16, rtol=1e-14))
-    concentrations = solve(strength)
+    concentrations = solve(brentq(excess, 1e-9, 0.9, xtol=1e-16, rtol=1e-14))
     activities = potential + conserved @ multipliers
     return dict(zip(names, concentrations, strict=True)), dict(zip(names, activities, strict=True))
