@@ -108,11 +108,9 @@ def _source(
     }
     try:
         if overrides:
-            worked, intake = (
-                None,
-                analysis_totals(
-                    dict(source.entries), plan.system, close_with=source.close_with, overrides=overrides
-                ),
+            worked = None
+            intake = analysis_totals(
+                dict(source.entries), plan.system, close_with=source.close_with, overrides=overrides
             )
         else:
             worked, intake = _intake(plan.system, source.entries, source.close_with)
