@@ -7,7 +7,17 @@ from explorer.chemistry import WeakAcid
 from explorer.scenario.chemicals import Acid, OwnChemical
 from explorer.scenario.entity import REQUIRED, Child, Children, Entity, Table
 from explorer.scenario.errors import join
-from explorer.scenario.fields import NAME_LENGTH, NOTE_LENGTH, TITLE_LENGTH, Flag, Id, Number, Text, Texts
+from explorer.scenario.fields import (
+    NAME_LENGTH,
+    NOTE_LENGTH,
+    TITLE_LENGTH,
+    Choice,
+    Flag,
+    Id,
+    Number,
+    Text,
+    Texts,
+)
 from explorer.scenario.quantity import Amount, Quantity
 from explorer.scenario.shares import WHOLE, in_service
 from explorer.scenario.steps import (
@@ -71,6 +81,18 @@ class Tolerance(Entity):
     plus = Number(None, bounds=(0, None), label="Up", doc="Width upwards, where the sides differ.")
     unit = Text(
         "", limit=NAME_LENGTH, label="Unit", doc="% of the value; the unit of the dial where not given."
+    )
+    distribution = Choice(
+        "uniform",
+        choices=("uniform", "normal"),
+        what="a distribution",
+        label="Distribution",
+        doc="Uniform between the ends, or normal with the ends at two standard deviations.",
+    )
+    shared = Text(
+        "",
+        label="Shared error",
+        doc="Dials with the same word here are off together, from one cause: a tank, a meter, a method.",
     )
 
     @property
