@@ -218,6 +218,12 @@ _ALL: tuple[Readout, ...] = (
         lambda stage: conductivity(stage.solution),
     ),
     _readout(
+        "conductivity_20", "Whole water", "Conductivity at 20 °C", "EC20", 0,
+        "The same referred to 20 °C, as European limits are.",
+        "McCleskey et al. 2012, Geochim. Cosmochim. Acta 77:369-382 (from memory); constants under Basis",
+        lambda stage: conductivity(stage.solution, at=20.0), unit=default_unit("conductivity"),
+    ),
+    _readout(
         "charge_balance", "Whole water", "Charge balance", "Balance", 1,
         "100 (cations − anions) / (cations + anions) in meq/L. A rest comes from the analysis; it stays out"
         " of the pH.", "common practice (Standard Methods 1030 E)",

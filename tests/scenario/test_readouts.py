@@ -66,6 +66,13 @@ def test_charge_balance_and_conductivity_of_the_well(well):
     assert value(well, "conductivity") == pytest.approx(782, rel=0.05)
 
 
+def test_conductivity_at_20_degrees_is_about_a_tenth_lower(well):
+    """2500 µS/cm at 20 °C are 2790 at 25 °C (EN 27888)."""
+    assert value(well, "conductivity") / value(well, "conductivity_20") == pytest.approx(
+        2790 / 2500, rel=0.01
+    )
+
+
 def test_langelier_and_ryznar_belong_together(well):
     """pHs from either is the same; Langelier is a little above the index that counts ion pairs."""
     ph, langelier = value(well, "ph"), value(well, "langelier_index")
