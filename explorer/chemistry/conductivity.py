@@ -2,10 +2,11 @@
 
 Sum of molal conductivities, each falling with the ionic strength: λ = λ°(t) − A(t) √I / (1 + B √I), with λ°
 and A quadratic in °C. McCleskey, Nordstrom, Ryan & Ball 2012, Geochim. Cosmochim. Acta 77:369 (method seen,
-coefficients from memory; λ° at 25 °C agrees with the CRC Handbook to 1 %, sums for single salts to 2–4 % to
-0.1 mol/L, magnesium and sulfate salts to 12 %). Ions without coefficients use the limiting conductivities
-of the CRC Handbook, the relative fall of sodium or sulfate, and 1.9 % per °C (Standard Methods 2510, from
-memory)."""
+coefficients from memory; λ° at 25 °C agrees with the CRC Handbook to 1 %, sums for single salts of
+chloride, nitrate and bicarbonate to 2–4 % up to 0.1 mol/L; sulfate salts come out about 10 % low at 0.01
+mol/L and 20 % low at 0.1 mol/L). Ions without coefficients use the limiting conductivities of the CRC
+Handbook, the relative fall of sodium or sulfate, and 1.9 % per °C (Standard Methods 2510, from memory).
+"""
 
 import numpy as np
 from numpy.typing import NDArray
