@@ -6,7 +6,7 @@ from typing import Any, ClassVar, Self
 import param
 
 from explorer.scenario.errors import ScenarioError, join, shown
-from explorer.scenario.fields import Field, Text, Value, check_keys, object_fault, text_fault
+from explorer.scenario.fields import Field, Text, Value, check_keys, list_fault, object_fault, text_fault
 from explorer.scenario.quantity import ordered
 
 OPTIONAL, REQUIRED = "optional", "required"
@@ -27,6 +27,7 @@ class Entity(param.Parameterized):
     """
 
     constants: ClassVar[Mapping[str, Any]] = {}
+    name = param.String("", constant=False, doc="Name shown everywhere.")
     named: ClassVar[str] = ""
     """Whether there is a ``name``: OPTIONAL, REQUIRED or "" for none."""
 
@@ -146,20 +147,14 @@ class Children(_Part):
 
     @property
     def allowed(self) -> str:
-        return f"a list of at most {self.most} objects"
+        return f"a list of {'1' if self.required else '0'} to {self.most} objects"
 
     def fault(self, value: Any) -> str:
-        if not isinstance(value, list):
-            return f"{shown(value)} is not a list; allowed {self.allowed}"
-        if len(value) > self.most:
-            return f"{len(value)} are too many; allowed {self.allowed}"
-        if not value and self.required:
-            return f"is empty; allowed {self.allowed}, one or more"
-        return ""
+        return list_fault(value, int(self.required), self.most, self.allowed)
 
     def read(self, raw: Any, path: str) -> list[Entity]:
-        items = super().read(raw, path)
-        return [self.item.from_dict(part, join(path, position)) for position, part in enumerate(items)]
+        parts = enumerate(self.accepted(raw, path))
+        return [self.item.from_dict(part, join(path, position)) for position, part in parts]
 
     def write(self, value: list[Entity]) -> list[dict[str, Any]]:
         return [part.to_dict() for part in value]
@@ -175,14 +170,14 @@ class Table(_Part):
 
     @property
     def allowed(self) -> str:
-        return "an object with one part a name"
+        return "an object with parts by name"
 
     def fault(self, value: Any) -> str:
         return object_fault(value)
 
     def read(self, raw: Any, path: str) -> dict[str, Entity]:
-        items = super().read(raw, path)
-        return {key: self.item.from_dict(part, join(path, _name(key, path))) for key, part in items.items()}
+        parts = self.accepted(raw, path).items()
+        return {key: self.item.from_dict(part, join(path, _name(key, path))) for key, part in parts}
 
     def write(self, value: dict[str, Entity]) -> dict[str, Any]:
         return {key: part.to_dict() for key, part in value.items()}

@@ -58,9 +58,29 @@ def listed(allowed: Iterable[str]) -> str:
     return ", ".join(allowed) or "none"
 
 
-def unknown(word: Any, what: str, allowed: Iterable[str]) -> str:
-    """Message for a word outside its list, with the word that was probably meant."""
+def unknown(word: Any, what: str, allowed: Iterable[str], similar: bool = True) -> str:
+    """Message for a word outside its list, with the word that was probably meant.
+
+    ``similar`` False guesses only where the spelling is the same but for case and raised digits: a unit that
+    merely looks alike may be the wrong one.
+    """
     allowed = tuple(allowed)
-    close = difflib.get_close_matches(word, allowed, n=1) if isinstance(word, str) else []
-    guess = f" (perhaps {close[0]})" if close else ""
-    return f"{shown(word)} is not {what}{guess}; allowed: {listed(allowed)}"
+    return f"{shown(word)} is not {what}{_guess(word, allowed, similar)}; allowed: {listed(allowed)}"
+
+
+def unknown_key(key: str, allowed: Iterable[str]) -> str:
+    """Message for a key that an object cannot have; the key itself stands in the path."""
+    allowed = tuple(allowed)
+    return f"not known here{_guess(key, allowed)}; allowed: {listed(allowed)}"
+
+
+def _guess(word: Any, allowed: tuple[str, ...], similar: bool = True) -> str:
+    if not isinstance(word, str):
+        return ""
+    same = [candidate for candidate in allowed if _plain(candidate) == _plain(word)]
+    close = same or (difflib.get_close_matches(word, allowed, n=1) if similar else [])
+    return f" (perhaps {close[0]})" if close else ""
+
+
+def _plain(word: str) -> str:
+    return unicodedata.normalize("NFKC", word).casefold().replace(" ", "")

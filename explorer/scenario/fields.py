@@ -22,7 +22,7 @@ from typing import Any
 
 import param
 
-from explorer.scenario.errors import ScenarioError, clipped, join, listed, shown, unknown
+from explorer.scenario.errors import ScenarioError, clipped, join, listed, shown, unknown, unknown_key
 
 LARGEST_NUMBER = 1e12
 """No quantity of the trade comes near it; keeps arithmetic finite whatever a file says."""
@@ -74,9 +74,13 @@ class Field:
 
     def read(self, raw: Any, path: str) -> Any:
         """Value from its JSON form at ``path``. Raises ScenarioError."""
+        return self.duplicate(self.accepted(raw, path))
+
+    def accepted(self, raw: Any, path: str) -> Any:
+        """``raw`` itself. Raises ScenarioError for its first fault."""
         for where, fault in self.faults(raw):
             raise ScenarioError(path + where, fault)
-        return self.duplicate(raw)
+        return raw
 
     def write(self, value: Any) -> Any:
         """JSON form of ``value``."""
@@ -134,16 +138,24 @@ class Number(Value):
     _slot_defaults = Value._slot_defaults | {"unit": "", "bounds": None, "step": None, "whole": False}
 
     @property
-    def allowed(self) -> str:
+    def each(self) -> str:
+        """What a single number may be, in words."""
         return ("whole numbers, " if self.whole else "") + span(self.bounds, self.unit)
 
-    def fault(self, value: Any) -> str:
-        if fault := number_fault(value, self.allowed):
+    @property
+    def allowed(self) -> str:
+        return self.each
+
+    def single_fault(self, value: Any) -> str:
+        """What is wrong with a single number."""
+        if fault := number_fault(value, self.each):
             return fault
         if self.whole and not isinstance(value, int):
-            return f"{shown(value)} is not a whole number; allowed {self.allowed}"
-        wrong = outside(value, self.bounds)
-        return f"{shown(value)} is out of range; allowed {self.allowed}" if wrong else ""
+            return f"{shown(value)} is not a whole number; allowed {self.each}"
+        return f"{shown(value)} is out of range; allowed {self.each}" if outside(value, self.bounds) else ""
+
+    def fault(self, value: Any) -> str:
+        return self.single_fault(value)
 
 
 class Numbers(Number):
@@ -151,40 +163,46 @@ class Numbers(Number):
 
     __slots__ = ["most"]
     _slot_defaults = Number._slot_defaults | {"most": 4}
+    fault = Field.fault
 
     @property
     def allowed(self) -> str:
-        return f"a list of 1 to {self.most} numbers, each {span(self.bounds, self.unit)}"
+        return f"a list of 1 to {self.most} numbers, each {self.each}"
 
     def faults(self, value: Any) -> Faults:
-        if not isinstance(value, list) or not 1 <= len(value) <= self.most:
-            yield "", f"{shown(value)} is not a list of numbers; allowed {self.allowed}"
+        if fault := list_fault(value, 1, self.most, self.allowed):
+            yield "", fault
             return
         for position, number in enumerate(value):
-            if fault := Number.fault(self, number):
+            if fault := self.single_fault(number):
                 yield f"[{position}]", fault
-
-    fault = Field.fault
 
 
 class Amounts(Number):
     """Numbers by name, each within the bounds."""
 
     __slots__ = []
+    fault = Field.fault
 
     @property
     def allowed(self) -> str:
-        return f"an object with numbers by name, each {span(self.bounds, self.unit)}"
+        return f"an object with numbers by name, each {self.each}"
 
     def faults(self, value: Any) -> Faults:
         if fault := object_fault(value):
             yield "", fault
             return
         for name, number in value.items():
-            if fault := Number.fault(self, number):
+            if fault := self.single_fault(number):
                 yield f".{clipped(name)}", fault
 
-    fault = Field.fault
+
+def list_fault(value: Any, least: int, most: int, allowed: str) -> str:
+    """What is wrong with something that must be a list of a certain length."""
+    if not isinstance(value, list):
+        return f"{shown(value)} is not a list; allowed {allowed}"
+    count = f"{len(value)} part" + "s" * (len(value) != 1)
+    return "" if least <= len(value) <= most else f"the list has {count}; allowed {allowed}"
 
 
 def text_fault(value: Any, limit: int, lines: bool = False) -> str:
@@ -239,24 +257,23 @@ class Texts(Value):
 
     __slots__ = ["limit", "most", "names"]
     _slot_defaults = Value._slot_defaults | {"limit": NAME_LENGTH, "most": 12, "names": False}
+    fault = Field.fault
 
     @property
     def allowed(self) -> str:
-        return f"a list of {self.names:d} to {self.most} {'different names' if self.names else 'texts'}"
+        return f"a list of 1 to {self.most} names" if self.names else f"a list of at most {self.most} texts"
 
     def faults(self, value: Any) -> Faults:
-        if not isinstance(value, list) or not self.names <= len(value) <= self.most:
-            yield "", f"{shown(value)} is not a list as needed; allowed {self.allowed}"
+        if fault := list_fault(value, int(self.names), self.most, self.allowed):
+            yield "", fault
             return
         for position, text in enumerate(value):
             if fault := text_fault(text, self.limit):
                 yield f"[{position}]", fault
             elif not text.strip():
-                yield f"[{position}]", f"is empty; allowed {self.allowed}"
+                yield f"[{position}]", f"is empty; allowed text of at most {self.limit} characters"
             elif self.names and text in value[:position]:
-                yield f"[{position}]", f"{shown(text)} is there twice; allowed {self.allowed}"
-
-    fault = Field.fault
+                yield f"[{position}]", f"{shown(text)} is there twice; allowed once"
 
 
 class Flag(Value):
@@ -270,7 +287,11 @@ class Flag(Value):
         return "true or false"
 
     def fault(self, value: Any) -> str:
-        return "" if isinstance(value, bool) else f"{shown(value)} is not a yes or no; allowed {self.allowed}"
+        return (
+            ""
+            if isinstance(value, bool)
+            else f"{shown(value)} is neither true nor false; allowed {self.allowed}"
+        )
 
 
 class Choice(Value):
@@ -283,27 +304,34 @@ class Choice(Value):
     def allowed(self) -> str:
         return listed(self.choices)
 
-    def fault(self, value: Any) -> str:
+    def single_fault(self, value: Any) -> str:
+        """What is wrong with a single word."""
         known = isinstance(value, str) and value in self.choices
         return "" if known else unknown(value, self.what, self.choices)
+
+    def fault(self, value: Any) -> str:
+        return self.single_fault(value)
 
 
 class Choices(Choice):
     """A list of different words of a list."""
 
     __slots__ = []
+    fault = Field.fault
+
+    @property
+    def allowed(self) -> str:
+        return f"a list of {listed(self.choices)}"
 
     def faults(self, value: Any) -> Faults:
-        if not isinstance(value, list):
-            yield "", f"{shown(value)} is not a list; allowed a list of {self.allowed}"
+        if fault := list_fault(value, 0, len(self.choices), self.allowed):
+            yield "", fault
             return
         for position, word in enumerate(value):
-            if fault := Choice.fault(self, word):
+            if fault := self.single_fault(word):
                 yield f"[{position}]", fault
             elif word in value[:position]:
                 yield f"[{position}]", f"{shown(word)} is there twice; allowed once"
-
-    fault = Field.fault
 
 
 def object_fault(value: Any) -> str:
@@ -318,4 +346,4 @@ def check_keys(raw: Mapping[str, Any], allowed: Iterable[str], path: str) -> Non
     allowed = tuple(allowed)
     for key in raw:
         if key not in allowed:
-            raise ScenarioError(join(path, key), unknown(key, "a known key here", allowed))
+            raise ScenarioError(join(path, key), unknown_key(key, allowed))

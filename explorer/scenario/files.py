@@ -134,7 +134,7 @@ def _whole(digits: str) -> int | float:
 
 def _repeated_keys(raw: Any) -> Iterator[tuple[str, str]]:
     """Objects with a repeated key, by path and key. Raises ScenarioError when the text is too deep."""
-    waiting = [("", raw, 1)]
+    waiting = [("", raw, 1)] if isinstance(raw, dict | list) else []
     while waiting:
         path, value, depth = waiting.pop()
         if depth > DEEPEST:

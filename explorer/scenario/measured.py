@@ -43,7 +43,7 @@ ENTRY_RULES: dict[str, EntryRule] = {
     # An acid water has negative alkalinity.
     "alkalinity": EntryRule("Alkalinity", (None, None)),
     "dic": EntryRule("Dissolved inorganic carbon"),
-    "co2": EntryRule("Carbon dioxide"),
+    "co2": EntryRule("Carbon dioxide", read_at=True),
     "toc": EntryRule("Total organic carbon"),
     "tds": EntryRule("Total dissolved solids"),
     "conductivity": EntryRule("Conductivity", read_at=True),
@@ -100,19 +100,23 @@ def entry_faults(
     units = acid_units or units_for(key)
     if measured.unit not in units:
         missing = f"missing; allowed: {listed(units)}"
-        yield "unit", unknown(measured.unit, "a unit here", units) if measured.unit else missing
+        yield (
+            "unit",
+            unknown(measured.unit, "a unit here", units, similar=False) if measured.unit else missing,
+        )
         return
     for part in ("value", "below"):
         number = getattr(measured, part)
         base = number if number is None or acid_units else float(to_base(number, measured.unit, key))
         if base is not None and outside(base, rule.bounds):
             allowed = span(rule.bounds, default_unit(key) if any(rule.bounds) else "")
-            yield part, f"{shown(number)} {rule.wrong}; allowed {allowed}"
+            entered = f"{shown(number)} {measured.unit}".strip()
+            yield part, f"{entered} {rule.wrong}; allowed {allowed}"
     if measured.below is not None and not rule.non_detect:
         yield "below", f"{rule.label} cannot be below a limit of detection; allowed a value"
     if measured.read_at is not None and not rule.read_at:
         readers = (name for name, entry in ENTRY_RULES.items() if entry.read_at)
-        yield "read_at", f"{rule.label} has no reading temperature; allowed for {' and '.join(readers)}"
+        yield "read_at", f"{rule.label} has no reading temperature; allowed for: {listed(readers)}"
 
 
 def write_measured(measured: Measured, written: Iterable[str] = ()) -> dict[str, Any]:

@@ -33,7 +33,11 @@ def unit_fault(unit: Any, quantity: str) -> str:
     if quantity == DOSE:
         return text_fault(unit, UNIT_LENGTH)
     allowed = units_for(quantity)
-    return "" if isinstance(unit, str) and unit in allowed else unknown(unit, "a unit here", allowed)
+    return (
+        ""
+        if isinstance(unit, str) and unit in allowed
+        else unknown(unit, "a unit here", allowed, similar=False)
+    )
 
 
 class Amount(Value):
@@ -65,11 +69,13 @@ class Amount(Value):
         if fault or self.bounds is None:
             return fault
         base = value if self.quantity == DOSE else float(to_base(value, unit, self.quantity))
-        return f"{shown(value)} is out of range; allowed {allowed}" if outside(base, self.bounds) else ""
+        return (
+            f"{shown(value)} {unit} is out of range; allowed {allowed}" if outside(base, self.bounds) else ""
+        )
 
     def fault(self, value: Any) -> str:
         if not isinstance(value, Quantity):
-            return f"{type(value).__name__} is not a value with a unit; allowed {self.allowed}"
+            return f"{shown(value)} is not a value with a unit; allowed {self.allowed}"
         return unit_fault(value.unit, self.quantity) or self.value_fault(value.value, value.unit)
 
     def read(self, raw: Any, path: str) -> Quantity:

@@ -16,7 +16,7 @@ from explorer.scenario.model import FORMAT, VERSION, Scenario, SweepSetting
 from explorer.scenario.quantity import Quantity
 from explorer.scenario.readouts import READOUTS
 from explorer.scenario.shares import TOLERANCE, WHOLE
-from explorer.scenario.steps import DoseStep, SettleStep, Step
+from explorer.scenario.steps import DoseStep, SettleStep, SideStreamStep, Step
 from explorer.scenario.water import Analysis, Water
 from explorer.treatment.analysis import ANALYSIS_KEYS, CARBONATE_KEYS
 from explorer.treatment.catalogue import SETTINGS
@@ -77,11 +77,16 @@ def _acids(scenario: Scenario) -> Faults:
         if list(acid.pka) != sorted(acid.pka):
             yield f"{path}.pka", "the values fall; allowed in rising order, the strongest acid first"
         if acid.enthalpy_kj is not None and len(acid.enthalpy_kj) != len(acid.pka):
-            yield f"{path}.enthalpy_kj", f"{len(acid.enthalpy_kj)} values are given; allowed one for each pKa"
+            yield (
+                f"{path}.enthalpy_kj",
+                f"{len(acid.enthalpy_kj)} for {len(acid.pka)} pKa values; allowed one for each",
+            )
 
 
 def _chemicals(scenario: Scenario) -> Faults:
     for position, own in enumerate(scenario.chemicals):
+        if own.like is not None and own.like not in CATALOGUE:
+            yield f"chemicals[{position}].like", unknown(own.like, "a chemical of the catalogue", CATALOGUE)
         try:
             own.chemical(scenario.acids)
         except ChemicalError as error:
@@ -109,14 +114,11 @@ def _shares(scenario: Scenario) -> Faults:
     for position, water in waters:
         path = f"waters[{position}]"
         if getattr(water, other) is not None:
-            yield (
-                f"{path}.{other}",
-                f"a {other} stands beside shares or flows; allowed shares or flows, not both",
-            )
+            yield f"{path}.{other}", f"a {other} stands among {given}s; allowed {given}s for all waters"
         if getattr(water, given) is None:
             yield f"{path}.{given}", f"missing; allowed {Water.fields()[given].allowed}"
     if by_flow and scenario.flow is not None:
-        yield "flow", "the waters have flows of their own; allowed flows of the waters or a total, not both"
+        yield "flow", "the waters have flows of their own; allowed a total only beside shares"
     total = sum(water.share or 0 for _, water in waters)
     if not by_flow and abs(total - WHOLE) > TOLERANCE:
         yield "waters", f"the shares add to {total:.10g} %; allowed {WHOLE:g} %"
@@ -156,7 +158,9 @@ def _analysis(analysis: Analysis, acid_units: dict[str, tuple[str, ...]]) -> Fau
 def _steps(scenario: Scenario) -> Faults:
     chemicals = scenario.known_chemicals()
     for path, step in scenario.steps():
-        if path.count(".train") > SIDE_STREAM_DEPTH + path.startswith("waters"):
+        # The train of a water is a level of the path, but not of side streams.
+        depth = path.count(".train") + isinstance(step, SideStreamStep) - path.startswith("waters")
+        if depth > SIDE_STREAM_DEPTH:
             yield path, f"side streams stand too deep in each other; allowed {SIDE_STREAM_DEPTH} levels"
         rules = (rule for kind, rule in _STEP_RULES.items() if isinstance(step, kind))
         for where, message in (fault for rule in rules for fault in rule(step, chemicals)):
@@ -187,7 +191,10 @@ def _dose(step: DoseStep, chemicals: dict[str, Chemical]) -> Faults:
             yield "hold.readout", unknown(step.hold.readout, "a readout", READOUTS)
     for path, dose in doses.items():
         if dose is not None and dose.unit not in chemical.units:
-            yield f"{path}.unit", unknown(dose.unit, f"a unit of {chemical.name.lower()}", chemical.units)
+            yield (
+                f"{path}.unit",
+                unknown(dose.unit, f"a unit of {chemical.name.lower()}", chemical.units, False),
+            )
     setting = SETTINGS.get(step.chemical)
     for name in ("basicity", "ratio"):
         value = getattr(step, name)
@@ -237,7 +244,7 @@ def _dials(scenario: Scenario) -> Faults:
         unit = known[address].unit if address in known else "%"
         if tolerance.unit not in ("", "%", unit):
             allowed = filter(None, dict.fromkeys((unit, "%")))
-            yield f"{path}.unit", unknown(tolerance.unit, "a unit here", allowed)
+            yield f"{path}.unit", unknown(tolerance.unit, "a unit here", allowed, similar=False)
     if scenario.sweep is not None:
         yield from _sweep(scenario.sweep, known)
 

@@ -99,10 +99,10 @@ class DoseStep(Step):
     )
     price = Number(
         None,
-        unit="per kg of product",
+        unit="per kg",
         bounds=(0, None),
         label="Price",
-        doc="In the currency of the scenario.",
+        doc="Of a kilogram of product, in the currency of the scenario.",
     )
 
 

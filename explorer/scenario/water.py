@@ -3,7 +3,7 @@
 from typing import Any, Self
 
 from explorer.scenario.entity import OPTIONAL, Children, Entity, Table
-from explorer.scenario.errors import ScenarioError, join
+from explorer.scenario.errors import ScenarioError, join, shown
 from explorer.scenario.fields import (
     NOTE_LENGTH,
     TITLE_LENGTH,
@@ -31,9 +31,13 @@ class _Entries(Value):
 
     __slots__ = []
 
+    @property
+    def allowed(self) -> str:
+        return "measured entries by analysis key"
+
     def fault(self, value: Any) -> str:
         measured = isinstance(value, dict) and all(isinstance(entry, Measured) for entry in value.values())
-        return "" if measured else "an analysis holds Measured entries by key"
+        return "" if measured else f"{shown(value)} is something else; allowed {self.allowed}"
 
 
 class _Provenance(Value):
