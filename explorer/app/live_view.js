@@ -5,19 +5,22 @@ const TAGS = new Set(["div", "section", "span", "p", "h2", "h3", "h4", "ol", "ul
   "select", "option", "optgroup", "table", "colgroup", "col", "thead", "tbody", "tr", "th", "td", "strong", "small", "details", "summary"])
 const ATTRIBUTE = /^(class|id|title|type|role|tabindex|placeholder|min|max|step|disabled|hidden|list|for|label|selected|scope|colspan|autocomplete|inputmode|maxlength|size|autofocus|popover|popovertarget|aria-[a-z]+|data-[a-z]+)$/
 
+const PATIENCE_MS = 1000   // an unanswered report holds back the next no longer than this
+
 export function render({ model, el }) {
   const view = document.createElement("div")
   view.className = "live-view"
   let order = []      // elements in reading order: a patch addresses them by position
-  let sent = 0, heard = 0   // number of the last report, and of the last that Python had heard when it answered
+  let sent = 0, heard = 0, sentAt = 0   // number of the last report, and of the last that Python had heard when it answered
 
   const scope = () => view.getRootNode()
   const tell = (element, value) => {
     element._report = ++sent
+    sentAt = performance.now()
     model.send_msg({ key: element._key, value: value ?? null, number: sent })
   }
 
-  const waiting = new Map()   // slider -> newest value, sent once a frame
+  const waiting = new Map()   // slider -> newest value, not sent yet
 
   // ---- tree -> page ------------------------------------------------------------------------------
 
@@ -132,6 +135,7 @@ export function render({ model, el }) {
       }
       finish(element)
     }
+    if (waiting.size) requestAnimationFrame(flush)
   }
 
   // ---- page -> Python ----------------------------------------------------------------------------
@@ -141,12 +145,22 @@ export function render({ model, el }) {
     if (element.hasAttribute("data-filter")) return filter(element)
     if (element.type !== "range") return
     paint(element)
-    if (!waiting.has(element)) requestAnimationFrame(() => {
-      tell(element, Number(waiting.get(element)))
-      waiting.delete(element)
-    })
     waiting.set(element, element.value)
+    requestAnimationFrame(flush)
   })
+
+  // One position at a time is under way: the next leaves when the last is answered, so a busy page or server
+  // never builds up a queue, and a drag ends where the handle is let go.
+  function flush() {
+    if (heard < sent && performance.now() - sentAt < PATIENCE_MS) {
+      if (waiting.size) setTimeout(flush, PATIENCE_MS)
+      return
+    }
+    for (const [element, value] of waiting) {
+      waiting.delete(element)
+      tell(element, Number(value))
+    }
+  }
   view.addEventListener("change", (event) => {
     const element = event.target
     if (!element.hasAttribute("data-on") || element.type === "range") return

@@ -7,6 +7,8 @@ import pytest
 pytest.importorskip("playwright.sync_api")
 from playwright.sync_api import Locator, Page, expect
 
+expect.set_options(timeout=15_000)
+
 pytestmark = pytest.mark.browser
 
 
@@ -126,8 +128,7 @@ def test_adding_turning_and_removing_a_dose(page: Page) -> None:
     expect(finished).not_to_have_text(before)
     choose(page, "Sodium hydroxide", "Remove")
     expect(step(page, "Sodium hydroxide")).to_have_count(0)
-    page.wait_for_timeout(300)
-    assert finished.inner_text() == before
+    expect(finished).to_have_text(before, use_inner_text=True)
 
 
 def test_search_in_the_list_of_steps(page: Page) -> None:
