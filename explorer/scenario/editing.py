@@ -16,6 +16,7 @@ from explorer.scenario.dials import dials, neat
 from explorer.scenario.errors import ScenarioError, shown, unknown
 from explorer.scenario.fields import NAME_LENGTH
 from explorer.scenario.model import Measured, Option, Quantity, Scenario, SideStreamStep, Step, Water
+from explorer.scenario.observed_rule import known_dials, misfits
 from explorer.scenario.rules import RESERVED_IDS
 from explorer.scenario.shares import WHOLE, in_service
 from explorer.scenario.steps import STEP_KINDS, DoseStep
@@ -290,12 +291,14 @@ def take_option(scenario: Scenario, name: str) -> Scenario:
 
 
 def tidy(scenario: Scenario) -> None:
-    """Drop the tolerances and the sweep of dials that are no longer there."""
+    """Drop the tolerances, the sweep and the measured points of what is no longer there."""
     known = {f"waters.{water.id}.share" for water in scenario.waters if water.share is not None}
     known = known.union(*(dials(scenario, season) for season in scenario.seasons))
     scenario.tolerances = {address: part for address, part in scenario.tolerances.items() if address in known}
     if scenario.sweep is not None and scenario.sweep.dial not in known:
         scenario.sweep = None
+    there = known_dials(scenario) if scenario.measured else {}
+    scenario.measured = [part for part in scenario.measured if not any(misfits(scenario, part, there))]
 
 
 def _water(scenario: Scenario, water_id: str) -> Water:

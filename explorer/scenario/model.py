@@ -18,6 +18,7 @@ from explorer.scenario.fields import (
     Text,
     Texts,
 )
+from explorer.scenario.observed import MeasuredPoints
 from explorer.scenario.quantity import Amount, Quantity
 from explorer.scenario.shares import WHOLE, in_service
 from explorer.scenario.steps import (
@@ -47,6 +48,7 @@ __all__ = [
     "Hold",
     "LimestoneStep",
     "Measured",
+    "MeasuredPoints",
     "Option",
     "OwnChemical",
     "Quantity",
@@ -156,8 +158,12 @@ class Scenario(Entity):
         doc="Acid groups of the organic carbon (Oliver, Thurman & Malcolm 1983).",
     )
     currency = Text("", label="Currency", doc="Of prices and costs.")
+    price_date = Text("", label="Prices of", doc="When the prices held.")
     acids = Children([], item=Acid, label="Own acids", doc="Weak acids beyond those built in.")
     chemicals = Children([], item=OwnChemical, label="Own chemicals", doc="Chemicals beyond the catalogue.")
+    measured = Children(
+        [], item=MeasuredPoints, label="Measured points", doc="Bench or plant data to compare with."
+    )
     options = Children([], item=Option, label="Options", doc="Kept copies for comparison.")
 
     @classmethod

@@ -20,6 +20,7 @@ from explorer.treatment.catalogue import COMMON_PRACTICE, ENTRIES, MEMORY, SETTI
 from explorer.treatment.units import UnitError
 
 PRODUCT = "mg/L as product"
+EQUIVALENTS = "meq/L"
 
 _FIELDS = {
     "name", "formula", "molar_mass", "adds", "plain", "counted_as", "default_unit", "strength", "density",
@@ -89,7 +90,7 @@ def chemical_from_dict(
     units = {"mg/L": 1 / plain_mass} | {unit: 1 / mass for unit, mass in masses.items()}
     units |= {"mmol/L": 1e-3, "mol/L": 1.0}
     if "CaCO3" in counted:
-        units["meq/L"] = 1e-3 / (2 * counted["CaCO3"])
+        units[EQUIVALENTS] = 1e-3 / (2 * counted["CaCO3"])
     strength = data.get("strength")
     if strength is not None:
         strength = _number(strength, "strength", 0, 100)
@@ -155,6 +156,21 @@ def _moles_per_unit(chemical: Chemical, unit: str, strength: ArrayLike | None) -
         return chemical.units[unit]
     except KeyError:
         raise UnitError(unit, f"a dose of {chemical.name.lower()}", tuple(chemical.units)) from None
+
+
+def titration_units(chemical: Chemical) -> tuple[str, ...]:
+    """Units in which a chemical may be titrated: those of a dose, and meq/L of its alkalinity."""
+    units = tuple(chemical.units)
+    return units if EQUIVALENTS in units or not chemical.totals.get("alkalinity") else (*units, EQUIVALENTS)
+
+
+def titrant_moles(chemical: Chemical, value: ArrayLike, unit: str) -> np.ndarray:
+    """Dose in mol/L from one in a unit of :func:`titration_units`; any shape. Raises UnitError."""
+    if unit not in titration_units(chemical):
+        raise UnitError(unit, f"a titration with {chemical.name.lower()}", titration_units(chemical))
+    if unit in chemical.units:
+        return dose_moles(chemical, value, unit)
+    return np.asarray(value, float) * 1e-3 / abs(chemical.totals["alkalinity"])
 
 
 def density(chemical: Chemical, strength: ArrayLike | None = None) -> np.ndarray:
