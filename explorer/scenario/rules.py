@@ -13,6 +13,7 @@ from explorer.scenario.errors import ScenarioError, join, listed, shown, unknown
 from explorer.scenario.fields import Faults, object_fault, outside, span
 from explorer.scenario.measured import entry_faults
 from explorer.scenario.model import FORMAT, VERSION, Scenario, SweepSetting
+from explorer.scenario.observed_rule import measured_points
 from explorer.scenario.quantity import Quantity
 from explorer.scenario.readouts import READOUTS
 from explorer.scenario.shares import TOLERANCE, WHOLE
@@ -283,5 +284,6 @@ RULES: tuple[Callable[[Scenario], Faults], ...] = (
     _steps,
     _targets,
     _dials,
+    measured_points,
     _options,
 )
