@@ -174,6 +174,7 @@ def test_analysis_value_non_detect_and_unit(page: Page) -> None:
 def test_renaming_with_a_hostile_name(page: Page) -> None:
     """The name field has the focus; markup in a name is shown as written and runs nothing."""
     choose(page, "Granite Wellfield", "Rename")
+    expect(page.get_by_role("textbox", name="Name", exact=True)).to_be_focused()
     page.keyboard.press("Control+A")
     page.keyboard.type(HOSTILE)
     page.keyboard.press("Enter")
