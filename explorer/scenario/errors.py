@@ -31,7 +31,7 @@ def join(path: str, key: str | int) -> str:
 
 def cleaned(text: str) -> str:
     """A foreign text without characters that cannot be seen."""
-    return "".join("\ufffd" if unicodedata.category(character)[0] == "C" else character for character in text)
+    return "".join(character if character.isprintable() else "\ufffd" for character in text)
 
 
 def clipped(text: str) -> str:

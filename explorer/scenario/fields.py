@@ -32,6 +32,7 @@ NAME_LENGTH, TITLE_LENGTH, NOTE_LENGTH = 80, 200, 20_000
 Bounds = tuple[float | None, float | None] | None
 
 _OVERRIDING_DIRECTION = frozenset("\u202a\u202b\u202c\u202d\u202e\u2066\u2067\u2068\u2069")
+_HIDDEN = ("Cc", "Cs", "Zl", "Zp")  # control characters, halves of characters, line and paragraph ends
 _ID = re.compile(r"[a-z][a-z0-9_-]*")
 
 
@@ -214,7 +215,7 @@ def text_fault(value: Any, limit: int, lines: bool = False) -> str:
         return f"{len(value)} characters are too many; allowed {allowed}"
     spacing = "\n\r\t" if lines else ""
     for character in value:
-        hidden = unicodedata.category(character) in ("Cc", "Cs") and character not in spacing
+        hidden = unicodedata.category(character) in _HIDDEN and character not in spacing
         if hidden or character in _OVERRIDING_DIRECTION:
             return f"contains the hidden character U+{ord(character):04X}; allowed {allowed} that can be seen"
     return ""

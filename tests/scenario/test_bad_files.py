@@ -1,13 +1,17 @@
 """What a scenario file must not say: every sentence a user may meet, with the path of the field."""
 
 import json
+from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
 
 from explorer.scenario.errors import ScenarioError
 from explorer.scenario.files import DEEPEST, LARGEST_FILE, read_scenario
+from explorer.scenario.model import Scenario
 
 HERE = Path(__file__).parent
 EVERYTHING = (HERE / "saved" / "version_1.json").read_text(encoding="utf-8")
@@ -50,6 +54,43 @@ def test_one_wrong_field_is_named_in_one_sentence_that_says_what_is_allowed(case
     assert told.startswith(case["told"])
     assert "\n" not in told and "Traceback" not in told
     assert any(word in told for word in ("allowed", "say what", "perhaps", "cannot be read as a formula"))
+
+
+def places(raw: Any, where: str = "") -> Iterator[str]:
+    """Every place of a JSON value, parts joined by "/"."""
+    parts = raw.items() if isinstance(raw, dict) else enumerate(raw) if isinstance(raw, list) else ()
+    for key, part in parts:
+        yield f"{where}{key}"
+        yield from places(part, f"{where}{key}/")
+
+
+JSON_VALUES = st.recursive(
+    st.none() | st.booleans() | st.integers() | st.floats() | st.text(st.characters(), max_size=8),
+    lambda parts: st.lists(parts, max_size=3) | st.dictionaries(st.text(max_size=8), parts, max_size=3),
+    max_leaves=6,
+)
+
+
+@settings(max_examples=300, deadline=None)
+@given(where=st.sampled_from(sorted(places(json.loads(EVERYTHING)))), value=JSON_VALUES | st.just(MISSING))
+def test_anything_anywhere_is_either_taken_or_refused_in_one_sentence(where: str, value: Any) -> None:
+    """No other error can come of a file, and what is taken is written again as it was."""
+    text = changed(where, value)
+    try:
+        scenario = read_scenario(text)
+    except ScenarioError as refusal:
+        assert str(refusal).isprintable()
+    else:
+        assert json.dumps(scenario.to_dict()) == text
+
+
+def test_a_refusal_leaves_the_source_as_it_was() -> None:
+    """What was read halfway has changed nothing."""
+    raw = json.loads(changed("sweep/dial", "nothing"))
+    before = json.dumps(raw)
+    with pytest.raises(ScenarioError):
+        Scenario.from_dict(raw)
+    assert json.dumps(raw) == before
 
 
 def test_the_file_behind_the_wrong_fields_is_itself_right() -> None:

@@ -19,7 +19,7 @@ from explorer.treatment.units import from_base, units_for
 
 IDS = st.from_regex(r"[a-z][a-z0-9_-]{0,8}", fullmatch=True)
 SEEN = st.characters(
-    exclude_categories=("Cc", "Cs"),
+    exclude_categories=("Cc", "Cs", "Zl", "Zp"),
     exclude_characters="\u202a\u202b\u202c\u202d\u202e\u2066\u2067\u2068\u2069",
 )
 
