@@ -111,6 +111,9 @@ DASHES: tuple[list[int], ...] = (
 """Dash of the n-th line of a plot, in pixels on and off; [] is solid."""
 
 LINE_WIDTH = 2.2
+POINTER = "#7f8f93"
+"""Line under the pointer, in both palettes."""
+
 CROSSING_MARKER = "diamond"
 POINT_MARKER = "circle"
 
@@ -200,7 +203,6 @@ def bokeh_theme(palette: Palette) -> Theme:
             "axis_label_standoff": 3,
         },
         "Grid": {"grid_line_color": palette.grid},
-        "CrosshairTool": {"line_color": palette.soft, "line_alpha": 0.5},
     }
     return Theme(json={"attrs": attrs})
 

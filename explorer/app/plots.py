@@ -34,6 +34,7 @@ from explorer.app.look import (
     LIGHT,
     LINE_WIDTH,
     POINT_MARKER,
+    POINTER,
     Palette,
 )
 from explorer.app.pictures import Axis, Picture
@@ -59,6 +60,13 @@ def _in_page(**columns: list[Any]) -> ColumnDataSource:
     source = ColumnDataSource(data=columns)
     source.syncable = False
     return source
+
+
+def _pointer_line(dimension: str, alpha: float) -> Span:
+    """Line that follows the pointer; its place does not travel either, so its colour suits both palettes."""
+    line = Span(dimension=dimension, line_width=1, line_color=POINTER, line_alpha=alpha)
+    line.syncable = False
+    return line
 
 
 class LinePlot:
@@ -210,7 +218,7 @@ class LinePlot:
             border_radius=3,
             level="overlay",
         )
-        fig.add_tools(CrosshairTool(overlay=[cross, Span(dimension="width", line_alpha=0)]))
+        fig.add_tools(CrosshairTool(overlay=[cross, _pointer_line("width", 0.0)]))
         return fig
 
     # ---- drawing -------------------------------------------------------------------------------------
@@ -321,8 +329,7 @@ class LinkedPlots:
             line_dash=[2, 3],
             level="annotation",
         )
-        cross = Span(dimension="height", line_width=1, line_alpha=0.6)
-        self.cross = cross
+        cross = _pointer_line("height", 0.6)
         self.plots = {
             name: LinePlot(
                 name, self.x_range, self.point, cross, labels_right=index % 2 == 1, x_label=index >= 2
@@ -387,7 +394,6 @@ class LinkedPlots:
     def restyle(self, palette: Palette) -> None:
         """Take the colours of another palette."""
         self.point.line_color = palette.ink
-        self.cross.line_color = palette.soft
         for plot in self.plots.values():
             plot.restyle(palette)
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import socket
 from collections.abc import Callable
 from pathlib import Path
 from typing import Any
@@ -56,7 +57,7 @@ def serve(
     settings
         Passed on to ``panel.serve`` (tests use ``threaded`` and ``server_id``).
     """
-    chosen = port or _free_port(address)
+    chosen = port or free_port(address)
     pn.extension()
     return pn.serve(
         {"/": guarded(create_app(path), lambda: chosen, address)},
@@ -70,9 +71,8 @@ def serve(
     )
 
 
-def _free_port(address: str) -> int:
-    import socket
-
+def free_port(address: str = "127.0.0.1") -> int:
+    """A port nobody listens on just now."""
     with socket.socket() as probe:
         probe.bind((address, 0))
         return int(probe.getsockname()[1])

@@ -28,6 +28,7 @@ import param
 from explorer.app.calculation import Immediate, Results, Runner, solve
 from explorer.app.history import MOST_STEPS, Step, Work
 from explorer.scenario.dials import Dial, dials, get_value, turn
+from explorer.scenario.editing import tidy
 from explorer.scenario.evaluate import Outcome
 from explorer.scenario.model import Scenario, SweepSetting
 
@@ -154,7 +155,7 @@ class Session(param.Parameterized):
         try:
             draft = self.scenario.copy()
             change(draft)
-            _mend_sweep(draft)
+            tidy(draft)
             draft = Scenario.from_dict(draft.to_dict())
         except ValueError as error:
             return str(error)
@@ -175,10 +176,18 @@ class Session(param.Parameterized):
         return self.edit(f"Season {name}", change)
 
     def set_sweep(self, **plan: Any) -> str:
-        """Change the sweep: any of ``dial``, ``start``, ``stop``, ``points``."""
+        """Change the sweep: any of ``dial``, ``start``, ``stop``, ``points``; the rest stays as it is."""
 
         def change(scenario: Scenario) -> None:
             kept = {} if scenario.sweep is None else scenario.sweep.to_dict()
+            if not kept and self.swept is not None:
+                x = self.swept.x
+                kept = {
+                    "dial": self.swept.address,
+                    "start": float(x[0]),
+                    "stop": float(x[-1]),
+                    "points": len(x),
+                }
             scenario.sweep = SweepSetting.from_dict({**kept, **plan}, "sweep")
 
         return self.edit("Sweep", change, key="sweep", rebuild=False)
@@ -291,17 +300,3 @@ class Session(param.Parameterized):
             can_undo=bool(self.work.past),
             can_redo=bool(self.work.future),
         )
-
-
-def _mend_sweep(scenario: Scenario) -> None:
-    """Point the sweep at a dial that exists: a removed water or step takes its dials with it."""
-    available = dials(scenario)
-    if scenario.sweep is not None and scenario.sweep.dial in available:
-        return
-    share = next((dial for address, dial in available.items() if address.endswith(".share")), None)
-    dial = share or next(iter(available.values()), None)
-    if dial is None:
-        scenario.sweep = None
-        return
-    stop = dial.high if dial.high is not None else max(2 * dial.value, dial.low + 100 * dial.step)
-    scenario.sweep = SweepSetting(dial=dial.address, start=dial.low, stop=stop)

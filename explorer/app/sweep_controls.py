@@ -43,6 +43,10 @@ def gap_words(swept: Sweep | None) -> str:
     return f"▲ No result {place}{' ' if unit else ''}{unit}: {plain(first.reason, 120)}{more}"
 
 
+def _range_of(swept: Sweep | None) -> tuple[str, float, float]:
+    return ("", 0.0, 0.0) if swept is None else (swept.address, float(swept.x[0]), float(swept.x[-1]))
+
+
 class SweepControls(LiveView):
     """Changes the sweep of the scenario."""
 
@@ -51,7 +55,7 @@ class SweepControls(LiveView):
     def __init__(self, session: Session, **settings: Any) -> None:
         self.session = session
         self.entries = Entries()
-        self._gap = ""
+        self._shown = (gap_words(session.swept), *_range_of(session.swept))
         super().__init__(sizing_mode="stretch_width", **settings)
         session.param.watch(self._changed, ["structure", "scenario", "swept"])
         self.refresh()
@@ -62,23 +66,26 @@ class SweepControls(LiveView):
             node("div", "group", node("span", text="Sweep"), *self._dial()),
             *self._range(),
             node("span", text=self._rule()),
-            node("span", "gap", text=self._gap, role="status"),
+            node("span", "gap", text=self._shown[0], role="status"),
         )  # fmt: skip
 
     # ---- the dial on x and its range -----------------------------------------------------------------
 
     def _dial(self) -> list[Node]:
-        sweep = self.session.scenario.sweep
         dials = self.session.dials
         groups: dict[str, list[Choice]] = {}
         for dial in dials.values():
             groups.setdefault(plain(dial.group, 60), []).append(
                 Choice(dial.address, plain(dial.label, 90), unit_text(dial.unit), dial.address)
             )
-        chosen = dials.get(sweep.dial) if sweep is not None else None
+        chosen = self._swept_dial()
         label = plain(chosen.label, 60) if chosen else "Choose a dial"
         return picker("dial", f"{label} ▾", groups, self._choose_dial, look="button", hint="Search dials",
                       title="The dial along the x axis")  # fmt: skip
+
+    def _swept_dial(self) -> Dial | None:
+        swept = self.session.swept
+        return None if swept is None else self.session.dials.get(swept.address)
 
     def _choose_dial(self, address: str) -> None:
         dial = self.session.dials.get(address)
@@ -88,13 +95,12 @@ class SweepControls(LiveView):
             self.session.message = self.session.set_sweep(dial=address, start=start, stop=stop)
 
     def _range(self) -> list[Node]:
-        sweep = self.session.scenario.sweep
-        dial = self.session.dials.get(sweep.dial) if sweep is not None else None
-        if dial is None:
+        dial, swept = self._swept_dial(), self.session.swept
+        if dial is None or swept is None:
             return []
         unit = unit_text(dial.unit)
-        start, start_refused = self._end("start", "From", sweep.start, dial)
-        stop, stop_refused = self._end("stop", "To", sweep.stop, dial)
+        start, start_refused = self._end("start", "From", float(swept.x[0]), dial)
+        stop, stop_refused = self._end("stop", "To", float(swept.x[-1]), dial)
         return [
             node("div", "group", node("span", text="from"), start, node("span", text="to"), stop,
                  node("span", "unit", text=unit)),
@@ -103,8 +109,8 @@ class SweepControls(LiveView):
 
     def _end(self, name: str, label: str, value: float, dial: Dial) -> tuple[Node, Node]:
         def take(number: float) -> str:
-            sweep = self.session.scenario.sweep
-            other = sweep.stop if name == "start" else sweep.start
+            swept = self.session.swept
+            other = float(swept.x[-1 if name == "start" else 0])
             if math.isclose(number, other):
                 return "from and to have to differ"
             return self.session.set_sweep(**{name: number})
@@ -116,9 +122,8 @@ class SweepControls(LiveView):
 
     def _rule(self) -> str:
         """How the other waters follow when a share is swept."""
-        scenario = self.session.scenario
-        sweep = scenario.sweep
-        if sweep is None or not sweep.dial.endswith(".share") or len(scenario.waters) < 2:
+        scenario, dial = self.session.scenario, self._swept_dial()
+        if dial is None or not dial.address.endswith(".share") or len(scenario.waters) < 2:
             return ""
         names = {water.id: water.name for water in scenario.waters}
         if scenario.balance_water in names:
@@ -133,8 +138,8 @@ class SweepControls(LiveView):
         names = {event.name for event in events}
         if "structure" in names:
             self.entries.forget()
-        gap = gap_words(self.session.swept)
+        shown = (gap_words(self.session.swept), *_range_of(self.session.swept))
         # The list of dials is long: a sweep that only has other results must not build it again.
-        if gap != self._gap or names != {"swept"}:
-            self._gap = gap
+        if shown != self._shown or names != {"swept"}:
+            self._shown = shown
             self.refresh()
