@@ -5,8 +5,13 @@ from copy import deepcopy
 from typing import Any
 
 import pytest
+from hypothesis import settings
 
 from explorer.scenario.model import Scenario
+
+# how long an example takes depends on the machine and says nothing about the rule it tests
+settings.register_profile("no deadline", deadline=None)
+settings.load_profile("no deadline")
 
 UNITS = {
     "temperature": "°C",

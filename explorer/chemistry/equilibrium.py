@@ -83,17 +83,18 @@ def solve(
     )
 
     def problem_at(points: NDArray) -> Problem:
-        part = system.problem(totals[:, points], temperature[points], None if ph is None else ph[points])
-        part.log_k = part.log_k[kernel.species]
+        fixed = None if ph is None else ph[points]
+        part = system.problem(kernel, totals[:, points], temperature[points], fixed)
         if held:
             part.log_k = part.log_k + kernel.carried @ saturation[:, points]
-        part.totals = masters[np.ix_(kernel.masters, points)]
+            part.totals = masters[np.ix_(kernel.masters, points)]
         return part
 
     def guessed(part: Problem, points: NDArray) -> State:
         if ph is not None:
             return first_state(kernel.newton, part, part.ph)
-        start = kernel.guess.ph(unreduced[np.ix_(kernel.whole, points)], part.organic)
+        whole = unreduced[np.ix_(kernel.whole, points)]
+        start = kernel.guess.ph(whole, part.organic, temperature[points])
         if held:
             # acid water must first dissolve the solid; started acid, it would hold absurd amounts of metal
             start = np.maximum(start, HELD_START_PH)
@@ -176,8 +177,7 @@ def buffer_intensity(system: "System", answer: Equilibrium) -> NDArray:
     present = (answer.x[:, solved] > ABSENT / 2).any(axis=1)
     kernel = system.kernel(tuple(present.tolist()), ())
     for points in _chunks(solved):
-        problem = system.problem(answer.totals[:, points], answer.temperature[points])
-        problem.log_k, problem.totals = problem.log_k[kernel.species], problem.totals[kernel.masters]
+        problem = system.problem(kernel, answer.totals[:, points], answer.temperature[points])
         state = State(answer.x[np.ix_(kernel.masters, points)], answer.strength[points])
         result[points] = LN10 / kernel.newton.proton_response(problem, state)
     return result

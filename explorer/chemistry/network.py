@@ -6,7 +6,7 @@ species, its proton and component counts relative to the masters and one log K w
 
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cached_property, lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -55,18 +55,56 @@ def _acid_constants(acid: WeakAcid) -> list[Constant]:
     ]  # fmt: skip
 
 
-def _evaluator(definitions: Sequence[Mapping[tuple[float, float], NDArray]]) -> Callable[[NDArray], NDArray]:
-    """Function of temperature [°C] giving ln K of several definitions, one row each."""
-    ranges = sorted({key for basis in definitions for key in basis})
-    tables = [LN10 * np.array([basis.get(key, np.zeros(5)) for basis in definitions]) for key in ranges]
+class LogK:
+    """ln K of several species as a function of temperature.
 
-    def evaluate(temperature: NDArray) -> NDArray:
-        return sum(
-            np.tensordot(table, constants.basis_functions(np.clip(temperature, *key)), axes=1)
-            for key, table in zip(ranges, tables, strict=True)
-        )
+    ``tables``: by held temperature range, the coefficients (species, 5) of the basis functions.
+    """
 
-    return evaluate
+    def __init__(self, tables: Mapping[tuple[float, float], NDArray]) -> None:
+        self._tables = [(key, np.flatnonzero(table.any(axis=1)), table) for key, table in tables.items()]
+        self._size = max((len(table) for table in tables.values()), default=0)
+        self._at_one = lru_cache(maxsize=64)(self._evaluate_one)
+
+    @classmethod
+    def of(cls, definitions: Sequence[_Definition]) -> "LogK":
+        """For species in the order of their definitions."""
+        ranges = {key: None for definition in definitions for key in definition.basis}
+        return cls({
+            key: LN10 * np.array([d.basis.get(key, np.zeros(5)) for d in definitions]) for key in ranges
+        })  # fmt: skip
+
+    def rows(self, chosen: NDArray) -> "LogK":
+        """The same for some of the species, by their rows."""
+        return LogK({key: table[chosen] for key, _, table in self._tables})
+
+    def __call__(self, temperature: NDArray) -> NDArray:
+        """(species, *temperature.shape); °C. A batch at one temperature is worked out once."""
+        if _is_one(temperature):
+            column = self._at_one(float(temperature.flat[0]))
+            column = column.reshape(column.shape + (1,) * temperature.ndim)
+            return np.broadcast_to(column, (self._size, *temperature.shape))
+        return self._evaluate(temperature)
+
+    def row(self, row: int, temperature: NDArray) -> NDArray:
+        """Of one species; the shape of ``temperature`` [°C]."""
+        if _is_one(temperature):
+            return np.broadcast_to(self._at_one(float(temperature.flat[0]))[row], temperature.shape)
+        return self.rows(np.array([row]))._evaluate(temperature)[0]
+
+    def _evaluate_one(self, temperature: float) -> NDArray:
+        return self._evaluate(np.array(temperature))
+
+    def _evaluate(self, temperature: NDArray) -> NDArray:
+        result = np.zeros((self._size, *temperature.shape))
+        for key, used, table in self._tables:
+            basis = constants.basis_functions(np.clip(temperature, *key))
+            result[used] += np.tensordot(table[used], basis, axes=1)
+        return result
+
+
+def _is_one(temperature: NDArray) -> bool:
+    return temperature.size > 0 and bool((temperature == temperature.flat[0]).all())
 
 
 @dataclass(frozen=True)
@@ -81,8 +119,7 @@ class Solid:
 class Network:
     """Species of a system: names, charges, counts over the masters, ln K.
 
-    ``log_k(temperature)``: natural log of the formation constant of every species, (species,
-    *temperature.shape), °C. ``solids``: by name.
+    ``log_k``: formation constants. ``solids``: by name.
 
     ``species``: names, masters first. ``masters``: names, H+ first. ``counts``: (species, masters).
     ``charges``: (species,). ``pairs`` False leaves every metal–ligand pair out; it exists to show what the
@@ -114,7 +151,7 @@ class Network:
         unbalanced = np.flatnonzero(self.charges != self.counts @ master_charge)
         if unbalanced.size:
             raise ValueError(f"{self.species[unbalanced[0]]}: the charge of its reaction does not balance")
-        self.log_k: Callable[[NDArray], NDArray] = _evaluator([d.basis for d in defined.values()])
+        self.log_k = LogK.of(list(defined.values()))
         self.solids: dict[str, Solid] = {
             name: self._solid(constant, defined) for name, constant in constants.solids().items()
         }
@@ -124,7 +161,7 @@ class Network:
         sign = constant.reaction[name]
         parts = [(-sign * n, defined[s]) for s, n in constant.reaction.items() if s in defined]
         definition = _combine(parts, constant, sign)
-        formation = _evaluator([definition.basis])
+        formation = LogK.of([definition])
         counts = np.array([definition.counts.get(master, 0) for master in self.masters], dtype=float)
         return Solid(counts, lambda temperature: -formation(temperature)[0])
 

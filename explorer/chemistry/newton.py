@@ -13,6 +13,7 @@ of the plain difference: exact in one step for a component on its own, and as ta
 whose total may have any sign, as for a metal.
 """
 
+import threading
 from dataclasses import dataclass
 
 import numpy as np
@@ -92,6 +93,24 @@ class Linear:
     strength_corner: NDArray
 
 
+class _Scratch(threading.local):
+    """Large arrays kept between steps, by name: allocating megabytes anew in each step takes longer than
+    filling them. What is returned is overwritten by the next call with the same name in the same thread."""
+
+    def __init__(self) -> None:
+        self._kept: dict[str, NDArray] = {}
+
+    def array(self, name: str, rows: int, columns: int) -> NDArray:
+        """An uninitialised (rows, columns) array."""
+        size = rows * columns
+        if name not in self._kept or self._kept[name].size < size:
+            self._kept[name] = np.empty(size)
+        return self._kept[name][:size].reshape(rows, columns)
+
+
+_scratch = _Scratch()
+
+
 class Newton:
     """The iteration for one set of masters; H+ is master 0.
 
@@ -101,7 +120,7 @@ class Newton:
     def __init__(self, counts: NDArray, charges: NDArray) -> None:
         self.counts, self.charges = counts, charges
         self.masters = counts.shape[1]
-        self.one_sided: NDArray = (counts >= 0.0).all(axis=0)
+        self.two_sided: NDArray = np.flatnonzero((counts < 0.0).any(axis=0))
         self.exponents = np.hstack([counts, (charges**2)[:, None], -(charges == 0.0).astype(float)[:, None]])
         self.order, self.pattern = _elimination(counts)
         self.position = {pair: row for row, pair in enumerate(self.pattern)}
@@ -112,7 +131,7 @@ class Newton:
         rows = {
             "matrix": np.array(products),
             "held": np.maximum(counts, 0.0).T,
-            "lacking": np.maximum(-counts, 0.0).T,
+            "lacking": np.maximum(-counts, 0.0).T[self.two_sided],
             "charged": counts.T * z2,
             "uncharged": counts.T * uncharged,
             "strength": np.stack([0.5 * z2, 0.5 * z2**2]),
@@ -126,10 +145,13 @@ class Newton:
         self.proton_pairs = np.array([row for row, (i, j) in enumerate(self.pattern) if 0 in (i, j)])
 
     def concentrations(self, problem: Problem, state: State) -> NDArray:
-        """mol/L of every species; (S, N)."""
+        """mol/L of every species; (S, N). Scratch: valid until the next call in the same thread."""
         factor, _ = davies(problem.slope, state.strength)
         uncharged, _ = neutral(state.strength)
-        log_c = self.exponents @ np.vstack([state.x, factor, uncharged])
+        unknowns = np.vstack([state.x, factor, uncharged])
+        log_c = np.matmul(
+            self.exponents, unknowns, out=_scratch.array("species", len(self.charges), len(problem))
+        )
         log_c += problem.log_k
         return np.exp(log_c, out=log_c)
 
@@ -184,8 +206,9 @@ class Newton:
     def linearise(self, problem: Problem, state: State) -> "Linear":
         """The equations at a state, to first order."""
         c = self.concentrations(problem, state)
-        sums = self.weights @ c
-        matrix, held, lacking = (sums[self.rows[name]] for name in ("matrix", "held", "lacking"))
+        sums = np.matmul(self.weights, c, out=_scratch.array("sums", len(self.weights), len(problem)))
+        matrix, held = sums[self.rows["matrix"]], sums[self.rows["held"]]
+        lacking = sums[self.rows["lacking"]]
         charged, uncharged = sums[self.rows["charged"]], sums[self.rows["uncharged"]]
         half_z2, half_z4 = sums[self.rows["strength"]]
         _, factor_slope = davies(problem.slope, state.strength)
@@ -206,11 +229,8 @@ class Newton:
             totals = totals.copy()
             totals[0] -= problem.organic * END_POINT_FRACTION
 
-        have = lacking + np.maximum(totals, 0.0)
-        want = held - np.minimum(totals, 0.0)
-        absent = (have == 0.0) & (want == 0.0)
-        ratio = np.where(absent, 1.0, have) / np.where(absent, 1.0, want)
-        residual = np.maximum(held, lacking) * np.log(np.clip(ratio, SMALLEST_TOTAL, 1.0 / SMALLEST_TOTAL))
+        ratio, larger = self.compared(totals, held, lacking)
+        residual = larger * np.log(ratio)
         if problem.ph is not None:
             matrix[self.proton_pairs] = 0.0
             matrix[self.diagonal[0]] = 1.0
@@ -218,6 +238,19 @@ class Newton:
             column[0] = 0.0
         matrix[self.diagonal] += matrix[self.diagonal] == 0.0
         return Linear(matrix, residual, column, row, strength_residual, corner)
+
+    def compared(self, totals: NDArray, held: NDArray, lacking: NDArray) -> tuple[NDArray, NDArray]:
+        """What each balance has over what it wants, and the larger of ``held`` and ``lacking``; (M, N).
+
+        ``lacking`` has the rows ``two_sided`` only. A component that is absent has a ratio of 1.
+        """
+        two = self.two_sided
+        have, larger = totals + SMALLEST_TOTAL, held.copy()
+        want = held + SMALLEST_TOTAL
+        have[two] = lacking + np.maximum(totals[two], 0.0) + SMALLEST_TOTAL
+        want[two] -= np.minimum(totals[two], 0.0)
+        larger[two] = np.maximum(held[two], lacking)
+        return np.clip(have / want, 1e-150, 1e150), larger
 
     def eliminate(self, matrix: NDArray, columns: NDArray) -> None:
         """Solve the symmetric system for every right-hand side in place; ``columns`` (M, R, N)."""

@@ -81,15 +81,13 @@ class Solution:
         uncharged, _ = neutral(self._answer.strength)
         return {0: uncharged} | {z: -float(z * z) * factor for z in range(1, 5)}
 
-    @cached_property
-    def _log_k(self) -> NDArray:
-        return self.system.log_k(self._answer.temperature)
-
     def _log_activity(self, species: str) -> NDArray:
         row = self._index[species]
         counts = self.system.network.counts[row]
         used = np.flatnonzero(counts)
-        return self._log_k[row] + counts[used] @ self._answer.x[used]
+        return (
+            self.system.network.log_k.row(row, self._answer.temperature) + counts[used] @ self._answer.x[used]
+        )
 
     def _concentration(self, species: str) -> NDArray:
         charge = abs(int(self.system.network.charges[self._index[species]]))

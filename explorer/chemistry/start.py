@@ -5,6 +5,7 @@ from collections.abc import Sequence
 import numpy as np
 from numpy.typing import NDArray
 
+from .activity import davies, debye_hueckel_slope
 from .components import PROTON
 from .constants import LN10
 from .network import Network
@@ -17,30 +18,36 @@ TRACE = 1e-4
 """mol/L; start for a component whose total says nothing, because a solid can supply it."""
 GRID = np.linspace(0.0, 14.0, 57)
 """pH values of the table behind the first guess."""
+TEMPERATURE_STEP = 5.0
+"""°C."""
+USUAL_STRENGTH = 0.01
+"""mol/L."""
 
 
 class FirstGuess:
-    """pH of a water as if it were ideal, at 25 °C and without pairs, read from a table over pH.
+    """pH of a water without ion pairs at a usual ionic strength, read from a table over pH.
 
-    ``protons`` (len(GRID), masters): protons that one mole of a component holds over its zero level.
+    Tables are made for temperatures in steps of :data:`TEMPERATURE_STEP`, when first asked for.
     """
 
     def __init__(self, network: Network, masters: Sequence[str]) -> None:
-        log_k = dict(zip(network.species, network.log_k(np.array(25.0)), strict=True))
-        forms: dict[str, list[tuple[int, float]]] = {master: [] for master in masters[1:]}
-        for species, counts in network.composition.items():
-            (*others,) = counts.keys() - {PROTON}
-            if len(others) == 1 and counts[others[0]] == 1 and others[0] in forms:
-                forms[others[0]].append((counts.get(PROTON, 0), log_k[species]))
-        self.protons = np.array(
-            [_mean_protons(*zip(*forms[master], strict=True)) for master in masters[1:]]
-        ).T
+        self._log_k = network.log_k
+        self._forms: list[tuple[NDArray, NDArray, NDArray]] = []
+        for master in masters[1:]:
+            rows = [
+                network.index[species]
+                for species, counts in network.composition.items()
+                if counts.get(master) == 1 and counts.keys() <= {PROTON, master}
+            ]
+            self._forms.append((np.array(rows), network.counts[rows, 0], network.charges[rows] ** 2))
         self.water = 10.0 ** (GRID - 14.0) - 10.0**-GRID
         self.organic = dissociated(GRID)[0] - END_POINT_FRACTION
+        self._tables: dict[float, NDArray] = {}
 
-    def ph(self, totals: NDArray, organic: NDArray) -> NDArray:
-        """First guess of the pH (N,) from the masters' ``totals`` (M, N) and ``organic`` acid groups (N,)."""
-        alkalinity = np.outer(self.organic, organic) - self.protons @ totals[1:]
+    def ph(self, totals: NDArray, organic: NDArray, temperature: NDArray) -> NDArray:
+        """First guess (N,) from the masters' ``totals`` (M, N), ``organic`` acid groups (N,) and °C (N,)."""
+        protons = self._protons(TEMPERATURE_STEP * round(float(temperature.mean()) / TEMPERATURE_STEP))
+        alkalinity = np.outer(self.organic, organic) - protons @ totals[1:]
         alkalinity += self.water[:, None]
         wanted = -totals[0]
         above = np.clip((alkalinity < wanted).sum(axis=0), 1, len(GRID) - 1)
@@ -49,28 +56,37 @@ class FirstGuess:
         part = np.clip((wanted - low) / (high - low), 0.0, 1.0)
         return GRID[above - 1] + part * (GRID[1] - GRID[0])
 
-
-def _mean_protons(protons: Sequence[int], log_k: Sequence[float]) -> NDArray:
-    """Mean proton count of a family over the pH grid, from the count and ln K of each form."""
-    count = np.array(protons, dtype=float)
-    weight = np.array(log_k)[:, None] - LN10 * np.outer(count, GRID)
-    weight = np.exp(weight - weight.max(axis=0))
-    return count @ weight / weight.sum(axis=0)
+    def _protons(self, temperature: float) -> NDArray:
+        """Protons that a mole of each component holds over its zero level; (len(GRID), masters − 1)."""
+        if temperature not in self._tables:
+            factor, _ = davies(debye_hueckel_slope(temperature), USUAL_STRENGTH)
+            log_k = self._log_k(np.array(temperature))
+            means = []
+            for rows, protons, z2 in self._forms:
+                weight = (log_k[rows] + z2 * factor)[:, None] - LN10 * np.outer(protons, GRID)
+                weight = np.exp(weight - weight.max(axis=0))
+                means.append(protons @ weight / weight.sum(axis=0))
+            self._tables[temperature] = np.array(means).reshape(-1, len(GRID)).T
+        return self._tables[temperature]
 
 
 def first_state(newton: Newton, problem: Problem, ph: NDArray) -> State:
     """State at a pH, with every other component scaled to its total a few times as if on its own."""
-    totals = problem.totals[1:]
-    absent = newton.one_sided[1:, None] & (totals < SMALLEST_TOTAL)
-    x = np.where(absent, ABSENT, np.log(np.maximum(totals, np.where(absent, SMALLEST_TOTAL, TRACE))))
-    strength = np.clip(problem.inert + np.abs(totals).sum(axis=0), 1e-7, 0.5)
-    state = State(np.concatenate([-LN10 * ph[None], x]), strength)
-    held, lacking = np.maximum(newton.counts[:, 1:].T, 0.0), np.maximum(-newton.counts[:, 1:].T, 0.0)
-    power = 1.0 / (held.max(axis=1) + lacking.max(axis=1))[:, None]
+    totals = problem.totals
+    floor = np.full((newton.masters, 1), SMALLEST_TOTAL)
+    floor[newton.two_sided] = TRACE
+    x = np.log(np.maximum(totals, floor))
+    x[totals < SMALLEST_TOTAL] = ABSENT
+    x[newton.two_sided] = np.maximum(x[newton.two_sided], np.log(TRACE))
+    x[0] = -LN10 * ph
+    state = State(x, np.clip(problem.inert + np.abs(totals[1:]).sum(axis=0), 1e-7, 0.5))
+    held, lacking = newton.weights[newton.rows["held"]], newton.weights[newton.rows["lacking"]]
+    power = held.max(axis=1)
+    power[newton.two_sided] += lacking.max(axis=1)
+    power[0] = np.inf
     for _ in range(PASSES):
         c = newton.concentrations(problem, state)
-        have = lacking @ c + np.maximum(totals, 0.0)
-        want = held @ c - np.minimum(totals, 0.0)
-        state.x[1:] += power * np.log(np.where(absent, 1.0, have) / np.where(absent, 1.0, want))
+        ratio, _ = newton.compared(totals, held @ c, lacking @ c)
+        state.x += np.log(ratio) / power[:, None]
         state.strength = np.clip(0.5 * newton.charges**2 @ c + problem.inert, 1e-8, 1.0)
     return state

@@ -14,7 +14,7 @@ from numpy.typing import ArrayLike, NDArray
 from . import equilibrium
 from .activity import debye_hueckel_slope
 from .components import COMPONENT, COMPONENTS, WeakAcid
-from .network import Network
+from .network import LogK, Network
 from .newton import Newton, Problem
 from .organics import equivalents_per_mole
 from .phases import CARBON_DIOXIDE, Phases
@@ -29,11 +29,13 @@ USUAL_ORGANIC_CHARGE_DENSITY = 10.0
 class Kernel:
     """The part of a system that matters where some masters are absent and some phases are held.
 
-    ``species`` and ``masters``: rows in the network of the species and of the unknowns; ``whole``: the
-    masters with those that the phases fix, for the first guess; ``phases``: what is held, with ``carried``
-    (species, phases) of :meth:`Phases.reduced_counts`."""
+    ``species`` and ``masters``: rows in the network of the species, with their ``log_k``, and of the
+    unknowns; ``whole``: the masters with those that the phases fix, for the first guess; ``phases``: what
+    is held, with ``carried`` (species, phases) of :meth:`Phases.reduced_counts`.
+    """
 
     species: NDArray
+    log_k: LogK
     whole: NDArray
     masters: NDArray
     newton: Newton
@@ -147,27 +149,18 @@ class System:
         totals[self._rows] -= np.outer(counts * self._balance_signs, amount)
         return totals
 
-    def problem(self, totals: NDArray, temperature: NDArray, ph: NDArray | None = None) -> Problem:
-        """The flat batch as the iteration wants it, over all masters."""
+    def problem(
+        self, kernel: Kernel, totals: NDArray, temperature: NDArray, ph: NDArray | None = None
+    ) -> Problem:
+        """The flat batch as the iteration wants it, over the masters of a kernel that holds no phases."""
         return Problem(
-            log_k=self.log_k(temperature),
-            totals=self.masters_in(totals),
+            log_k=kernel.log_k(temperature),
+            totals=self.masters_in(totals)[kernel.masters],
             slope=debye_hueckel_slope(temperature),
             inert=0.5 * self._inert_charges**2 @ totals[self._inert_rows],
             organic=self.organic_equivalents * totals[self.index["organic_carbon"]],
             ph=ph,
         )
-
-    def log_k(self, temperature: NDArray) -> NDArray:
-        """ln K of every species; one temperature for the whole batch is worked out once."""
-        if temperature.size and (temperature == temperature[0]).all():
-            column = self._log_k_at(float(temperature[0]))
-            return np.broadcast_to(column[:, None], (len(column), temperature.size))
-        return self.network.log_k(temperature)
-
-    @cached_property
-    def _log_k_at(self) -> Callable[[float], NDArray]:
-        return lru_cache(maxsize=256)(lambda temperature: self.network.log_k(np.array(temperature)))
 
     @cached_property
     def kernel(self) -> Callable[[tuple[bool, ...], tuple[str, ...]], Kernel]:
@@ -184,4 +177,6 @@ class System:
         there[phases.pivots] = False
         masters = np.flatnonzero(there)
         newton = Newton(counts[:, masters], self.network.charges[species])
-        return Kernel(species, whole, masters, newton, guess, phases, carried)
+        return Kernel(
+            species, self.network.log_k.rows(species), whole, masters, newton, guess, phases, carried
+        )
