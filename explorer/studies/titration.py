@@ -1,8 +1,7 @@
 """Titration: how the water at any place answers an acid or a base, and which species it holds at which pH."""
 
-from collections.abc import Callable, Mapping
-from dataclasses import dataclass, field
-from functools import partial
+from collections.abc import Mapping
+from dataclasses import dataclass
 from types import MappingProxyType
 from typing import Any
 
@@ -18,7 +17,7 @@ from explorer.scenario.outcome import FINISHED
 from explorer.scenario.stage import Stage
 from explorer.studies.sweep import listed
 from explorer.treatment.chemicals import Chemical, titrant_moles, titration_units, totals_vector
-from explorer.treatment.stream import Stream, dose
+from explorer.treatment.stream import dose
 
 USUAL_POINTS, MOST_POINTS = 121, 2001
 
@@ -50,8 +49,6 @@ class Titration:
     own_ph: float
     own_buffer_intensity: float
     temperature: float
-    after: Callable[[ArrayLike], Stage] = field(repr=False, compare=False)
-    """The water after any doses [``unit``]."""
 
     def dose_to(self, ph: float) -> float:
         """Dose at which the curve first passes a pH, between its points by the straight line; nan outside."""
@@ -108,35 +105,66 @@ def titration(
 
     Raises ScenarioError for an unknown stage, chemical or unit and for a range that is none.
     """
-    one, other = (_chemical(scenario, key) if key else None for key in (chemical, opposite))
+    titrant = titrated(scenario, stage, chemical, unit, opposite, dials, season)
+    _check_range(start, stop, points, two_sided=opposite is not None)
+    x = np.linspace(start, stop, points)
+    before, along = titrant.before, titrant.after(x)
+    return Titration(
+        stage=before.id,
+        name=before.name,
+        chemical=titrant.chemical.key,
+        opposite=opposite or "",
+        unit=titrant.unit,
+        x=x,
+        ph=along.readout("ph"),
+        buffer_intensity=along.readout("buffer_intensity"),
+        reasons=along.reasons(),
+        own_ph=float(before.readout("ph")),
+        own_buffer_intensity=float(before.readout("buffer_intensity")),
+        temperature=float(before.temperature),
+    )
+
+
+@dataclass(frozen=True)
+class Titrated:
+    """A water and what is added to it: ``chemical`` where doses are positive, ``opposite`` where negative."""
+
+    before: Stage
+    chemical: Chemical
+    opposite: Chemical | None
+    unit: str
+
+    def after(self, x: ArrayLike) -> Stage:
+        """The water after doses [``unit``] of any shape."""
+        stream = self.before.stream
+        for chemical, sign in ((self.chemical, 1.0), (self.opposite, -1.0)):
+            if chemical is not None:
+                amount = titrant_moles(chemical, np.maximum(sign * np.asarray(x, float), 0.0), self.unit)
+                stream = dose(stream, totals_vector(chemical, stream.system), amount)
+        return Stage(self.before.id, self.before.name, "titration", stream, self.before.cost)
+
+
+def titrated(
+    scenario: Scenario,
+    stage: str,
+    chemical: str,
+    unit: str | None = None,
+    opposite: str | None = None,
+    dials: Mapping[str, ArrayLike] = MappingProxyType({}),
+    season: str | None = None,
+) -> Titrated:
+    """The water of a stage, ready to be titrated. Raises ScenarioError as :func:`titration` does."""
+    one = _chemical(scenario, chemical)
+    other = None if opposite is None else _chemical(scenario, opposite)
     unit = one.default_unit if unit is None else unit
     for titrant in filter(None, (one, other)):
         if unit not in titration_units(titrant):
             name = f"a unit of {titrant.name.lower()}"
             raise ScenarioError("unit", unknown(unit, name, titration_units(titrant), similar=False))
-    _check_range(start, stop, points, two_sided=other is not None)
     outcome = evaluate(scenario, dials, season)
     if outcome.shape:
         raise ScenarioError("", "a titration is of one water; allowed single dial values")
-    before = outcome.stage(stage)
-    after = partial(_after, before, [(one, 1.0), *([(other, -1.0)] if other else [])], unit)
-    x = np.linspace(start, stop, points)
-    titrated = after(x)
-    return Titration(
-        stage=before.id,
-        name=before.name,
-        chemical=one.key,
-        opposite=other.key if other else "",
-        unit=unit,
-        x=x,
-        ph=titrated.readout("ph"),
-        buffer_intensity=titrated.readout("buffer_intensity"),
-        reasons=titrated.reasons(),
-        own_ph=float(before.readout("ph")),
-        own_buffer_intensity=float(before.readout("buffer_intensity")),
-        temperature=float(before.temperature),
-        after=after,
-    )
+    return Titrated(outcome.stage(stage), one, other, unit)
 
 
 def _chemical(scenario: Scenario, key: str) -> Chemical:
@@ -153,15 +181,6 @@ def _check_range(start: float, stop: float, points: int, two_sided: bool) -> Non
         raise ScenarioError("stop", f"{start:g} to {stop:g} is no range; allowed two different numbers")
     if min(start, stop) < 0 and not two_sided:
         raise ScenarioError("start", f"{min(start, stop):g} is negative; allowed with an opposite chemical")
-
-
-def _after(before: Stage, sides: list[tuple[Chemical, float]], unit: str, x: ArrayLike) -> Stage:
-    """The water of a stage after doses: each side takes the doses of its sign."""
-    stream: Stream = before.stream
-    for chemical, sign in sides:
-        amount = np.maximum(sign * np.asarray(x, float), 0.0)
-        stream = dose(stream, totals_vector(chemical, stream.system), titrant_moles(chemical, amount, unit))
-    return Stage(before.id, before.name, "titration", stream, before.cost)
 
 
 # ---- logarithmic diagram -----------------------------------------------------------------------------------
