@@ -343,7 +343,14 @@ def _provenance(sheet: Sheet) -> list[Node]:
 
         return desk.edit(f"Provenance of {sheet.water.title}", change)
 
-    parts: list[Node] = []
+    def note(scenario: Scenario, text: str) -> None:
+        scenario.water(water_id).note = text.strip()
+
+    box, refusal = desk.entries.text(
+        f"waters.{water_id}.note", "Note on the water", sheet.water.note,
+        lambda text: desk.edit(f"Note on {sheet.water.title}", lambda scenario: note(scenario, text)),
+    )  # fmt: skip
+    parts = [node("span", "caption", text="Note on the water"), box, refusal]
     for part, caption in PROVENANCE.items():
         box, refusal = desk.entries.text(
             f"{sheet.key}:provenance.{part}", caption, sheet.analysis.provenance.get(part, ""),

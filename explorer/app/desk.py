@@ -142,7 +142,8 @@ class Desk:
 
     def act(self, place: str, label: str, change: Change) -> Callable[[], None]:
         """What a button does that changes the scenario; a refusal stands at the card ``place``."""
-        return lambda: self.entries.refuse(place, refusal=self.edit(label, change))
+        # With its path: the part at fault may be another than the one the button belongs to.
+        return lambda: self.entries.refuse(place, refusal=self.session.edit(label, change))
 
     def refusal(self, place: str) -> Node:
         """Where the refusals of :meth:`act` stand."""
@@ -182,15 +183,16 @@ class Desk:
     def dial_row(
         self,
         dial: Dial,
-        *after: Node,
+        *,
+        what: str = "",
         colour: str | None = None,
         span: tuple[float, float] | None = None,
         digits: int | None = None,
     ) -> Node:
-        """A dial as slider and exact number with its unit; ``after`` follows the unit.
+        """A dial as slider and exact number with its unit.
 
-        span: ends of the slider, where they are not to follow from the dial. digits: decimals shown, those of
-        the slider's step where None.
+        what: a word on what the number is, behind the unit. span: ends of the slider, where they are not to
+        follow from the dial. digits: decimals shown, those of the slider's step where None.
         """
         low, high = span or (dial.low, self._reached(dial))
         step = fine_step(100 * (high - low) / POSITIONS)
@@ -210,8 +212,8 @@ class Desk:
             dial.address, dial.label, shown, lambda value: self.turn(dial.address, value),
             low=dial.low, high=dial.high, unit=dial.unit,
         )  # fmt: skip
-        unit = node("span", "unit", text=unit_text(dial.unit), title=dial.unit) if dial.unit else None
-        return node("div", "row", slider, number, unit, *after, refusal)
+        unit = f"{unit_text(dial.unit)} {what}".strip()
+        return node("div", "row", slider, number, node("span", "unit", text=unit, title=dial.label), refusal)
 
     def _reached(self, dial: Dial) -> float:
         """Right end of a dial's slider: its limit, or a round number near its value where that is far off.

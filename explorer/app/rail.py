@@ -37,7 +37,7 @@ class Rail(LiveView):
         self.desk = Desk(session)
         super().__init__(**({"sizing_mode": "stretch_width", "margin": 0} | settings))
         session.ask("rail", asked)
-        session.param.watch(self._follow, ["values", "structure", "point"])
+        session.param.watch(self._follow, ["values", "structure", "point", "stale"])
         self.refresh()
 
     @property
@@ -47,7 +47,7 @@ class Rail(LiveView):
 
     def describe(self) -> Node:
         return node(
-            "div", "rail",
+            "div", "rail stale" if self.desk.session.stale else "rail",
             node("section", "", *self._waters(), aria_label="Source waters"),
             node("section", "", *self._treatment(), aria_label="Treatment, in order of flow"),
             node("section", "", *self._cost(), key="cost", aria_label="Running cost"),

@@ -7,13 +7,22 @@ from explorer.app.axes import number_text
 from explorer.app.desk import Desk, facts
 from explorer.app.live_view import Node, node
 from explorer.app.pickers import Act, Choice, menu, picker
-from explorer.app.step_form import chemical_choices, step_form
+from explorer.app.step_form import chemical_choices, main_dial, step_form
 from explorer.app.text import in_sentence, unit_text
 from explorer.scenario import editing
 from explorer.scenario.dials import Dial, step_name
 from explorer.scenario.model import DoseStep, Scenario, SideStreamStep, Step
 from explorer.scenario.readouts import READOUTS, format_value
 from explorer.scenario.steps import STEP_KINDS
+
+SETTING_WORDS = {
+    "approach": "approach",
+    "co2": "CO₂ left",
+    "fraction": "of the flow",
+    "cycles": "cycles",
+    "residual": "left",
+}
+"""What the number on a card is, behind its unit, where the unit does not say it."""
 
 HOLD_SPANS = {"ph": (5.0, 11.0)}
 """Ends of the slider of a held readout, where 0 to a round number would be no use."""
@@ -132,19 +141,13 @@ def _setting(desk: Desk, step: Step, key: str) -> Node | None:
     if dial is None:
         return None
     digits = READOUTS[step.hold.readout].digits if dial.address == f"{key}.hold.value" else None
-    return desk.dial_row(dial, span=_span(step, dial), digits=digits)
+    what = SETTING_WORDS.get(dial.address.rpartition(".")[2], "")
+    return desk.dial_row(dial, what=what, span=_span(step, dial), digits=digits)
 
 
 def _span(step: Step, dial: Dial) -> tuple[float, float] | None:
     held = dial.address.endswith(".hold.value")
     return HOLD_SPANS.get(step.hold.readout) if held else None
-
-
-def main_dial(desk: Desk, step: Step, key: str) -> Dial | None:
-    """The dial on a step's card: the held value of a hold, else the first number of the step."""
-    dials = desk.session.dials
-    names = ["hold.value", *step.fields()] if isinstance(step, DoseStep) else list(step.fields())
-    return next((dials[f"{key}.{name}"] for name in names if f"{key}.{name}" in dials), None)
 
 
 def add_step(desk: Desk, prefix: str) -> list[Node]:

@@ -12,6 +12,7 @@ from explorer.app.pickers import Choice, picker
 from explorer.app.state import Change
 from explorer.app.text import formula_text, plain, unit_text
 from explorer.scenario import editing
+from explorer.scenario.dials import Dial
 from explorer.scenario.entity import Entity
 from explorer.scenario.fields import Choice as OneOf
 from explorer.scenario.fields import Choices, Flag, Number, Text
@@ -21,7 +22,7 @@ from explorer.scenario.readouts import READOUTS
 from explorer.treatment.catalogue import SETTINGS
 from explorer.treatment.chemicals import Chemical, dose_in, dose_moles, pump_rate
 
-OWN_PLACE = ("id", "name", "on", "note", "chemical", "dose", "hold")
+OWN_PLACE = ("id", "name", "on", "note", "chemical", "hold")
 """Fields that the card itself or a part of its own looks after."""
 
 
@@ -160,6 +161,13 @@ class Form:
         return lambda dose: float(dose_in(product, dose_moles(product, dose, old, strength), new, strength))
 
 
+def main_dial(desk: Desk, step: Step, key: str) -> Dial | None:
+    """The dial on a step's card: the held value of a hold, else the first number of the step."""
+    dials = desk.session.dials
+    names = ["hold.value", *step.fields()] if isinstance(step, DoseStep) else list(step.fields())
+    return next((dials[f"{key}.{name}"] for name in names if f"{key}.{name}" in dials), None)
+
+
 def step_form(desk: Desk, step: Step, key: str) -> list[Node]:
     """Everything inside an opened step card."""
     form = Form(desk, step, key)
@@ -168,13 +176,16 @@ def step_form(desk: Desk, step: Step, key: str) -> list[Node]:
         _chemical(form, step)
     if step.either:
         _which(form, step)
-    if dosing:
-        _amount_of(form, step)
+    if dosing and step.hold is not None:
+        _held(form, step.hold)
     usual = _usual(form) if dosing else {}
+    dial = main_dial(desk, step, key)
     for name in step.fields():
         given = name not in step.either or getattr(step, name) is not None
         owned = name not in usual or usual[name] is not None
-        if given and owned and name not in OWN_PLACE:
+        if dial is not None and dial.address == f"{key}.{name}":
+            _unit_of(form, name)
+        elif given and owned and name not in OWN_PLACE:
             form.declared(step, name, **usual)
     form.declared(step, "note")
     return [node("div", "form", *form.lines), *(_product_use(form) if dosing else []), *_cautions(form)]
@@ -199,20 +210,17 @@ def _chemical(form: Form, step: DoseStep) -> None:
     )  # fmt: skip
 
 
-def _amount_of(form: Form, step: DoseStep) -> None:
-    """The unit of a fixed dose (its number is on the card), or what a hold holds and how far it may go."""
-    if step.dose is not None:
-        key = f"{form.key}.dose"
-        form.line(
-            "Dose is given in", form.unit_choice("dose", step.dose, key), form.desk.refusal(key + ".unit")
-        )
-    if step.hold is not None:
-        _held(form, step.hold)
-        form.declared(step.hold, "ceiling", "hold")
+def _unit_of(form: Form, name: str) -> None:
+    """The unit of the setting whose number stands on the card."""
+    value = getattr(form.step, name)
+    if isinstance(value, Quantity):
+        key = f"{form.key}.{name}"
+        caption = f"{form.step.fields()[name].label} is given in"
+        form.line(caption, form.unit_choice(name, value, key), form.desk.refusal(f"{key}.unit"))
 
 
 def _held(form: Form, hold: Hold) -> None:
-    """Which readout a dose holds."""
+    """Which readout a dose holds, and how far the dose may go."""
     groups: dict[str, str] = {name: readout.label for name, readout in READOUTS.items()}
     key = f"{form.key}.hold.readout"
     step_id = form.step.id
@@ -234,6 +242,7 @@ def _held(form: Form, hold: Hold) -> None:
         form.desk.entries.choice(key, "Held readout", groups, hold.readout, take),
         form.desk.refusal(key),
     )
+    form.declared(hold, "ceiling", "hold")
 
 
 def _which(form: Form, step: Step) -> None:

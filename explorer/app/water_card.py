@@ -11,7 +11,7 @@ from explorer.app.pickers import Act, menu
 from explorer.app.step_card import train_list
 from explorer.scenario import editing
 from explorer.scenario.dials import Dial
-from explorer.scenario.model import Water
+from explorer.scenario.model import Scenario, Water
 from explorer.treatment.analysis import balance_of
 
 
@@ -49,7 +49,10 @@ def _head(desk: Desk, water: Water, key: str, colour: str) -> list[Node]:
         "button", "open", swatch, node("span", "name", text=water.title), key=f"{key}:open", type="button",
         on=lambda value: desk.open(key), aria_expanded=str(desk.opened == key).lower(), title=water.title,
     )  # fmt: skip
-    state = [] if water.on else [node("span", "tag quiet", text="out of service")]
+    tag = "" if water.on else "out of service"
+    if water.on and desk.scenario.balance_water == water.id:
+        tag = "takes the rest"
+    state = [node("span", "tag quiet", text=tag)] if tag else []
     total = desk.scenario.total_flow()
     flow = desk.flow_text(None if total is None else total * desk.scenario.fractions()[water.id])
     return [
@@ -77,8 +80,22 @@ def _acts(desk: Desk, water: Water, key: str) -> list[Act]:
             "switch", switch,
             desk.act(key, f"{switch}: {name}", lambda scenario: editing.switch_water(scenario, water_id)),
         ),
+        *_balancing(desk, water, key),
         Act("remove", "Remove", remove if len(desk.scenario.waters) > 1 else None, danger=True),
     ]  # fmt: skip
+
+
+def _balancing(desk: Desk, water: Water, key: str) -> list[Act]:
+    """Whether this water alone takes up the change of another share; of two waters it always does."""
+    if len(desk.scenario.waters) < 3 or water.share is None:
+        return []
+    chosen = desk.scenario.balance_water == water.id
+
+    def change(scenario: Scenario) -> None:
+        scenario.balance_water = None if chosen else water.id
+
+    words = "Let all others take the rest" if chosen else "Let it take the rest"
+    return [Act("balance", words, desk.act(key, f"{words}: {water.title}", change))]
 
 
 def _facts(desk: Desk, water: Water) -> Node:

@@ -7,6 +7,7 @@ stream.
 """
 
 import itertools
+import math
 import re
 import unicodedata
 from collections.abc import Iterable, Iterator
@@ -291,14 +292,30 @@ def take_option(scenario: Scenario, name: str) -> Scenario:
 
 
 def tidy(scenario: Scenario) -> None:
-    """Drop the tolerances, the sweep and the measured points of what is no longer there."""
+    """Drop the tolerances, the sweep and the measured points of what is no longer there; fit the sweep to its
+    dial."""
     known = {f"waters.{water.id}.share" for water in scenario.waters if water.share is not None}
     known = known.union(*(dials(scenario, season) for season in scenario.seasons))
     scenario.tolerances = {address: part for address, part in scenario.tolerances.items() if address in known}
     if scenario.sweep is not None and scenario.sweep.dial not in known:
         scenario.sweep = None
+    _clip_sweep(scenario)
     there = known_dials(scenario) if scenario.measured else {}
     scenario.measured = [part for part in scenario.measured if not any(misfits(scenario, part, there))]
+
+
+def _clip_sweep(scenario: Scenario) -> None:
+    """Keep a sweep inside the range of its dial, which may have become narrower; none is left of no range."""
+    dial = None if scenario.sweep is None else dials(scenario).get(scenario.sweep.dial)
+    if dial is None:
+        return
+    sweep, high = scenario.sweep, math.inf if dial.high is None else dial.high
+    for end in ("start", "stop"):
+        value = getattr(sweep, end)
+        if not dial.low <= value <= high:
+            setattr(sweep, end, neat(min(max(value, dial.low), high)))
+    if sweep.start == sweep.stop:
+        scenario.sweep = None
 
 
 def _water(scenario: Scenario, water_id: str) -> Water:

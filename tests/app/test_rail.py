@@ -302,3 +302,33 @@ def test_every_shipped_scenario_has_a_rail(name: str) -> None:
     for key in openers:
         rail.report(key)
         assert rail.desk.opened == key.removesuffix(":open")
+
+
+@pytest.mark.parametrize("name", sorted(shipped()))
+def test_keys_on_the_page_are_unique(name: str) -> None:
+    """Whatever card is open, no two fields or buttons answer to one key."""
+    rail = rail_of(name)
+    for opener in [item.key for item in rail.nodes if item.key.endswith(":open")]:
+        rail.report(opener)
+        keys = [item.key for item in rail.nodes if item.key]
+        assert len(keys) == len(set(keys))
+
+
+def test_one_water_takes_the_rest() -> None:
+    """Of three waters one can be told to take up every change alone, and be relieved of it."""
+    rail = rail_of("juniper")
+    first, second, third = rail.desk.scenario.waters
+    rail.report(f"waters.{third.id}:balance")
+    assert "takes the rest" in words(rail, f"waters.{third.id}")
+    rail.report(f"waters.{first.id}.share", "40")
+    assert shares(rail) == {first.id: 40, second.id: second.share, third.id: 60 - second.share}
+    rail.report(f"waters.{third.id}:balance")
+    assert rail.desk.scenario.balance_water is None
+
+
+def test_results_that_are_out_of_date_are_dimmed(amber: Rail) -> None:
+    """While the session says its results are stale, so does the rail."""
+    amber.desk.session.stale = True
+    assert amber.nodes[0].properties["class"] == "rail stale"
+    amber.desk.session.stale = False
+    assert amber.nodes[0].properties["class"] == "rail"
