@@ -178,7 +178,7 @@ def _rows(sheet: Sheet, entry: str) -> list[Node]:
         rows.append(
             node("tr", "more-about", node("td", "", _about(sheet, entry), colspan=5), key=f"{key}:about")
         )
-    rows.append(node("tr", "wrong", node("td", "", refusal, wrong_width, colspan=5), key=f"{key}:wrong"))
+    rows.append(node("tr", "refused", node("td", "", refusal, wrong_width, colspan=5), key=f"{key}:wrong"))
     return rows
 
 

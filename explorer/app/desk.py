@@ -212,8 +212,9 @@ class Desk:
             dial.address, dial.label, shown, lambda value: self.turn(dial.address, value),
             low=dial.low, high=dial.high, unit=dial.unit,
         )  # fmt: skip
-        unit = f"{unit_text(dial.unit)} {what}".strip()
-        return node("div", "row", slider, number, node("span", "unit", text=unit, title=dial.label), refusal)
+        words = f"{unit_text(dial.unit)} {what}".strip()
+        unit = node("span", "unit", text=words, title=dial.label) if words else None
+        return node("div", "row", slider, number, unit, refusal)
 
     def _reached(self, dial: Dial) -> float:
         """Right end of a dial's slider: its limit, or a round number near its value where that is far off.

@@ -20,7 +20,6 @@ SETTING_WORDS = {
     "co2": "CO₂ left",
     "fraction": "of the flow",
     "cycles": "cycles",
-    "residual": "left",
 }
 """What the number on a card is, behind its unit, where the unit does not say it."""
 

@@ -303,11 +303,16 @@ def _product_use(form: Form) -> list[Node]:
     if dose is None or not math.isfinite(float(dose.product) * float(dose.flow)):
         return []
     use = float(dose.product) * float(dose.flow) * 24 / 1000
-    words = [f"{number_text(use, 0 if use >= 10 else 1)} kg/d of product", f"{use * 0.36525:.3g} t/year"]
+    words = [f"{_amount_text(use)} kg/d of product", f"{_amount_text(use * 0.36525)} t/year"]
     rate = float(pump_rate(dose.chemical, dose.moles, dose.flow, dose.strength))
     if math.isfinite(rate):
-        words.append(f"{rate:.3g} L/h")
+        words.append(f"{_amount_text(rate)} L/h")
     return [facts(*words, hint="At the flow and dose now; litres at the density of the product")]
+
+
+def _amount_text(amount: float) -> str:
+    """Three figures, or all before the point."""
+    return number_text(amount, max(0, 2 - math.floor(math.log10(amount))) if amount > 0 else 0)
 
 
 def _cautions(form: Form) -> list[Node]:

@@ -190,6 +190,6 @@ def test_product_use_of_a_dose() -> None:
     strength = rail.desk.scenario.product(step).usual_strength
     use = 20 / (strength / 100)
     card = rail.shown(key).words()
-    assert f"{use:.0f} kg/d of product" in card
-    assert f"{use * 0.36525:.3g} t/year" in card
+    assert f"{use:.1f} kg/d of product" in card
+    assert f"{use * 0.36525:.1f} t/year" in card
     assert "L/h" in card
