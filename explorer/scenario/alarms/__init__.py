@@ -9,13 +9,18 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from explorer.scenario.alarms import dosing, water
-from explorer.scenario.alarms.finding import COMMON_PRACTICE, Alarm, Finding
+from explorer.scenario.alarms.finding import COMMON_PRACTICE, Alarm, Finding, Rule
 from explorer.treatment.notes import Note
 
 if TYPE_CHECKING:
     from explorer.scenario.outcome import Outcome
 
-__all__ = ["ALARMS", "Alarm", "Finding", "alarms_of", "noted"]
+__all__ = ["ALARMS", "BLEND_TURNS", "NOT_LINEAR", "Alarm", "Finding", "Rule", "alarms_of", "noted"]
+
+BLEND_TURNS = "blend_turns"
+"""Key of the alarm for a blend on the other side of saturation than its waters."""
+
+NOT_LINEAR = "the equilibrium of calcium carbonate is not linear in the share"
 
 
 ALARMS: tuple[Alarm, ...] = (
@@ -27,7 +32,7 @@ ALARMS: tuple[Alarm, ...] = (
     Alarm("ionic_strength", "caution", "limit of the Davies equation, common practice", water.ionic_strength),
     Alarm("ph_range", "caution", COMMON_PRACTICE, water.ph_range),
     Alarm("weak_buffer", "caution", COMMON_PRACTICE, water.weak_buffer),
-    Alarm("blend_turns", "caution", "CaCO3 equilibrium is not linear in the share", water.blend_turns),
+    Alarm(BLEND_TURNS, "caution", NOT_LINEAR, water.blend_turns),
     Alarm("brucite", "caution", COMMON_PRACTICE, dosing.brucite),
     Alarm("chlorine_gas", "caution", COMMON_PRACTICE, dosing.beside_acid),
     Alarm("chlorine_ammonia", "caution", COMMON_PRACTICE,
@@ -46,10 +51,10 @@ def alarms_of(outcome: "Outcome") -> list[Note]:
     return [noted(alarm, found) for alarm in ALARMS for found in alarm.find(outcome)]
 
 
-def noted(alarm: Alarm, found: Finding) -> Note:
+def noted(rule: Rule, found: Finding) -> Note:
     """A finding as a note; it says how many points it is about where it is not about all."""
     text = found.text + _part(found.points)
-    return Note(found.level or alarm.level, found.where, text, alarm.key, alarm.source)
+    return Note(found.level or rule.level, found.where, text, rule.key, rule.source)
 
 
 def _part(points: np.ndarray | None) -> str:

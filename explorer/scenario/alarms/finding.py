@@ -37,12 +37,18 @@ Find = Callable[["Outcome"], Iterator[Finding]]
 
 
 @dataclass(frozen=True)
-class Alarm:
-    """A rule: ``key``, usual ``level``, ``source``, and what finds it."""
+class Rule:
+    """What an alarm is about: its ``key``, usual ``level``, and ``source``."""
 
     key: str
     level: Level
     source: str
+
+
+@dataclass(frozen=True)
+class Alarm(Rule):
+    """A rule, and what finds it in an outcome."""
+
     find: Find
 
 
