@@ -100,7 +100,7 @@ class LiveView(JSComponent):
     tree = param.String(default="{}")
     patch = param.String(default="{}")
 
-    _esm = "live_view.js"
+    _esm = FOLDER / "live_view.js"
 
     css: ClassVar[tuple[str, ...]] = ("live_view.css",)
     """Style files beside this module: page styles stop at a shadow root, so each view carries its own."""

@@ -53,7 +53,7 @@ def step_card(desk: Desk, step: Step, prefix: str, position: int, count: int, be
         _setting(desk, step, key),
     ]
     if opened:
-        body.append(node("div", "details", *step_form(desk, step, key)))
+        body.append(node("div", "details", *step_form(desk, step, key), data_reveal=True))
     if isinstance(step, SideStreamStep):
         inner = train_list(desk, step.train, f"{key}.", before)
         body.append(node("div", "inner", node("h4", text="In the side stream"), inner))

@@ -23,11 +23,12 @@ def water_card(desk: Desk, water: Water, position: int) -> Node:
     body = [
         node("div", "head", *_head(desk, water, key, colour)),
         desk.refusal(key),
+        _state(desk, water),
         _facts(desk, water),
         _amount(desk, water, colour),
     ]
     if opened:
-        body.append(node("div", "details", *analysis_editor(desk, water)))
+        body.append(node("div", "details", *analysis_editor(desk, water), data_reveal=True))
     if opened or water.train:
         body.append(
             node(
@@ -49,15 +50,10 @@ def _head(desk: Desk, water: Water, key: str, colour: str) -> list[Node]:
         "button", "open", swatch, node("span", "name", text=water.title), key=f"{key}:open", type="button",
         on=lambda value: desk.open(key), aria_expanded=str(desk.opened == key).lower(), title=water.title,
     )  # fmt: skip
-    tag = "" if water.on else "out of service"
-    if water.on and desk.scenario.balance_water == water.id:
-        tag = "takes the rest"
-    state = [node("span", "tag quiet", text=tag)] if tag else []
     total = desk.scenario.total_flow()
     flow = desk.flow_text(None if total is None else total * desk.scenario.fractions()[water.id])
     return [
         title,
-        *state,
         node("span", "aside", text=flow),
         *menu(key, f"More for {water.title}", _acts(desk, water, key)),
     ]
@@ -96,6 +92,14 @@ def _balancing(desk: Desk, water: Water, key: str) -> list[Act]:
 
     words = "Let all others take the rest" if chosen else "Let it take the rest"
     return [Act("balance", words, desk.act(key, f"{words}: {water.title}", change))]
+
+
+def _state(desk: Desk, water: Water) -> Node | None:
+    """What sets a water apart: out of service, or the one that takes up what the others leave."""
+    tag = "" if water.on else "out of service"
+    if water.on and desk.scenario.balance_water == water.id:
+        tag = "takes the rest"
+    return node("div", "state", node("span", "tag quiet", text=tag)) if tag else None
 
 
 def _facts(desk: Desk, water: Water) -> Node:
