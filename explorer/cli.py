@@ -17,18 +17,19 @@ from typing import TYPE_CHECKING, Any, NoReturn
 
 import numpy as np
 
-from explorer.scenario.dials import neat, turn
+from explorer import cli_studies
+from explorer.cli_parts import UsageError, aligned, entered, number, opened, scenario_arguments
 from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import Outcome, Stage, evaluate
 from explorer.scenario.files import open_scenario
 from explorer.scenario.model import Scenario, Target
-from explorer.scenario.readouts import MINUS, NO_VALUE, READOUTS, format_value, in_words, status
+from explorer.scenario.readouts import MINUS, READOUTS, format_value, in_words, status
 from explorer.treatment.notes import Note
 
 if TYPE_CHECKING:
     from explorer.studies.sweep import Sweep
 
-COMMANDS = ("serve", "solve", "sweep", "check", "report")
+COMMANDS = ("serve", "solve", "sweep", "check", "report", *cli_studies.COMMANDS)
 
 USER_ERROR = 2
 INTERRUPTED = 130
@@ -37,10 +38,6 @@ SWEPT = ("ph", "alkalinity", "calcium", "si_calcite", "ccpp", "buffer_intensity"
 """Readouts of a sweep where none are asked for and no target names any."""
 
 STAGE_COLUMNS = ("ph", "temperature", "alkalinity", "dic", "calcium", "ccpp")
-
-
-class UsageError(ValueError):
-    """The command line itself is wrong."""
 
 
 class _Parser(argparse.ArgumentParser):
@@ -97,19 +94,21 @@ def _parser() -> argparse.ArgumentParser:
     serve.add_argument("--no-browser", action="store_true", help="do not open the browser")
 
     solve = command("solve", _solve, "Solve a scenario and print the finished water.")
-    _scenario_arguments(solve)
+    scenario_arguments(solve)
     solve.add_argument("--json", action="store_true", help="print JSON")
 
     sweep = command("sweep", _sweep, "Turn one dial over a range.")
-    _scenario_arguments(sweep)
+    scenario_arguments(sweep)
     sweep.add_argument("--dial", help="address of the dial; that of the scenario's own sweep without it")
-    sweep.add_argument("--start", type=_number, metavar="A", help="first value, in the unit of the dial")
-    sweep.add_argument("--stop", type=_number, metavar="B", help="last value")
+    sweep.add_argument("--start", type=number, metavar="A", help="first value, in the unit of the dial")
+    sweep.add_argument("--stop", type=number, metavar="B", help="last value")
     sweep.add_argument("--points", type=int, metavar="N", help="number of values")
     sweep.add_argument("--readouts", metavar="K1,K2", help="readouts, separated by commas")
     form = sweep.add_mutually_exclusive_group()
     form.add_argument("--csv", metavar="OUT", help="write a CSV file; - for the screen")
     form.add_argument("--json", action="store_true", help="print JSON")
+
+    cli_studies.register(command)
 
     check = command("check", _check, "Say whether a file is valid, its analyses balance, what is assumed.")
     check.add_argument("file", metavar="FILE")
@@ -120,46 +119,10 @@ def _parser() -> argparse.ArgumentParser:
     return parser
 
 
-def _scenario_arguments(parser: argparse.ArgumentParser) -> None:
-    parser.add_argument("file", metavar="FILE", help="scenario file")
-    parser.add_argument(
-        "--set", action="append", default=[], type=_setting, metavar="DIAL=VALUE", help="turn a dial first"
-    )
-    parser.add_argument("--season", help="season whose analyses count; the scenario's own without it")
-
-
-def _number(text: str) -> float:
-    try:
-        value = float(text)
-    except ValueError:
-        value = float("nan")
-    if not np.isfinite(value):
-        raise argparse.ArgumentTypeError(f"'{text}' is not a finite number")
-    return value
-
-
 def _port(text: str) -> int:
     if not text.isdecimal() or int(text) > 65535:
         raise argparse.ArgumentTypeError(f"'{text}' is not a port; allowed 0 to 65535")
     return int(text)
-
-
-def _setting(text: str) -> tuple[str, float]:
-    dial, equals, value = text.partition("=")
-    if not dial or not equals:
-        raise argparse.ArgumentTypeError(f"'{text}' is not of the form DIAL=VALUE")
-    try:
-        return dial.strip(), _number(value)
-    except argparse.ArgumentTypeError as error:
-        raise argparse.ArgumentTypeError(f"{dial.strip()}: {error}") from None
-
-
-def _opened(options: argparse.Namespace) -> tuple[Scenario, dict[str, float]]:
-    """The scenario, and the dials that were set, each checked against what is allowed for it."""
-    scenario = open_scenario(options.file)
-    for dial, value in options.set:
-        turn(scenario.copy(), dial, value, options.season)
-    return scenario, dict(options.set)
 
 
 # ---- commands ----------------------------------------------------------------------------------------------
@@ -175,7 +138,7 @@ def _serve(options: argparse.Namespace) -> None:
 
 
 def _solve(options: argparse.Namespace) -> None:
-    scenario, dials = _opened(options)
+    scenario, dials = opened(options)
     outcome = evaluate(scenario, dials, options.season)
     if options.json:
         print(json.dumps(solved(scenario.title, outcome), ensure_ascii=False, indent=2))
@@ -186,7 +149,7 @@ def _solve(options: argparse.Namespace) -> None:
 def _sweep(options: argparse.Namespace) -> None:
     from explorer.studies.sweep import sweep
 
-    scenario, dials = _opened(options)
+    scenario, dials = opened(options)
     if options.dial in dials:
         raise UsageError(f"{options.dial} is swept and set; allowed one of the two")
     named = options.readouts.split(",") if options.readouts else [t.readout for t in scenario.targets]
@@ -307,9 +270,9 @@ def _solved_text(scenario: Scenario, outcome: Outcome) -> Iterator[str]:
     yield from _finished_text(outcome)
     if outcome.doses:
         yield from ("", "Doses")
-        yield from _columns(
+        yield from aligned(
             [
-                [outcome.stage(step).name, _entered(value), unit, "held" if held else ""]
+                [outcome.stage(step).name, entered(value), unit, "held" if held else ""]
                 for step, (value, unit, held) in outcome.doses.items()
             ],
             right=(1,),
@@ -320,7 +283,7 @@ def _solved_text(scenario: Scenario, outcome: Outcome) -> Iterator[str]:
         [stage.name, *(format_value(stage.readout(key), READOUTS[key]) for key in STAGE_COLUMNS)]
         for stage in outcome.stages
     ]
-    yield from _columns([heading, *rows], right=range(1, len(heading)))
+    yield from aligned([heading, *rows], right=range(1, len(heading)))
     if outcome.notes:
         yield from ("", "Notes")
         yield from (f"  {note.level}: {note.where}: {note.text}" for note in outcome.notes)
@@ -340,7 +303,7 @@ def _finished_text(outcome: Outcome) -> Iterator[str]:
         for target in targets.get(key, [None]):
             band = ["", ""] if target is None else [_band(target), _status(float(value), key, target)]
             rows.append([*row, *band])
-    yield from _columns(rows, right=(1,))
+    yield from aligned(rows, right=(1,))
 
 
 def _band(target: Target) -> str:
@@ -351,28 +314,12 @@ def _band(target: Target) -> str:
 
 def _swept_text(swept: "Sweep", keys: Sequence[str]) -> Iterator[str]:
     readouts = [READOUTS[key] for key in keys]
-    columns = [[swept.dial.label, swept.dial.unit, *map(_entered, swept.x)]]
+    columns = [[swept.dial.label, swept.dial.unit, *map(entered, swept.x)]]
     for readout in readouts:
         values = swept.outcome.readout(readout.key)
         columns.append([readout.short, readout.unit, *(format_value(value, readout) for value in values)])
     for step, (values, unit, held) in swept.outcome.doses.items():
         if held:
-            columns.append([swept.outcome.stage(step).name, unit, *map(_entered, values)])
+            columns.append([swept.outcome.stage(step).name, unit, *map(entered, values)])
     columns.append(["", "", *swept.outcome.reasons().tolist()])
-    yield from _columns(list(zip(*columns, strict=True)), right=range(len(columns) - 1))
-
-
-def _entered(value: Any) -> str:
-    """A dose or dial value: four figures, without trailing zeros."""
-    value = float(value)
-    return f"{neat(float(f'{value:.4g}'))}".replace("-", MINUS) if np.isfinite(value) else NO_VALUE
-
-
-def _columns(rows: Sequence[Sequence[str]], right: Sequence[int] | range) -> Iterator[str]:
-    widths = [max(len(row[column]) for row in rows) for column in range(len(rows[0]))]
-    for row in rows:
-        cells = [
-            text.rjust(width) if column in right else text.ljust(width)
-            for column, (text, width) in enumerate(zip(row, widths, strict=True))
-        ]
-        yield f"  {'  '.join(cells)}".rstrip()
+    yield from aligned(list(zip(*columns, strict=True)), right=range(len(columns) - 1))

@@ -133,8 +133,8 @@ def _number(text: str, mark: str, line: int) -> float:
 class Comparison:
     """Model against measurement, point by point.
 
-    ``x``: dial value or dose in ``x_unit``. ``measured``, ``model``: the readout in its unit; the model is nan
-    where it has no answer, and such points do not count. ``difference``: model less measured.
+    ``x``: dial value or dose in ``x_unit``. ``measured``, ``model``: the readout in its unit; the model is
+    nan where it has no answer, and such points do not count. ``difference``: model less measured.
     """
 
     name: str

@@ -21,6 +21,9 @@ from explorer.treatment.stream import dose
 
 USUAL_POINTS, MOST_POINTS = 121, 2001
 
+ROUNDING = 1e-12
+"""Part of the range below which a dose is none."""
+
 DIAGRAM_PH = (2.0, 12.0)
 DIAGRAM_POINTS = 201
 
@@ -108,6 +111,7 @@ def titration(
     titrant = titrated(scenario, stage, chemical, unit, opposite, dials, season)
     _check_range(start, stop, points, two_sided=opposite is not None)
     x = np.linspace(start, stop, points)
+    x[np.abs(x) < ROUNDING * abs(stop - start)] = 0.0
     before, along = titrant.before, titrant.after(x)
     return Titration(
         stage=before.id,
