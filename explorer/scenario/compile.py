@@ -68,11 +68,8 @@ def compiled(scenario: Scenario, season: str | None = None) -> Plan:
     season = scenario.season if season is None else season
     if season not in scenario.seasons:
         raise ScenarioError("season", unknown(season, "one of the seasons", scenario.seasons))
-    acids = tuple(
-        WeakAcid(a.id, a.title, a.molar_mass, a.pka, a.enthalpy_kj, a.charge) for a in scenario.acids
-    )
     return Plan(
-        system=system_of(acids, float(scenario.organic_charge_density)),
+        system=system_of(scenario.weak_acids(), float(scenario.organic_charge_density)),
         season=season,
         dials=dials(scenario, season),
         sources=tuple(_source(scenario, position, season) for position in range(len(scenario.waters))),
