@@ -23,29 +23,37 @@ class Process:
     """Something that adds to, or takes from, several totals in fixed proportions.
 
     ``per_mole``: change of the totals per mole, one mapping for each reaction that counts together.
-    ``forward``, ``backward``: words for a positive and a negative extent.
+    ``marks``: totals from which its extent is read; the others that it changes are the check. ``forward``,
+    ``backward``: words for a positive and a negative extent.
     """
 
     kind: str
     forward: str
     backward: str
     per_mole: tuple[Amounts, ...]
+    marks: tuple[str, ...]
 
 
-def _solid(name: str, per_mole: Amounts) -> Process:
-    return Process("solid", f"{name} dissolves", f"{name} forms", (per_mole,))
+def _solid(name: str, metal: str, per_mole: Amounts) -> Process:
+    return Process("solid", f"{name} dissolves", f"{name} forms", ({metal: 1, **per_mole},), (metal,))
 
 
-CARBONATE = _solid("Calcium carbonate", {"calcium": 1, "dic": 1, "alkalinity": 2})
-BRUCITE = _solid("Magnesium hydroxide", {"magnesium": 1, "alkalinity": 2})
+CARBONATE = _solid("Calcium carbonate", "calcium", {"dic": 1, "alkalinity": 2})
+BRUCITE = _solid("Magnesium hydroxide", "magnesium", {"alkalinity": 2})
 FLOC = tuple(
-    _solid(
-        f"{hydroxide.metal.capitalize()} hydroxide", {hydroxide.metal: 1, "alkalinity": ALKALINITY_PER_METAL}
-    )
+    _solid(f"{hydroxide.metal.capitalize()} hydroxide", hydroxide.metal, {"alkalinity": ALKALINITY_PER_METAL})
     for hydroxide in HYDROXIDES.values()
 )
-GAS = Process("gas", "Carbon dioxide taken from the air", "Carbon dioxide lost to the air", ({"dic": 1},))
-CHLORINE = Process("reaction", "Chlorine reactions", "Chlorine reactions", REACTIONS)
+GAS = Process(
+    "gas", "Carbon dioxide taken from the air", "Carbon dioxide lost to the air", ({"dic": 1},), ("dic",)
+)
+CHLORINE = Process(
+    "reaction",
+    "Chlorine reactions",
+    "Chlorine reactions",
+    REACTIONS,
+    ("sulfite", "thiosulfate", "free_chlorine", "monochloramine", "ammonia"),
+)
 
 AT_ONCE = (*FLOC, CHLORINE)
 """What happens wherever waters or chemicals meet."""
@@ -61,24 +69,20 @@ IN_STEP: Mapping[str, tuple[Process, ...]] = {
 
 
 def explained(change: np.ndarray, kind: str, system: System) -> Iterator[tuple[Process, str, np.ndarray]]:
-    """Processes of a kind of step that explain a change (n,) of the totals [mol/L], as far as they can.
+    """Processes of a kind of step behind a change (n,) of the totals [mol/L].
 
-    Yields each process that takes place with its words and its part of the change, by least squares over the
-    proportions that are possible; what is left over is for the caller to report.
+    Yields each process that takes place with its words and its part of the change, in the proportions of its
+    stoichiometry; what these leave unexplained is for the caller to report.
     """
-    processes = IN_STEP.get(kind, AT_ONCE)
-    owners = [process for process in processes for _ in process.per_mole]
-    if not owners:
-        return
-    vectors = np.array([_vector(part, system) for process in processes for part in process.per_mole])
-    extents = np.linalg.lstsq(vectors.T, change, rcond=None)[0]
-    for process in processes:
-        own = np.array([owner is process for owner in owners])
-        part = extents[own] @ vectors[own]
+    for process in IN_STEP.get(kind, AT_ONCE):
+        vectors = np.array([_vector(part, system) for part in process.per_mole])
+        marks = [system.index[key] for key in process.marks]
+        extents = np.linalg.lstsq(vectors[:, marks].T, change[marks], rcond=None)[0]
+        part = extents @ vectors
         largest = np.abs(part).max()
         if largest > NOTICEABLE:
             part[np.abs(part) < ROUNDING * largest] = 0.0
-            yield process, process.forward if extents[own][0] > 0 else process.backward, part
+            yield process, process.forward if extents[0] > 0 else process.backward, part
 
 
 def _vector(per_mole: Amounts, system: System) -> np.ndarray:
