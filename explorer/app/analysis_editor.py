@@ -3,7 +3,6 @@
 from collections.abc import Mapping
 from dataclasses import replace
 
-from explorer.app.axes import number_text
 from explorer.app.desk import Desk, beside
 from explorer.app.entry import parse_number, show_number
 from explorer.app.live_view import Node, node
@@ -15,6 +14,7 @@ from explorer.scenario import editing
 from explorer.scenario.compile import system_of
 from explorer.scenario.measured import ENTRY_RULES
 from explorer.scenario.model import Analysis, Measured, Scenario, Water
+from explorer.scenario.words import number_text
 from explorer.treatment.analysis import AnalysisError, entry_units
 from explorer.treatment.units import Units, from_base, units_for
 

@@ -7,7 +7,6 @@ from typing import Any
 
 import numpy as np
 
-from explorer.app.axes import nice_step, number_text
 from explorer.app.entry import Entries, message, show_number
 from explorer.app.live_view import Node, node
 from explorer.app.other_units import Originals
@@ -20,6 +19,8 @@ from explorer.scenario.dials import Dial, fine_step
 from explorer.scenario.model import Analysis, Scenario
 from explorer.scenario.operations import Dose
 from explorer.scenario.readouts import MINUS, READOUTS, format_value
+from explorer.scenario.words import number_text
+from explorer.studies.axes import nice_step
 from explorer.treatment.analysis import Examination, examine
 from explorer.treatment.units import from_base
 

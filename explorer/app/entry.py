@@ -13,8 +13,8 @@ from typing import Any, ClassVar
 
 import param
 
-from explorer.app.axes import range_text
 from explorer.app.live_view import LiveView, Node, node
+from explorer.scenario.words import range_text
 
 _NUMBER = re.compile(r"[+-]?(\d+([.,]\d*)?|[.,]\d+)([eE][+-]?\d{1,3})?", re.ASCII)
 _GROUPED = re.compile(r"[+-]?[1-9]\d{0,2}(?P<mark>[.,' ])\d{3}")

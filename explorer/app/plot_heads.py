@@ -9,11 +9,11 @@ from explorer.app.entry import Entries
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
 from explorer.app.pickers import Choice, picker
-from explorer.app.pictures import Picture
 from explorer.app.state import Session
 from explorer.app.text import compact, plain, unit_text
-from explorer.app.tiles import tile_label
 from explorer.scenario.readouts import READOUTS
+from explorer.scenario.words import brief_label
+from explorer.studies.pictures import Picture
 
 FAMILIES = ("carbonate", "chlorine", "ammonia", "phosphate", "silicate", "borate")
 FURTHER_FAMILIES = ("fluoride", "sulfate", "sulfite", "acetate", "citrate", "aluminium", "iron")
@@ -115,7 +115,7 @@ class ReadoutHead(Head):
             words = f"{readout.short} {readout.key}"
             line = Choice(readout.key, compact(readout.label), unit_text(readout.unit), words)
             groups.setdefault(readout.group, []).append(line)
-        label = tile_label(READOUTS[readout_choice(self.session)])
+        label = brief_label(READOUTS[readout_choice(self.session)])
         return picker(
             "readout", f"{label} ▾", groups, self._show, look="pick", hint="Search readouts",
             title="Choose the readout of this plot",

@@ -37,7 +37,7 @@ from explorer.app.look import (
     POINTER,
     Palette,
 )
-from explorer.app.pictures import Axis, Picture
+from explorer.studies.pictures import Axis, Picture
 
 _SCRIPT = (FOLDER / "sweep.js").read_text(encoding="utf-8")
 _TICKS = """

@@ -2,7 +2,6 @@
 
 from typing import Any, ClassVar
 
-from explorer.app.axes import number_text
 from explorer.app.desk import Desk, facts, heading
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.pickers import Choice, picker
@@ -13,6 +12,7 @@ from explorer.scenario import editing
 from explorer.scenario.evaluate import Outcome
 from explorer.scenario.model import Scenario
 from explorer.scenario.readouts import MINUS, NO_VALUE, READOUTS, format_value
+from explorer.scenario.words import number_text
 
 
 def asked(point: Outcome) -> None:

@@ -3,7 +3,6 @@
 import math
 from dataclasses import replace
 
-from explorer.app.axes import number_text
 from explorer.app.desk import Desk, facts
 from explorer.app.live_view import Node, node
 from explorer.app.pickers import Act, Choice, menu, picker
@@ -14,6 +13,7 @@ from explorer.scenario.dials import Dial, step_name
 from explorer.scenario.model import DoseStep, Scenario, SideStreamStep, Step
 from explorer.scenario.readouts import READOUTS, format_value
 from explorer.scenario.steps import STEP_KINDS
+from explorer.scenario.words import number_text
 
 SETTING_WORDS = {
     "approach": "approach",

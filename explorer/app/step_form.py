@@ -3,7 +3,6 @@
 import math
 from typing import Any
 
-from explorer.app.axes import number_text
 from explorer.app.desk import Desk, facts
 from explorer.app.entry import show_number
 from explorer.app.live_view import Node, node
@@ -19,6 +18,7 @@ from explorer.scenario.fields import Choices, Flag, Number, Text
 from explorer.scenario.model import DoseStep, Hold, Quantity, Scenario, Step
 from explorer.scenario.quantity import Amount
 from explorer.scenario.readouts import READOUTS
+from explorer.scenario.words import number_text
 from explorer.treatment.catalogue import SETTINGS
 from explorer.treatment.chemicals import Chemical, dose_in, dose_moles, pump_rate
 

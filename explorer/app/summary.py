@@ -6,18 +6,17 @@ from typing import Any
 
 import numpy as np
 
-from explorer.app.axes import number_text
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
-from explorer.app.pictures import rising
 from explorer.app.state import Session
 from explorer.app.text import in_sentence, plain, unit_text
-from explorer.app.tiles import tile_label
-from explorer.app.verdict import TargetState, Verdict, verdict
 from explorer.scenario.dials import Dial
 from explorer.scenario.evaluate import Outcome
 from explorer.scenario.readouts import READOUTS, format_value
+from explorer.scenario.words import brief_label, number_text
+from explorer.studies.pictures import rising
 from explorer.studies.sweep import Sweep
+from explorer.studies.verdict import TargetState, Verdict, verdict
 
 CAUTION = (
     "For screening: confirm by bench tests; changes of treatment need the regulator's approval and licensed"
@@ -33,7 +32,7 @@ def target_states(point: Outcome, swept: Sweep | None) -> list[TargetState]:
         readout = READOUTS[target.readout]
         states.append(
             TargetState(
-                name=tile_label(readout),
+                name=brief_label(readout),
                 value=float(value),
                 text=format_value(float(value), readout),
                 unit=unit_text(readout.unit),

@@ -5,7 +5,6 @@ from __future__ import annotations
 import math
 from typing import Any
 
-from explorer.app.axes import nice_step
 from explorer.app.entry import Entries, show_number
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
@@ -13,6 +12,7 @@ from explorer.app.pickers import Choice, picker
 from explorer.app.state import Session
 from explorer.app.text import plain, unit_text
 from explorer.scenario.dials import Dial
+from explorer.studies.axes import nice_step
 from explorer.studies.sweep import Sweep
 
 

@@ -8,17 +8,6 @@ import numpy as np
 import panel as pn
 
 from explorer.app.look import PLOT_CARD_CSS, PLOT_GRID_CSS, VIEW_HOST_CSS, Palette
-from explorer.app.pictures import (
-    Axis,
-    Memory,
-    Missing,
-    Picture,
-    Quantity,
-    axis,
-    readout_picture,
-    rising,
-    species_picture,
-)
 from explorer.app.plot_heads import (
     Head,
     ReadoutHead,
@@ -32,6 +21,17 @@ from explorer.app.state import Session
 from explorer.app.sweep_controls import SweepControls
 from explorer.app.text import compact, plain, unit_text
 from explorer.scenario.readouts import READOUTS, Readout
+from explorer.studies.pictures import (
+    Axis,
+    Memory,
+    Missing,
+    Picture,
+    Quantity,
+    axis,
+    readout_picture,
+    rising,
+    species_picture,
+)
 from explorer.studies.sweep import Sweep
 
 PLOTS = ("ph", "species", "buffer", "chosen")

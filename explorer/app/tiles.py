@@ -8,14 +8,15 @@ from typing import Any
 
 import numpy as np
 
-from explorer.app.axes import Limits, range_text, steady_limits
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
-from explorer.app.pictures import Band, band_of, least_span
 from explorer.app.state import Session
-from explorer.app.text import compact, formula_text, plain, unit_text
+from explorer.app.text import compact, plain, unit_text
 from explorer.scenario.model import Target
 from explorer.scenario.readouts import MINUS, READOUTS, Readout, format_value, status
+from explorer.scenario.words import brief_label, range_text
+from explorer.studies.axes import Limits, steady_limits
+from explorer.studies.pictures import Band, band_of, least_span
 
 DEFAULTS = (
     "ph", "alkalinity", "buffer_intensity", "ccpp", "langelier_index", "hocl_percent",
@@ -27,14 +28,6 @@ _STATES = {
     "in range": ("ok", "● in range"),
     "below": ("bad", "▼ below"),
     "above": ("bad", "▲ above"),
-}
-_SHORT = {
-    "ccpp": "CaCO₃ potential",
-    "hocl_percent": "HOCl share",
-    "dic": "Inorganic carbon",
-    "chloride_sulfate_ratio": "Chloride to sulfate",
-    "si_calcite": "Calcite saturation index",
-    "si_aragonite": "Aragonite sat. index",
 }
 
 
@@ -71,19 +64,12 @@ def gauge(value: float, limits: Limits, band: Band) -> Gauge:
     return Gauge(start, stop, place(value) if np.isfinite(value) else None)
 
 
-def tile_label(readout: Readout) -> str:
-    """Name that fits on a tile."""
-    if readout.key in _SHORT:
-        return _SHORT[readout.key]
-    return readout.label if len(readout.label) <= 24 else formula_text(readout.short)
-
-
 def signed_label(readout: Readout, text: str) -> str:
     """Name on the tile with the word for the sign of the value printed: "CaCO₃ dissolves"."""
     if not readout.sign_words or not text.startswith((MINUS, "+")):
-        return tile_label(readout)
+        return brief_label(readout)
     word = readout.sign_words[0 if text.startswith(MINUS) else 1]
-    return f"{tile_label(readout).removesuffix(' potential')} {word}"
+    return f"{brief_label(readout).removesuffix(' potential')} {word}"
 
 
 class Tiles(LiveView):

@@ -3,7 +3,6 @@
 import math
 
 from explorer.app.analysis_editor import analysis_editor
-from explorer.app.axes import number_text
 from explorer.app.desk import Desk, facts
 from explorer.app.live_view import Node, node
 from explorer.app.look import water_colour
@@ -12,6 +11,7 @@ from explorer.app.step_card import train_list
 from explorer.scenario import editing
 from explorer.scenario.dials import Dial
 from explorer.scenario.model import Scenario, Water
+from explorer.scenario.words import number_text
 from explorer.treatment.analysis import balance_of
 
 

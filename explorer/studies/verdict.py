@@ -7,8 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from explorer.app.axes import number_text, range_text
-from explorer.app.text import in_sentence
+from explorer.scenario.words import in_sentence, number_text, range_text
 
 
 @dataclass(frozen=True)

@@ -5,7 +5,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from explorer.app.axes import nice_step, number_text, outward, range_text, short_number, steady_limits
+from explorer.scenario.words import number_text, range_text, short_number
+from explorer.studies.axes import nice_step, outward, steady_limits
 
 numbers = st.floats(-1e6, 1e6, allow_nan=False)
 

@@ -8,14 +8,8 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from explorer.app.axes import (
-    Limits,
-    number_text,
-    range_text,
-    short_number,
-    steady_limits,
-)
-from explorer.app.text import formula_text, in_sentence
+from explorer.scenario.words import formula_text, in_sentence, number_text, range_text, short_number
+from explorer.studies.axes import Limits, steady_limits
 
 MOST_LINES = 6
 """Species drawn one by one at most; the rest of a family is drawn as their sum."""

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from explorer.app.verdict import TargetState, calcium_carbonate, shared, stretches, verdict, where
+from explorer.studies.verdict import TargetState, calcium_carbonate, shared, stretches, verdict, where
 
 X = np.linspace(0, 100, 101)
 

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from explorer.app.pictures import (
+from explorer.studies.pictures import (
     Quantity,
     axis,
     band_of,

@@ -1,4 +1,4 @@
-"""What the plots need of arithmetic: calm axis limits, number texts. Pure functions."""
+"""What the plots need of arithmetic: calm axis limits. Pure functions."""
 
 from __future__ import annotations
 
@@ -7,7 +7,6 @@ from collections.abc import Sequence
 
 import numpy as np
 
-MINUS = "−"
 _NICE = (1.0, 2.0, 2.5, 5.0, 10.0)
 _KEEP_ABOVE = 0.4  # limits stay while the data fill at least this part of them
 
@@ -74,34 +73,3 @@ def steady_limits(
         if previous[0] - slack <= low and high <= previous[1] + slack and high - low >= _KEEP_ABOVE * width:
             return previous
     return outward(low, high)
-
-
-def number_text(value: float, digits: int, signed: bool = False) -> str:
-    """``value`` with ``digits`` decimals and a real minus; "–" where there is no value.
-
-    signed: positive values carry a plus. A value that rounds to zero has no sign.
-    """
-    if not math.isfinite(value):
-        return "–"
-    text = f"{abs(value):.{digits}f}"
-    if not float(text):
-        return text
-    return (MINUS if value < 0 else "+" if signed else "") + text
-
-
-def short_number(value: float) -> str:
-    """A bound as people write it: no trailing zeros, real minus."""
-    text = f"{abs(value):.6g}"
-    return (MINUS if value < 0 and float(text) else "") + text
-
-
-def range_text(low: float | None, high: float | None, unit: str = "") -> str:
-    """A target in words: "7.4 to 8.5", "at least 0.3", "at most 50 mg/L"."""
-    after = f" {unit}" if unit else ""
-    if low is not None and high is not None:
-        return f"{short_number(low)} to {short_number(high)}{after}"
-    if low is not None:
-        return f"at least {short_number(low)}{after}"
-    if high is not None:
-        return f"at most {short_number(high)}{after}"
-    return "no bounds"
