@@ -4,67 +4,21 @@ from __future__ import annotations
 
 from typing import Any
 
-import numpy as np
-
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
 from explorer.app.state import Session
-from explorer.app.text import in_sentence, plain, unit_text
-from explorer.scenario.dials import Dial
-from explorer.scenario.evaluate import Outcome
-from explorer.scenario.readouts import READOUTS, format_value
-from explorer.scenario.words import brief_label, number_text
-from explorer.studies.pictures import rising
-from explorer.studies.sweep import Sweep
-from explorer.studies.verdict import TargetState, Verdict, verdict
+from explorer.app.text import plain
+from explorer.studies.finding import finding, foot_line
+from explorer.studies.verdict import Verdict
 
-CAUTION = (
-    "For screening: confirm by bench tests; changes of treatment need the regulator's approval and licensed"
-    " practice."
-)
 _GLYPHS = {"error": "✕", "caution": "▲", "info": "i"}
-
-
-def target_states(point: Outcome, swept: Sweep | None) -> list[TargetState]:
-    """Every target of an outcome at the operating point, with its readout along the sweep, rising."""
-    states = []
-    for target, value, _met, _margin in point.targets():
-        readout = READOUTS[target.readout]
-        states.append(
-            TargetState(
-                name=brief_label(readout),
-                value=float(value),
-                text=format_value(float(value), readout),
-                unit=unit_text(readout.unit),
-                low=target.low,
-                high=target.high,
-                along=None if swept is None else rising(swept.x, swept.outcome.readout(target.readout)),
-                slack=readout.slack,
-                said=readout.key == "ccpp",
-            )
-        )
-    return states
 
 
 def session_verdict(session: Session) -> Verdict:
     """The verdict on what the session shows."""
-    point, swept = session.point, session.swept
-    if point is None:
+    if session.point is None:
         return Verdict("No result yet.", "", False)
-    reason = str(np.asarray(point.reasons("finished")).item() or "")
-    states = target_states(point, swept)
-    ccpp = float(point.readout("ccpp"))
-    if swept is None:
-        return verdict(states, ccpp, reason=reason)
-    unit = unit_text(swept.dial.unit)
-    return verdict(states, ccpp, rising(swept.x, swept.x), unit, swept_name(swept.dial), reason)
-
-
-def swept_name(dial: Dial) -> str:
-    """What follows a value of the dial in a sentence: "52 % Granite Wellfield", "12 mg/L (dose of …)"."""
-    if dial.address.endswith(".share"):
-        return plain(dial.group, 60)
-    return f"({in_sentence(plain(dial.label, 60))})"
+    return finding(session.point, session.swept)
 
 
 class Message(LiveView):
@@ -156,18 +110,6 @@ class Summary(LiveView):
 
     def _changed(self, *events: Any) -> None:
         self.refresh()
-
-
-def foot_line(point: Outcome | None) -> str:
-    """Temperature and state of the finished water, and what the figures are good for."""
-    if point is None:
-        return CAUTION
-    temperature = float(point.readout("temperature"))
-    open_steps = [stage.name for stage in point.stages if stage.kind == "air"]
-    state = "closed to air"
-    if open_steps:
-        state = f"closed to air except in {plain(' and '.join(open_steps), 80)}"
-    return f"Equilibrium estimate at {number_text(temperature, 1)} °C, {state}. {CAUTION}"
 
 
 class Foot(LiveView):

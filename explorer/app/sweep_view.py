@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from typing import Any
 
-import numpy as np
 import panel as pn
 
 from explorer.app.look import PLOT_CARD_CSS, PLOT_GRID_CSS, VIEW_HOST_CSS, Palette
@@ -19,44 +18,11 @@ from explorer.app.plot_heads import (
 from explorer.app.plots import LinkedPlots
 from explorer.app.state import Session
 from explorer.app.sweep_controls import SweepControls
-from explorer.app.text import compact, plain, unit_text
-from explorer.scenario.readouts import READOUTS, Readout
-from explorer.studies.pictures import (
-    Axis,
-    Memory,
-    Missing,
-    Picture,
-    Quantity,
-    axis,
-    readout_picture,
-    rising,
-    species_picture,
-)
-from explorer.studies.sweep import Sweep
+from explorer.studies.pictures import Axis, Memory, Picture
+from explorer.studies.sweep_pictures import picture_of, picture_of_species, swept_axis
 
 PLOTS = ("ph", "species", "buffer", "chosen")
 """Plots in reading order; the second column carries the labels of the species at its right."""
-
-
-def quantity_of(readout: Readout) -> Quantity:
-    """A readout as the plots name it."""
-    return Quantity(
-        compact(readout.label),
-        unit_text(readout.unit),
-        readout.digits,
-        readout.significant,
-        readout.sign_words is not None,
-    )
-
-
-def missing(swept: Sweep, key: str | None = None) -> Missing:
-    """Stretches of a sweep without a result, as the plots draw them: half a step beyond their points."""
-    half = abs(float(swept.x[1] - swept.x[0])) / 2
-    low, high = sorted((float(swept.x[0]), float(swept.x[-1])))
-    return tuple(
-        (max(min(gap.start, gap.stop) - half, low), min(max(gap.start, gap.stop) + half, high), gap.reason)
-        for gap in swept.gaps(key)
-    )
 
 
 class SweepView:
@@ -103,36 +69,24 @@ class SweepView:
 
     def pictures(self) -> tuple[dict[str, Picture], Axis]:
         """What the plots show, from the session's sweep and choices alone."""
-        swept = self.session.swept
-        x = rising(swept.x, swept.x)
-        along = axis(plain(swept.dial.label, 60), unit_text(swept.dial.unit), x)
         pictures = {
-            "ph": self._readout("ph", x, along),
-            "species": self._species(x, along),
-            "buffer": self._readout("buffer_intensity", x, along),
-            "chosen": self._readout(readout_choice(self.session), x, along),
+            "ph": self._readout("ph"),
+            "species": self._species(),
+            "buffer": self._readout("buffer_intensity"),
+            "chosen": self._readout(readout_choice(self.session)),
         }
-        return pictures, along
+        return pictures, swept_axis(self.session.swept)
 
-    def _readout(self, key: str, x: np.ndarray, along: Axis) -> Picture:
-        readout, swept = READOUTS[key], self.session.swept
-        targets = [(t.low, t.high) for t in self.session.scenario.targets if t.readout == key]
-        y = rising(swept.x, swept.outcome.readout(key))
-        previous = self._memory.limits.get(key)
-        picture = readout_picture(
-            quantity_of(readout), x, y, along, targets, missing(swept, key), previous, readout.slack
-        )
-        return self._memory.keep(key, picture)
+    def _readout(self, key: str) -> Picture:
+        targets, previous = self.session.scenario.targets, self._memory.limits.get(key)
+        return self._memory.keep(key, picture_of(self.session.swept, key, targets, previous))
 
-    def _species(self, x: np.ndarray, along: Axis) -> Picture:
-        swept = self.session.swept
+    def _species(self) -> Picture:
         family, logarithmic = family_choice(self.session), bool(self.session.choices.get("log"))
-        found = swept.outcome.solution("finished").family(family)
-        members = {name: rising(swept.x, amount) for name, amount in found.items()}
         name = family_names(self.session)[family].removesuffix(" species")
         slot = f"{family} log" if logarithmic else family
         previous = self._memory.limits.get(slot)
-        picture = species_picture(name, members, x, along, logarithmic, missing(swept), previous)
+        picture = picture_of_species(self.session.swept, family, name, logarithmic, previous)
         return self._memory.keep(slot, picture)
 
     def _want(self) -> None:

@@ -1,0 +1,72 @@
+"""Pictures of a sweep: any readout, any family of species, in the words of page and report."""
+
+from collections.abc import Sequence
+
+from explorer.scenario.model import Target
+from explorer.scenario.readouts import READOUTS, Readout
+from explorer.scenario.words import compact, plain, unit_text
+from explorer.studies.axes import Limits
+from explorer.studies.pictures import (
+    Axis,
+    Missing,
+    Picture,
+    Quantity,
+    axis,
+    readout_picture,
+    rising,
+    species_picture,
+)
+from explorer.studies.sweep import Sweep
+
+
+def swept_axis(swept: Sweep) -> Axis:
+    """The dial of a sweep as the axis of its pictures."""
+    return axis(plain(swept.dial.label, 60), unit_text(swept.dial.unit), rising(swept.x, swept.x))
+
+
+def quantity_of(readout: Readout) -> Quantity:
+    """A readout as the pictures name it."""
+    return Quantity(
+        compact(readout.label),
+        unit_text(readout.unit),
+        readout.digits,
+        readout.significant,
+        readout.sign_words is not None,
+    )
+
+
+def picture_of(swept: Sweep, key: str, targets: Sequence[Target], previous: Limits | None = None) -> Picture:
+    """A readout along a sweep, with those of the ``targets`` that are of it. ``previous``: limits in use."""
+    readout = READOUTS[key]
+    return readout_picture(
+        quantity_of(readout),
+        rising(swept.x, swept.x),
+        rising(swept.x, swept.outcome.readout(key)),
+        swept_axis(swept),
+        [(target.low, target.high) for target in targets if target.readout == key],
+        missing(swept, key),
+        previous,
+        readout.slack,
+    )
+
+
+def picture_of_species(
+    swept: Sweep, family: str, name: str, logarithmic: bool = False, previous: Limits | None = None
+) -> Picture:
+    """The species of a ``family`` in the finished water along a sweep; ``name`` is its printed name."""
+    members = {
+        species: rising(swept.x, amount)
+        for species, amount in swept.outcome.solution().family(family).items()
+    }
+    x, along = rising(swept.x, swept.x), swept_axis(swept)
+    return species_picture(name, members, x, along, logarithmic, missing(swept), previous)
+
+
+def missing(swept: Sweep, key: str | None = None) -> Missing:
+    """Stretches of a sweep without a result, as they are drawn: half a step beyond their points."""
+    half = abs(float(swept.x[1] - swept.x[0])) / 2
+    low, high = sorted((float(swept.x[0]), float(swept.x[-1])))
+    return tuple(
+        (max(min(gap.start, gap.stop) - half, low), min(max(gap.start, gap.stop) + half, high), gap.reason)
+        for gap in swept.gaps(key)
+    )
