@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import logging
 from collections.abc import Callable
 from pathlib import Path
 
@@ -14,6 +15,8 @@ from explorer.app.shell import TITLE, Shell
 from explorer.app.state import Session
 from explorer.scenario.files import ScenarioError, open_scenario
 from explorer.scenario.shipped import default_scenario_path
+
+logger = logging.getLogger(__name__)
 
 SHELF = Shelf()
 """Working copies of all tabs of this server."""
@@ -48,14 +51,19 @@ def _opened(path: Path | None) -> tuple[Work, str]:
     return Work(open_scenario(start), start.name), trouble
 
 
-def create_app(path: Path | None = None) -> Callable[[], pn.Template]:
+def create_app(path: Path | None = None) -> Callable[[], pn.viewable.Viewable | pn.Template]:
     """The factory Panel calls for every page load, starting with the scenario at ``path``."""
 
-    def page() -> pn.Template:
+    def page() -> pn.viewable.Viewable | pn.Template:
         asked = (pn.state.session_args or {}).get("copy", [b""])[0].decode("ascii", "ignore")
-        shell = build(path, asked)
         pn.state.curdoc.title = TITLE
-        shell.dress()
+        try:
+            shell = build(path, asked)
+            shell.dress()
+        except Exception:
+            # Panel's own page for errors loads fonts from elsewhere and prints the traceback.
+            logger.exception("the page could not be built")
+            return pn.pane.HTML("<p>The page could not be built; the log of the server says why.</p>")
         return shell.template
 
     return page

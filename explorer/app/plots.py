@@ -41,13 +41,13 @@ from explorer.studies.pictures import Axis, Picture
 
 _SCRIPT = (FOLDER / "sweep.js").read_text(encoding="utf-8")
 _TICKS = """
+const largest = Math.max(...ticks.map(Math.abs)), power = largest >= 1e5 ? Math.floor(Math.log10(largest)) : 0
+const scaled = (value) => Number((value / 10 ** power).toPrecision(6))
 let digits = 0
-for (const other of ticks) {
-  const decimals = String(Number(other.toPrecision(6))).split(".")[1] ?? ""
-  digits = Math.max(digits, decimals.length)
-}
-const text = Math.abs(tick).toFixed(Math.min(digits, 8))
-return (tick < 0 && Number(text) !== 0 ? "−" : "") + text + after
+for (const other of ticks) digits = Math.max(digits, (String(scaled(other)).split(".")[1] ?? "").length)
+const text = Math.abs(scaled(tick)).toFixed(Math.min(digits, 8))
+const times = power && tick ? "·10" + [...String(power)].map((digit) => "⁰¹²³⁴⁵⁶⁷⁸⁹"[digit]).join("") : ""
+return (tick < 0 && Number(text) !== 0 ? "−" : "") + text + times + after
 """
 
 
@@ -88,9 +88,7 @@ class LinePlot:
         )
         self.ends = _in_page(x=[], y=[], text=[], colour=[])
         self.crossings = ColumnDataSource(data={key: [] for key in ("x", "y", "text", "dx", "dy", "align")})
-        self.gaps = ColumnDataSource(
-            data={key: [] for key in ("x0", "x1", "x", "y", "text", "reason", "angle")}
-        )
+        self.gaps = ColumnDataSource(data={key: [] for key in ("x0", "x1", "x", "y", "text", "angle")})
         self.rings = _in_page(x=[], y=[], colour=[])
         self.labels = _in_page(x=[], y=[], text=[], colour=[], dx=[], dy=[], align=[])
         self.figure = self._build(x_range, point, cross, labels_right)
@@ -288,7 +286,6 @@ class LinePlot:
             "x": [(gap[0] + gap[1]) / 2 for gap in picture.gaps],
             "y": [sum(picture.limits) / 2] * len(parts),
             "text": ["no result" if part > 0.04 else "" for part in parts],
-            "reason": [gap[2] for gap in picture.gaps],
             "angle": [0.0 if part > 0.2 else math.pi / 2 for part in parts],
         }
 
@@ -345,7 +342,6 @@ class LinkedPlots:
             {
                 "lines": plot.lines,
                 "rings": plot.rings,
-                "gaps": plot.gaps,
                 "labels": plot.labels,
                 "ends": plot.ends,
                 "y_range": plot.y_range,

@@ -10,6 +10,7 @@ from typing import Any
 import panel as pn
 
 from explorer.app.main import create_app
+from explorer.app.shell import TITLE
 
 LOCAL_HOSTS = ("127.0.0.1", "localhost")
 LARGEST_MESSAGE = 8 * 1024 * 1024
@@ -64,6 +65,7 @@ def serve(
         port=chosen,
         address=address,
         show=open_browser,
+        title=TITLE,
         websocket_origin=sorted(allowed_hosts(address, chosen)),
         websocket_max_message_size=LARGEST_MESSAGE,
         unused_session_lifetime_milliseconds=SESSION_LIFETIME,

@@ -27,7 +27,7 @@ import param
 
 from explorer.app.calculation import Immediate, Results, Runner, solve
 from explorer.app.history import MOST_STEPS, Step, Work
-from explorer.scenario.dials import Dial, dials, get_value, turn
+from explorer.scenario.dials import Dial, dials, turn
 from explorer.scenario.editing import tidy
 from explorer.scenario.evaluate import Outcome
 from explorer.scenario.model import Scenario, SweepSetting
@@ -108,8 +108,8 @@ class Session(param.Parameterized):
         return self._dials
 
     def value(self, address: str) -> float:
-        """Current value of the dial at ``address`` in its entered unit."""
-        return get_value(self.scenario, address)
+        """Current value of the dial at ``address``, as entered. Raises KeyError for an unknown one."""
+        return self.dials[address].value
 
     # ---- changing ------------------------------------------------------------------------------------
 

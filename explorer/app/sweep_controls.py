@@ -17,15 +17,20 @@ from explorer.studies.sweep import Sweep
 
 
 def default_range(dial: Dial) -> tuple[float, float]:
-    """Range a dial is first swept over: its bounds where they are close to its value, else from zero or the
-    lower bound to a round number about twice its value."""
-    high = dial.high
-    if high is not None and math.isfinite(high) and high - dial.low <= 100:
-        return dial.low, high
+    """Range a dial is first swept over.
+
+    Percent and temperature: the bounds of the dial. pH: two units to both sides. Everything else: from the
+    lower bound to a round number about twice the value.
+    """
+    top = math.inf if dial.high is None else dial.high
+    if dial.unit in {"%", "°C"} and top - dial.low <= 100:
+        return dial.low, top
+    if dial.label.startswith("pH"):
+        middle = round(dial.value)
+        return max(dial.low, middle - 2.0), min(top, middle + 2.0)
     span = 2 * max(abs(dial.value - dial.low), 10 * dial.step)
     step = nice_step(span)
-    top = dial.low + math.ceil(span / step - 1e-9) * step
-    return dial.low, top if high is None else min(high, top)
+    return dial.low, min(top, dial.low + math.ceil(span / step - 1e-9) * step)
 
 
 def gap_words(swept: Sweep | None) -> str:

@@ -118,21 +118,21 @@ class Tiles(LiveView):
             )  # fmt: skip
             line = node("label", "", box, node("span", text=compact(readout.label)))
             groups.setdefault(readout.group, []).append(line)
-        lists = [node("div", "", node("h3", text=name), *lines) for name, lines in groups.items()]
+        # Two columns of about the same length, each group whole.
+        columns: tuple[list[Node], list[Node]] = ([], [])
+        half = sum(len(lines) + 1 for lines in groups.values()) / 2
+        filled = 0
+        for name, lines in groups.items():
+            columns[filled >= half].append(node("div", "", node("h3", text=name), *lines))
+            filled += len(lines) + 1
         hint = f"Choose {FEWEST} to {MOST} readouts"
         button = node(
             "button", "choose", text="⋮", key="choose-button", type="button", popovertarget="choose",
             title=hint, aria_label=hint, aria_haspopup="dialog", aria_expanded="false",
         )  # fmt: skip
+        halves = node("div", "halves", *(node("div", "", *column) for column in columns))
         sheet = node(
-            "div",
-            "columns",
-            *lists,
-            key="choose",
-            id="choose",
-            popover="auto",
-            role="dialog",
-            aria_label=hint,
+            "div", "wide", halves, key="choose", id="choose", popover="auto", role="dialog", aria_label=hint
         )
         return [button, sheet]
 

@@ -178,11 +178,27 @@ def test_refused_range_stays_beside_its_field(shell: Shell) -> None:
     assert shell.session.swept is before
 
 
-def test_range_of_a_new_dial_is_round() -> None:
-    """Bounded dials are swept over their bounds, open ones to about twice their value."""
-    make = SimpleNamespace
-    assert default_range(make(low=0.0, high=100.0, value=40.0, step=0.5)) == (0.0, 100.0)
-    assert default_range(make(low=0.0, high=None, value=12.3, step=0.1)) == (0.0, 30.0)
+@pytest.mark.parametrize(
+    ("dial", "swept"),
+    [
+        (
+            {"label": "Share", "unit": "%", "low": 0.0, "high": 100.0, "value": 40.0, "step": 0.5},
+            (0.0, 100.0),
+        ),
+        (
+            {"label": "pH of River", "unit": "", "low": 0.0, "high": 14.0, "value": 8.6, "step": 0.05},
+            (7.0, 11.0),
+        ),
+        (
+            {"label": "Dose", "unit": "mg/L", "low": 0.0, "high": None, "value": 12.3, "step": 0.1},
+            (0.0, 30.0),
+        ),
+        ({"label": "Dose", "unit": "mg/L", "low": 0.0, "high": None, "value": 0.0, "step": 0.1}, (0.0, 2.0)),
+    ],
+)
+def test_range_of_a_new_dial_is_round(dial: dict, swept: tuple[float, float]) -> None:
+    """What is swept first lies around the value, between round numbers."""
+    assert default_range(SimpleNamespace(**dial)) == swept
 
 
 def test_foot_line_names_temperature_and_open_steps() -> None:
