@@ -178,7 +178,7 @@ class Comparison:
         """The comparison in one sentence."""
         readout = READOUTS[self.readout]
         if not self.count:
-            return f"{self.name}: the model has no answer at any of the {self.x.size} points"
+            return f"{self.name}: the model has no answer at any measured point"
 
         def amount(value: float) -> str:
             return format_value(abs(value), readout) + readout.unit_text

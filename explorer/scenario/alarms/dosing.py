@@ -24,6 +24,9 @@ RESIDUAL_ALUMINIUM = 0.2
 BRUCITE_PH = 10.6
 """Below it magnesium hydroxide is of no concern in treatment."""
 
+SATURATED = 0.01
+"""Saturation index up to which a water counts as saturated, not more."""
+
 BRUCITE_NEEDS = 1.2
 """eq alkalinity per mol DIC; a carbonate water with less does not come near BRUCITE_PH."""
 
@@ -81,16 +84,16 @@ def aluminium_left(outcome: "Outcome") -> Iterator[Finding]:
 
 
 def brucite(outcome: "Outcome") -> Iterator[Finding]:
-    """Where magnesium hydroxide would form but no step lets it; said once a train."""
-    told = False
+    """Where magnesium hydroxide would form but no step lets it.
+
+    Ahead of a clarifier the water behind it counts: calcium carbonate that forms there lowers the pH.
+    """
     for position, stage in enumerate(outcome.stages):
-        told = told and stage.kind not in ("water", *JOINTS)
         alkaline = stage.total("alkalinity") > BRUCITE_NEEDS * stage.total("dic")
-        if told or not np.any(alkaline & (stage.total("magnesium") > 0)):
+        if not np.any(alkaline & (stage.total("magnesium") > 0)) or _settles_later(outcome, position):
             continue
-        points = (stage.readout("ph") > BRUCITE_PH) & (stage.readout("si_brucite") > 0)
-        if points.any() and not _magnesium_leaves(outcome, position):
-            told = True
+        points = (stage.readout("ph") > BRUCITE_PH) & (stage.readout("si_brucite") > SATURATED)
+        if points.any():
             text = (
                 f"above pH {BRUCITE_PH:g} magnesium hydroxide forms (saturation index"
                 f" {worst(stage, 'si_brucite', points)}), but no step lets it: add brucite to the solids of"
@@ -99,13 +102,12 @@ def brucite(outcome: "Outcome") -> Iterator[Finding]:
             yield Finding(stage.id, text, np.broadcast_to(points, outcome.shape))
 
 
-def _magnesium_leaves(outcome: "Outcome", position: int) -> bool:
-    """Whether this stage, or the next settling after it, takes magnesium out."""
-    for before, after in zip(outcome.stages[position:], outcome.stages[position + 1 :], strict=False):
-        if after.kind in ("water", *JOINTS):
+def _settles_later(outcome: "Outcome", position: int) -> bool:
+    for stage in outcome.stages[position + 1 :]:
+        if stage.kind in ("water", *JOINTS):
             return False
-        if after.kind == "settle":
-            return bool(np.any(after.total("magnesium") < before.total("magnesium")))
+        if stage.kind == "settle":
+            return True
     return False
 
 
