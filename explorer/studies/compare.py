@@ -195,16 +195,21 @@ def overlay(
     stop: float | None = None,
     points: int | None = None,
 ) -> list[tuple[Case, Sweep]]:
-    """The sweep of each case along one dial, over the range of the first; cases without the dial are left
-    out. Raises ScenarioError where the first case cannot be swept."""
+    """The sweep of each case along one dial, over the range of the first.
+
+    Cases without the dial, or with one answer at most, are left out. Raises ScenarioError where the first
+    case cannot be swept.
+    """
     first = sweep(cases[0].scenario, dial, start, stop, points, cases[0].season)
     found = [(cases[0], first)]
     ends = float(first.x[0]), float(first.x[-1]), first.x.size
     for case in cases[1:]:
         try:
-            found.append((case, sweep(case.scenario, first.address, *ends, case.season)))
+            swept = sweep(case.scenario, first.address, *ends, case.season)
         except ScenarioError:
             continue
+        if np.count_nonzero(swept.outcome.reasons() == "") > 1:
+            found.append((case, swept))
     return found
 
 
@@ -219,12 +224,23 @@ def _input_rows(cases: Sequence[Case]) -> Iterator[Row]:
         if len({*texts} - (set() if key.endswith(IN_SERVICE) else {NO_VALUE})) > 1:
             label = next(held[key][0] for held in settings if key in held)
             yield Row(INPUTS, key, label, "", texts, (None,) * len(cases))
+    yield from _order_row(cases)
     every = [dials(case.scenario, case.season) for case in cases]
     for address in _union(every):
         found = [held.get(address) for held in every]
         minor = address.rpartition(".")[2] in MINOR
         if _differ([dial for dial in found if dial is not None] if minor else found):
             yield _dial_row(address, found)
+
+
+def _order_row(cases: Sequence[Case]) -> Iterator[Row]:
+    """The steps that all cases have, where they do not stand in one order."""
+    names = [{step.id: step_name(case.scenario, step) for _, step in case.scenario.steps()} for case in cases]
+    common = set.intersection(*(set(held) for held in names))
+    orders = [[step for step in held if step in common] for held in names]
+    if any(order != orders[0] for order in orders):
+        texts = (", ".join(held[step] for step in order) for held, order in zip(names, orders, strict=True))
+        yield Row(INPUTS, "order", "Order of steps", "", tuple(texts), (None,) * len(cases))
 
 
 def _union(parts: Sequence[Mapping[str, Any]]) -> list[str]:
