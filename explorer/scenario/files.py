@@ -14,6 +14,7 @@ from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
+from explorer.scenario.embedded import is_page, read_embedded
 from explorer.scenario.errors import ScenarioError, cleaned, join
 from explorer.scenario.model import Scenario
 
@@ -47,8 +48,12 @@ class _Repeating(dict):
 
 
 def read_scenario(text: str | bytes) -> Scenario:
-    """Scenario from the text of a file. Raises ScenarioError; nothing is half-loaded."""
-    raw = _parsed(_decoded(text))
+    """Scenario from the text of a file, or of a report that carries one.
+
+    Raises ScenarioError; nothing is half-loaded.
+    """
+    content = _decoded(text)
+    raw = _parsed(read_embedded(content) if is_page(content) else content)
     for path, key in _repeated_keys(raw):
         raise ScenarioError(join(path, key), "this key stands twice; allowed once")
     return Scenario.from_dict(raw)
