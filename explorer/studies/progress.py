@@ -34,5 +34,10 @@ class Watch:
         """For a calculation that is the part from ``start`` to ``end`` of this one."""
         return Watch(lambda part: self.progress(start + part * (end - start)), self.stop)
 
+    @property
+    def silent(self) -> "Watch":
+        """For a calculation whose length nobody knows beforehand: it can be stopped but reports nothing."""
+        return Watch(stop=self.stop)
+
 
 UNWATCHED = Watch()

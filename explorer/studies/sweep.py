@@ -161,23 +161,34 @@ def sweep(
 
     Raises ScenarioError for an unknown dial, a range without length and a number of points outside 2 to 2001.
     """
+    swept, x = swept_dial(scenario, dial, start, stop, points, season)
+    plan = compiled(scenario, season)
+    overrides = dict(overrides)
+    overrides.pop(swept.address, None)
+    return Sweep(x, swept.address, swept, follow(plan, {**overrides, swept.address: x}), plan, overrides)
+
+
+def swept_dial(
+    scenario: Scenario,
+    dial: str | None = None,
+    start: float | None = None,
+    stop: float | None = None,
+    points: int | None = None,
+    season: str | None = None,
+) -> tuple[Dial, np.ndarray]:
+    """The dial of a sweep and its values, chosen and refused as :func:`sweep` says."""
     every = dials(scenario, season)
     setting = scenario.sweep
     if dial is None:
         dial = setting.dial if setting is not None else _first(every)
     if dial not in every:
         raise ScenarioError("dial", no_dial(dial, every))
-    swept = every[dial]
-    start, stop = swept_range(swept, setting, start, stop)
+    start, stop = swept_range(every[dial], setting, start, stop)
     if points is None:
         points = setting.points if setting is not None and setting.dial == dial else USUAL_POINTS
     if not 2 <= points <= MOST_POINTS:
         raise ScenarioError("points", f"{points} is out of range; allowed 2 to {MOST_POINTS}")
-    x = np.linspace(start, stop, points)
-    plan = compiled(scenario, season)
-    overrides = dict(overrides)
-    overrides.pop(dial, None)
-    return Sweep(x, dial, swept, follow(plan, {**overrides, dial: x}), plan, overrides)
+    return every[dial], np.linspace(start, stop, points)
 
 
 def _first(every: Mapping[str, Dial]) -> str:
