@@ -15,6 +15,7 @@ from explorer.scenario.fields import Flag, Number
 from explorer.scenario.model import DoseStep, Scenario, Step
 from explorer.scenario.quantity import Amount
 from explorer.scenario.readouts import MINUS, NO_VALUE, READOUTS, Readout, format_value, in_words, status
+from explorer.studies.plain import known
 from explorer.studies.sweep import Sweep, sweep
 
 CURRENT, OPTION, SEASON, SOURCE_OFF = "current", "option", "season", "source off"
@@ -316,7 +317,7 @@ def _dose_rows(cases: Sequence[Case], outcomes: Sequence[Outcome | None]) -> Ite
             continue
         units = {dose.unit for dose in doses if dose is not None}
         unit = units.pop() if len(units) == 1 else ""
-        values = tuple(None if dose is None else _known(float(dose.value)) for dose in doses)
+        values = tuple(None if dose is None else known(dose.value) for dose in doses)
         texts = tuple(
             NO_VALUE if value is None else f"{value:.4g}" + ("" if unit else f" {dose.unit}")
             for value, dose in zip(values, doses, strict=True)
@@ -333,7 +334,7 @@ def _readout_rows(
     aimed = {target.readout for case in cases for target in case.scenario.targets}
     for key in sorted(keys, key=lambda key: key not in aimed):
         readout = READOUTS[key]
-        values = tuple(None if o is None else _known(float(o.readout(key))) for o in outcomes)
+        values = tuple(None if o is None else known(o.readout(key)) for o in outcomes)
         texts = tuple(_text(value, readout) for value in values)
         if len(set(texts)) > 1:
             statuses = tuple(_status(case, readout, value) for case, value in zip(cases, values, strict=True))
@@ -346,10 +347,6 @@ def _text(value: float | None, readout: Readout) -> str:
     if readout.sign_words:
         return in_words(value, readout).removesuffix(readout.unit_text)
     return format_value(value, readout)
-
-
-def _known(value: float) -> float | None:
-    return value if np.isfinite(value) else None
 
 
 def _status(case: Case, readout: Readout, value: float | None) -> str:

@@ -16,6 +16,7 @@ from explorer.scenario.operations import Dose
 from explorer.scenario.outcome import BLEND
 from explorer.scenario.readouts import MINUS, READOUTS
 from explorer.scenario.stage import Stage
+from explorer.studies.plain import known
 from explorer.treatment.chemicals import density, dose_in
 from explorer.treatment.floc import ALKALINITY_PER_METAL
 from explorer.treatment.units import from_base, to_base
@@ -69,7 +70,7 @@ class HandCheck:
             "hand": self.hand,
             "engine": self.engine,
             "unit": self.unit,
-            "percent": self.percent,
+            "percent": known(self.percent),
         }
 
 

@@ -17,6 +17,7 @@ from explorer.scenario.fields import LARGEST_NUMBER
 from explorer.scenario.model import MeasuredPoints, Scenario
 from explorer.scenario.observed import MOST_POINTS
 from explorer.scenario.readouts import MINUS, READOUTS, format_value
+from explorer.studies.plain import known
 from explorer.studies.sweep import listed
 from explorer.studies.titration import titrated
 
@@ -205,8 +206,8 @@ class Comparison:
             "measured": self.measured.tolist(),
             "model": listed(self.model),
             "count": self.count,
-            "bias": listed(np.array([self.bias]))[0],
-            "scatter": listed(np.array([self.scatter]))[0],
+            "bias": known(self.bias),
+            "scatter": known(self.scatter),
             "worst": None if self.worst is None else float(self.x[self.worst]),
         }
 

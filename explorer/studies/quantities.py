@@ -12,6 +12,7 @@ from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import Outcome, evaluate
 from explorer.scenario.model import Quantity, Scenario
 from explorer.scenario.operations import Dose
+from explorer.studies.plain import known
 from explorer.treatment.chemicals import density, dose_in
 from explorer.treatment.notes import Note
 
@@ -114,14 +115,14 @@ class Quantities:
         totals = ("cost_per_day", "cost_per_ml", "cost_per_year", "solids_kg_per_day")
         return {
             "season": self.season,
-            "flow": _plain(self.flow),
-            "low_flow": _plain(self.low_flow),
-            "high_flow": _plain(self.high_flow),
+            "flow": known(self.flow),
+            "low_flow": known(self.low_flow),
+            "high_flow": known(self.high_flow),
             "currency": self.currency,
             "price_date": self.price_date,
             "doses": [_parts(dose) for dose in self.doses],
             "solids": [_parts(solid) for solid in self.solids],
-            **{name: _plain(getattr(self, name)) for name in totals},
+            **{name: known(getattr(self, name)) for name in totals},
             "notes": [{"level": note.level, "where": note.where, "text": note.text} for note in self.notes],
         }
 
@@ -157,17 +158,17 @@ def quantities(
     low, high = _factors(blend, low_flow, high_flow) if flowing else (1.0, 1.0)
     seasons = [evaluate(scenario, dials, other) for other in scenario.seasons if other != outcome.season]
     finished = float(outcome.stage().flow)
-    known = finished if flowing else float("nan")
+    given = finished if flowing else float("nan")
     doses = tuple(
         _dose_use(outcome, [outcome, *seasons], step, tanks.get(step), (low, high), flowing)
         for step in outcome.dosing
     )
-    solids = tuple(_solids(outcome, known))
+    solids = tuple(_solids(outcome, given))
     return Quantities(
         season=outcome.season,
-        flow=known,
-        low_flow=low * known,
-        high_flow=high * known,
+        flow=given,
+        low_flow=low * given,
+        high_flow=high * given,
         currency=scenario.currency,
         price_date=scenario.price_date,
         doses=doses,
@@ -266,13 +267,11 @@ def _notes(
 
 def _total(values: Iterator[float]) -> float:
     """Sum of what is known; nan where nothing is."""
-    known = [value for value in values if np.isfinite(value)]
-    return sum(known) if known else float("nan")
-
-
-def _plain(value: Any) -> Any:
-    return None if isinstance(value, float) and not np.isfinite(value) else value
+    entered = [value for value in values if np.isfinite(value)]
+    return sum(entered) if entered else float("nan")
 
 
 def _parts(owner: DoseUse | SolidUse) -> dict[str, Any]:
-    return {part.name: _plain(getattr(owner, part.name)) for part in fields(owner)}
+    """Fields by name; numbers that are not known as None."""
+    parts = {part.name: getattr(owner, part.name) for part in fields(owner)}
+    return {name: known(value) if isinstance(value, float) else value for name, value in parts.items()}

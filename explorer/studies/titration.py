@@ -15,6 +15,7 @@ from explorer.scenario.evaluate import Outcome, evaluate
 from explorer.scenario.model import Scenario
 from explorer.scenario.outcome import FINISHED
 from explorer.scenario.stage import Stage
+from explorer.studies.plain import known
 from explorer.studies.sweep import listed
 from explorer.treatment.chemicals import Chemical, titrant_moles, titration_units, totals_vector
 from explorer.treatment.stream import dose
@@ -71,12 +72,12 @@ class Titration:
             "chemical": self.chemical,
             "opposite": self.opposite,
             "unit": self.unit,
-            "temperature": self.temperature,
+            "temperature": known(self.temperature),
             "x": self.x.tolist(),
             "ph": listed(self.ph),
             "buffer_intensity": listed(self.buffer_intensity),
-            "own_ph": self.own_ph,
-            "own_buffer_intensity": self.own_buffer_intensity,
+            "own_ph": known(self.own_ph),
+            "own_buffer_intensity": known(self.own_buffer_intensity),
         }
 
     def table(self) -> list[list[Any]]:
@@ -220,9 +221,9 @@ class Diagram:
         """Plain lists by name; None where there is no answer."""
         return {
             "stage": self.stage,
-            "temperature": self.temperature,
+            "temperature": known(self.temperature),
             "ph": self.ph.tolist(),
-            "own_ph": self.own_ph,
+            "own_ph": known(self.own_ph),
             "families": {
                 family.key: {species: listed(values) for species, values in family.logs.items()}
                 for family in self.families
