@@ -17,7 +17,7 @@ from explorer.scenario.evaluate import Outcome
 from explorer.scenario.model import ConcentrateStep, DoseStep, Scenario, SideStreamStep, Step
 from explorer.scenario.outcome import BLEND
 from explorer.scenario.stage import Stage
-from explorer.studies.processes import explained
+from explorer.studies.processes import NOTICEABLE, explained
 from explorer.treatment.catalogue import SETTINGS
 from explorer.treatment.chemicals import Chemical, totals_vector, with_setting
 from explorer.treatment.units import default_unit, from_base, substance_units
@@ -135,13 +135,14 @@ def ledger(scenario: Scenario, outcome: Outcome) -> Ledger:
         raise ScenarioError("", f"there is no ledger: {outcome.reasons()}")
     entries = list(_Walk(scenario, outcome).plant())
     counted = [entry for entry in entries if entry.kind != SUM]
-    used = np.any([entry.moles != 0 for entry in entries], axis=0)
+    total = np.sum([entry.moles for entry in counted], axis=0)
+    unexplained = np.abs(_moles(finished) - total) > NOTICEABLE
+    used = np.any([entry.moles != 0 for entry in entries], axis=0) | unexplained
     columns = _columns(scenario, finished, used)
 
     def shown(moles: np.ndarray) -> np.ndarray:
         return np.array([_amount(column, moles, finished) for column in columns])
 
-    total = np.sum([entry.moles for entry in counted], axis=0)
     turnover = shown(np.sum([np.abs(entry.moles) for entry in counted], axis=0))
     residual = shown(_moles(finished) - total)
     return Ledger(

@@ -90,17 +90,20 @@ def test_a_plant_with_every_kind_of_step_closes(plant):
     assert {line.kind for line in book.lines} == {"source", "dose", "solid", "gas", "reaction", "water", SUM}
 
 
-def test_what_no_stoichiometry_explains_is_shown(plant):
-    """A milligram of alkalinity smuggled into the finished water does not close."""
+@pytest.mark.parametrize(
+    ("key", "eq_or_mol", "residual"), [("alkalinity", 2e-5, 1.0), ("boron", 1e-5, 0.108), ("dic", 1e-5, 0.12)]
+)
+def test_what_no_stoichiometry_explains_is_shown(plant, key, eq_or_mol, residual):
+    """A milligram smuggled into the finished water does not close, even of what nothing else brings."""
     scenario = plant({"well": 100}, [plant.dosed("caustic", "sodium_hydroxide", 10, "mg/L")])
     outcome = evaluate(scenario)
     stage = outcome.stage()
     totals = stage.stream.totals.copy()
-    totals[stage.system.index["alkalinity"]] += 2e-5
+    totals[stage.system.index[key]] += eq_or_mol
     stage.stream = replace(stage.stream, totals=totals)
     book = ledger(scenario, outcome)
     assert not book.closed
-    assert book.residual[book.column("alkalinity")] == pytest.approx(1.0, abs=0.01)
+    assert book.residual[book.column(key)] == pytest.approx(residual, abs=0.01)
     assert book.residual[book.column("sodium")] == pytest.approx(0.0, abs=1e-9)
 
 
