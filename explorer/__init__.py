@@ -7,3 +7,5 @@ import os
 # before NumPy is loaded; who has set it otherwise keeps it so.
 for library in ("OPENBLAS", "OMP", "MKL"):
     os.environ.setdefault(f"{library}_NUM_THREADS", "1")
+
+__version__ = "0.1.0"

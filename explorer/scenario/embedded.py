@@ -1,7 +1,8 @@
 """A scenario inside an HTML page, so that a report can be opened like the file it was made from.
 
-The JSON stands in a data block, which a browser neither runs nor shows. In it every ``<`` is written as its
-JSON escape: no text of a scenario can close the block, and the JSON still means the same.
+The JSON stands in a data block, which a browser neither runs nor shows. In it every sign that HTML gives a
+meaning to is written as its JSON escape: no text of a scenario can close the block, and the JSON still means
+the same.
 """
 
 import re
@@ -13,11 +14,12 @@ BLOCK = "blendwright-scenario"
 
 _OPENING = re.compile(r"<script\b[^<>]*+>")
 _CLOSING = "</script"
+_ESCAPES = {ord(sign): f"\\u{ord(sign):04x}" for sign in "<>&"}
 
 
 def embedded(text: str) -> str:
     """The element that holds the ``text`` of a scenario file."""
-    safe = text.strip().replace("<", "\\u003c")
+    safe = text.strip().translate(_ESCAPES)
     return f'<script type="application/json" id="{BLOCK}">\n{safe}\n{_CLOSING}>'
 
 

@@ -1,5 +1,7 @@
 """A page that carries a scenario opens like the file."""
 
+import json
+
 import pytest
 
 from explorer.scenario.embedded import embedded, read_embedded
@@ -30,6 +32,7 @@ def test_no_text_closes_the_block(plant, hostile):
     carried = page(embedded(dumps(scenario)))
     assert carried.count("</script") == carried.count("<script") == 1
     assert "<!--" not in carried
+    assert "&" not in embedded(dumps(scenario))
     assert read_scenario(carried).title == hostile
 
 
@@ -60,4 +63,6 @@ def test_what_is_wrong_inside_is_said_as_for_a_file(plant):
 def test_the_json_of_a_page_is_that_of_the_file_but_for_escapes(plant):
     """Taking it out by hand works too."""
     text = dumps(plant({"river": 100}, title="a < b"))
-    assert read_embedded(page(embedded(text))) == text.strip().replace("<", "\\u003c")
+    taken = read_embedded(page(embedded(text)))
+    assert taken == text.strip().replace("<", "\\u003c")
+    assert json.loads(taken) == json.loads(text)
