@@ -37,7 +37,7 @@ from explorer.app.look import (
     POINTER,
     Palette,
 )
-from explorer.studies.pictures import Axis, Picture
+from explorer.studies.pictures import Axis, Band, Picture
 
 _SCRIPT = (FOLDER / "sweep.js").read_text(encoding="utf-8")
 _TICKS = """
@@ -62,6 +62,12 @@ def _in_page(**columns: list[Any]) -> ColumnDataSource:
     return source
 
 
+def _put(source: ColumnDataSource, columns: dict[str, list[Any]]) -> None:
+    """Set columns that have changed; what stays the same is neither sent nor painted."""
+    if dict(source.data) != columns:
+        source.data = columns
+
+
 def _pointer_line(dimension: str, alpha: float) -> Span:
     """Line that follows the pointer; its place does not travel either, so its colour suits both palettes."""
     line = Span(dimension=dimension, line_width=1, line_color=POINTER, line_alpha=alpha)
@@ -78,6 +84,7 @@ class LinePlot:
         self.name = name
         self.picture: Picture | None = None
         self.palette = LIGHT
+        self._band: Band | None = None
         self.y_range = Range1d(0, 1)
         self.has_x_label = x_label
         self.lines = ColumnDataSource(
@@ -227,11 +234,13 @@ class LinePlot:
         low, high = picture.limits
         if (self.y_range.start, self.y_range.end) != (low, high):
             self.y_range.update(start=low, end=high)
-        self.band.visible = picture.band is not None
-        if picture.band is not None:
-            bottom, top = picture.band
-            if (self.band.bottom, self.band.top) != (bottom, top):
-                self.band.update(bottom=bottom, top=top)
+        if self.band.visible != (picture.band is not None):
+            self.band.visible = picture.band is not None
+        # Compared with what was set, not with what is stored: an open side is stored as something else, and
+        # setting it makes Bokeh walk through all models of the page.
+        if picture.band not in (None, self._band):
+            self.band.update(bottom=picture.band[0], top=picture.band[1])
+            self._band = picture.band
         self._draw()
         if self.has_x_label:
             label = f"{along.name}, {along.unit}" if along.unit else along.name
@@ -272,8 +281,8 @@ class LinePlot:
             "signed": [picture.signed] * count,
             "unit": [picture.unit] * count,
         }
-        self.crossings.data = self._crossing_labels(picture)
-        self.gaps.data = self._gap_labels(picture)
+        _put(self.crossings, self._crossing_labels(picture))
+        _put(self.gaps, self._gap_labels(picture))
 
     @staticmethod
     def _gap_labels(picture: Picture) -> dict[str, list[Any]]:

@@ -47,42 +47,50 @@ function settle(labels, gap, low, high) {
 const [place_digits, place_unit] = point.tags.length ? point.tags : [0, ""]
 const column = (items, key) => items.map((item) => item[key])
 
-const hovering = mine.hover !== null && inside(mine.hover)     // the range may have changed since
-const where = hovering ? mine.hover : point.location
-const left = (where - x_range.start) / (x_range.end - x_range.start) > 0.72
-for (const part of parts) {
-  const { xs, ys, colour, label, digits, figures, signed, unit } = part.lines.data
-  const low = Math.min(part.y_range.start, part.y_range.end), span = Math.abs(part.y_range.end - part.y_range.start)
-  const pixel = span / Math.max(60, part.figure.inner_height || 200)
-  const rings = [], labels = [], ends = []
-  for (let i = 0; i < xs.length; i++) {
-    const own = at(xs[i], ys[i], point.location)
-    if (own >= low - pixel && own <= low + span + pixel) rings.push({ x: point.location, y: own, colour: colour[i] })
-    const value = at(xs[i], ys[i], where)
-    if (Number.isFinite(value) && (hovering || xs.length === 1)) labels.push({
-      y: value, colour: colour[i],
-      text: (label[i] ? label[i] + " " : "") + number(value, digits[i], figures[i], signed[i])
-        + (label[i] && unit[i] === "%" ? " %" : ""),
+function draw() {
+  const hovering = mine.hover !== null && inside(mine.hover)     // the range may have changed since
+  const where = hovering ? mine.hover : point.location
+  const left = (where - x_range.start) / (x_range.end - x_range.start) > 0.72
+  for (const part of parts) {
+    const { xs, ys, colour, label, digits, figures, signed, unit } = part.lines.data
+    const low = Math.min(part.y_range.start, part.y_range.end), span = Math.abs(part.y_range.end - part.y_range.start)
+    const pixel = span / Math.max(60, part.figure.inner_height || 200)
+    const rings = [], labels = [], ends = []
+    for (let i = 0; i < xs.length; i++) {
+      const own = at(xs[i], ys[i], point.location)
+      if (own >= low - pixel && own <= low + span + pixel) rings.push({ x: point.location, y: own, colour: colour[i] })
+      const value = at(xs[i], ys[i], where)
+      if (Number.isFinite(value) && (hovering || xs.length === 1)) labels.push({
+        y: value, colour: colour[i],
+        text: (label[i] ? label[i] + " " : "") + number(value, digits[i], figures[i], signed[i])
+          + (label[i] && unit[i] === "%" ? " %" : ""),
+      })
+      let last = ys[i].length - 1
+      while (last >= 0 && !Number.isFinite(ys[i][last])) last--
+      if (label[i] && last >= 0) ends.push({ y: ys[i][last], text: label[i], colour: colour[i] })
+    }
+    if (hovering) labels.push({
+      y: low, colour: part.axis.major_label_text_color,
+      text: number(where, place_digits, 0, false) + (place_unit ? " " + place_unit : ""),
     })
-    let last = ys[i].length - 1
-    while (last >= 0 && !Number.isFinite(ys[i][last])) last--
-    if (label[i] && last >= 0) ends.push({ y: ys[i][last], text: label[i], colour: colour[i] })
+    settle(labels, 19 * pixel, low + 9 * pixel, low + span - 9 * pixel)
+    settle(ends, 15 * pixel, low, low + span)
+    part.rings.data = { x: column(rings, "x"), y: column(rings, "y"), colour: column(rings, "colour") }
+    part.labels.data = {
+      x: labels.map(() => where), y: column(labels, "at"), text: column(labels, "text"), colour: column(labels, "colour"),
+      dx: labels.map(() => left ? -9 : 9),
+      // A single value stands clear of its curve: above it, or below where there is no room.
+      dy: labels.map((item) => xs.length > 1 || item.y === low ? 0 : item.y > low + 0.88 * span ? 14 : -14),
+      align: labels.map(() => left ? "right" : "left"),
+    }
+    part.ends.data = {
+      x: ends.map(() => x_range.end), y: column(ends, "at"), text: column(ends, "text"), colour: column(ends, "colour"),
+    }
   }
-  if (hovering) labels.push({
-    y: low, colour: part.axis.major_label_text_color,
-    text: number(where, place_digits, 0, false) + (place_unit ? " " + place_unit : ""),
-  })
-  settle(labels, 19 * pixel, low + 9 * pixel, low + span - 9 * pixel)
-  settle(ends, 15 * pixel, low, low + span)
-  part.rings.data = { x: column(rings, "x"), y: column(rings, "y"), colour: column(rings, "colour") }
-  part.labels.data = {
-    x: labels.map(() => where), y: column(labels, "at"), text: column(labels, "text"), colour: column(labels, "colour"),
-    dx: labels.map(() => left ? -9 : 9),
-    // A single value stands clear of its curve: above it, or below where there is no room.
-    dy: labels.map((item) => xs.length > 1 || item.y === low ? 0 : item.y > low + 0.88 * span ? 14 : -14),
-    align: labels.map(() => left ? "right" : "left"),
-  }
-  part.ends.data = {
-    x: ends.map(() => x_range.end), y: column(ends, "at"), text: column(ends, "text"), colour: column(ends, "colour"),
-  }
+}
+
+// One message of the server changes many columns; the labels follow once, before the page is painted.
+if (!mine.due) {
+  mine.due = true
+  queueMicrotask(() => { mine.due = false; draw() })
 }
