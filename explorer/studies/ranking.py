@@ -18,7 +18,7 @@ from explorer.studies.progress import UNWATCHED, Watch
 from explorer.studies.spread import NOTHING_OFF, Input, spread_of
 from explorer.studies.tolerance import USUAL_SEED, chances
 
-SAMPLES, ALONE = 1024, 129
+SAMPLES, ALONE = 4096, 129
 """Samples of all inputs together, and values of one input alone."""
 
 WIDTH = (2.5, 97.5)
@@ -77,7 +77,7 @@ def ranking(
         values = np.broadcast_to(outcome.readout(readout), np.broadcast_shapes(parts.shape, scale.shape)[1:])
         if np.isnan(values).all(axis=-1).any():
             raise ScenarioError("", "there is no answer at this operating point; allowed where there is one")
-        low, high = np.nanpercentile(values, WIDTH, axis=-1)
+        low, high = np.nanpercentile(values, WIDTH, axis=-1, method="hazen")
         return high - low
 
     watch.done(0.0)
