@@ -40,9 +40,9 @@ export function render({ model }) {
   })
 
   model.on("msg:custom", (event) => {
-    const { text, name } = event.data ?? event
+    const { text, name, type } = event.data ?? event
     const link = document.createElement("a")
-    link.href = URL.createObjectURL(new Blob([text], { type: "application/json" }))
+    link.href = URL.createObjectURL(new Blob([text], { type }))
     link.download = name
     link.click()
     setTimeout(() => URL.revokeObjectURL(link.href), 10_000)

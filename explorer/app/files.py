@@ -15,7 +15,7 @@ from panel.custom import JSComponent
 
 from explorer.app.history import Work
 from explorer.app.look import VIEW_STYLES, styles
-from explorer.app.state import Session
+from explorer.app.state import Offer, Session
 from explorer.app.text import plain
 from explorer.scenario.files import LARGEST_FILE, ScenarioError, dumps, open_scenario, read_scenario
 from explorer.scenario.shipped import shipped
@@ -24,10 +24,10 @@ _KEPT_COPIES = 64
 _NAME = re.compile(r"[\w\-]{8,40}")
 
 
-def file_name(title: str) -> str:
+def file_name(title: str, ending: str = "json") -> str:
     """A file name from a title: letters, digits and hyphens of any script, never empty."""
     words = re.sub(r"[^\w]+", "-", title.lower()).strip("-_")
-    return f"{words[:60].rstrip('-') or 'scenario'}.json"
+    return f"{words[:60].rstrip('-') or 'scenario'}.{ending}"
 
 
 class Shelf:
@@ -84,6 +84,7 @@ class FileDesk(JSComponent):
         self._session = session
         super().__init__(stylesheets=styles(VIEW_STYLES), **settings)
         session.param.watch(self._changed, ["structure", "unsaved", "scenario"])
+        session.param.watch(lambda event: self._send(event.new), "offered")
         self._changed()
 
     def open_bytes(self, content: bytes, name: str) -> str:
@@ -114,8 +115,12 @@ class FileDesk(JSComponent):
     def save(self) -> None:
         """Hand the scenario to the browser as a download."""
         session = self._session
-        self._send_msg({"text": dumps(session.scenario), "name": file_name(session.scenario.title)})
+        name, text = file_name(session.scenario.title), dumps(session.scenario)
+        session.offer(name, text, "application/json")
         session.mark_saved()
+
+    def _send(self, offer: Offer) -> None:
+        self._send_msg({"name": offer.name, "text": offer.text, "type": offer.kind})
 
     def _refuse(self, name: str, why: str) -> str:
         sentence = f"{plain(name, 60)} was not opened: {plain(why, 400)}"

@@ -2,9 +2,11 @@
 // Every text goes in as text: nothing here reads markup.
 
 const TAGS = new Set(["div", "section", "span", "p", "h2", "h3", "h4", "ol", "ul", "li", "label", "button", "input",
-  "select", "option", "optgroup", "table", "colgroup", "col", "thead", "tbody", "tr", "th", "td", "strong", "small", "details", "summary"])
-const ATTRIBUTE = /^(class|id|title|type|role|tabindex|placeholder|min|max|step|disabled|hidden|list|for|label|selected|scope|colspan|autocomplete|inputmode|maxlength|size|autofocus|popover|popovertarget|aria-[a-z]+|data-[a-z]+)$/
+  "select", "option", "optgroup", "textarea", "table", "caption", "colgroup", "col", "thead", "tbody", "tfoot", "tr", "th", "td",
+  "strong", "small", "details", "summary"])
+const ATTRIBUTE = /^(class|id|title|type|role|tabindex|placeholder|min|max|step|disabled|hidden|list|for|label|selected|scope|colspan|rowspan|open|accept|rows|spellcheck|autocomplete|inputmode|maxlength|size|autofocus|popover|popovertarget|aria-[a-z]+|data-[a-z]+)$/
 
+const LARGEST_FILE = 1_000_000   // bytes of a text file; of a larger one only the name is told
 const PATIENCE_MS = 1000   // an unanswered report holds back the next no longer than this
 
 export function render({ model, el }) {
@@ -165,15 +167,21 @@ export function render({ model, el }) {
     const element = event.target
     if (!element.hasAttribute("data-on") || element.type === "range") return
     if (element.type === "checkbox") return tell(element, element.checked)
+    if (element.type === "file") return tellFile(element)
     element._sent = element.value
     tell(element, element.value)
   })
+  async function tellFile(chooser) {
+    const file = chooser.files[0]
+    chooser.value = ""     // the same file can be chosen again
+    if (file) tell(chooser, { name: file.name, text: file.size > LARGEST_FILE ? null : await file.text() })
+  }
   view.addEventListener("click", (event) => {
     const button = event.target.closest("button")
     if (!button) return
     const sheet = button.closest("[popover]")
     if (button.hasAttribute("data-on")) tell(button)
-    if (sheet && !button.hasAttribute("popovertarget")) sheet.hidePopover()
+    if (sheet && !button.hasAttribute("popovertarget") && !button.hasAttribute("data-stays")) sheet.hidePopover()
   })
 
   // ---- keys, menus and searchable lists ----------------------------------------------------------
@@ -184,6 +192,14 @@ export function render({ model, el }) {
     if (event.key === "Escape" && element.tagName === "INPUT" && !sheet && element._known !== undefined) {
       element.value = element._known
       element.select()
+    }
+    if (element.getAttribute("role") === "tab") {
+      const tabs = [...element.parentElement.querySelectorAll("[role=tab]")], at = tabs.indexOf(element)
+      const to = { ArrowRight: (at + 1) % tabs.length, ArrowLeft: at - 1, Home: 0, End: -1 }[event.key]
+      if (to === undefined) return
+      event.preventDefault()
+      tabs.at(to).focus()
+      tabs.at(to).click()
     }
     if (!sheet) return
     const choices = [...sheet.querySelectorAll("button")].filter((button) => button.checkVisibility())
@@ -201,15 +217,29 @@ export function render({ model, el }) {
 
   function filter(search) {
     const words = search.value.toLowerCase().split(/\s+/).filter(Boolean)
-    const sheet = search.closest("[popover]")
+    const sheet = search.closest("[popover], [data-filtered]")
     for (const choice of sheet.querySelectorAll("[data-words]")) {
-      choice.hidden = !words.every((word) => choice.dataset.words.includes(word))
-      choice.style.order = words.length && choice.dataset.words.startsWith(words[0]) ? 0 : 1
+      const own = choice.dataset.words || choice.textContent.toLowerCase()
+      choice.hidden = !words.every((word) => own.includes(word))
+      choice.style.order = words.length && own.startsWith(words[0]) ? 0 : 1
     }
-    for (const group of sheet.querySelectorAll("[data-group]"))
+    for (const group of sheet.querySelectorAll("[data-group]")) {
       group.hidden = !group.querySelector("[data-words]:not([hidden])")
+      if (group.tagName === "DETAILS") unfold(group, words.length > 0)
+    }
     for (const none of sheet.querySelectorAll("[data-none]"))
       none.hidden = Boolean(sheet.querySelector("[data-words]:not([hidden])"))
+  }
+
+  // A folded part is open while something is looked for in it, and afterwards as it was before.
+  function unfold(part, looking) {
+    if (looking) {
+      part._before ??= part.open
+      part.open = true
+    } else if (part._before !== undefined) {
+      part.open = part._before
+      delete part._before
+    }
   }
 
   view.addEventListener("beforetoggle", (event) => {

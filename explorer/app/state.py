@@ -13,6 +13,7 @@ parameter       when it changes
 ``swept``       the sweep has been solved (``Sweep``), always together with ``point``
 ``message``     one sentence the user has to read, "" when there is none
 ``stale``       True while the results on screen belong to inputs that could not be solved
+``offered``     a file is there for the user to save (``Offer``); ``files`` hands it to the browser
 ==============  =====================================================================================
 """
 
@@ -21,6 +22,7 @@ from __future__ import annotations
 import math
 import time
 from collections.abc import Callable, Iterable
+from dataclasses import dataclass
 from typing import Any
 
 import param
@@ -36,6 +38,15 @@ MERGE_SECONDS = 0.8
 """Turns of one dial that follow each other faster than this are one undo step."""
 
 Change = Callable[[Scenario], None]
+
+
+@dataclass(frozen=True, eq=False)
+class Offer:
+    """A file for the user to save: its name, its text, and what kind of text that is."""
+
+    name: str
+    text: str
+    kind: str
 
 
 class Session(param.Parameterized):
@@ -59,6 +70,7 @@ class Session(param.Parameterized):
     message = param.String("", doc="sentence for the message line")
     stale = param.Boolean(False, doc="results on screen belong to earlier inputs")
     choices = param.Dict({}, doc="what views show (tiles, plots); not part of the scenario file")
+    offered = param.Parameter(doc="Offer, the last file made for the user to save; None at first")
     unsaved = param.Boolean(False)
     can_undo = param.Boolean(False)
     can_redo = param.Boolean(False)
@@ -212,6 +224,10 @@ class Session(param.Parameterized):
         """Remember what a view shows, by name of the choice; neither an undo step nor an unsaved change."""
         self.work.choices |= choices
         self.choices = dict(self.work.choices)
+
+    def offer(self, name: str, text: str, kind: str = "text/csv") -> None:
+        """Let the user save a text as a file of this name."""
+        self.offered = Offer(name, text, kind)
 
     def mark_saved(self) -> None:
         """The scenario as it stands has been written to a file."""

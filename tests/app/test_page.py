@@ -40,7 +40,7 @@ def words(shell: Shell, key: str) -> str:
 
 
 def curve(shell: Shell, plot: str) -> np.ndarray:
-    return np.asarray(shell.sweep.plots.plots[plot].lines.data["ys"][0])
+    return np.asarray(shell.views["sweep"].plots.plots[plot].lines.data["ys"][0])
 
 
 def test_whole_page_can_be_built_for_every_shipped_scenario() -> None:
@@ -107,12 +107,12 @@ def test_gauge_places(value: float, band: tuple, places: tuple) -> None:
 
 def test_another_dial_changes_all_plots_but_not_their_models(shell: Shell) -> None:
     """Figures are built once; turning changes columns."""
-    figures = [plot.figure for plot in shell.sweep.plots.plots.values()]
+    figures = [plot.figure for plot in shell.views["sweep"].plots.plots.values()]
     count = len(figures[0].references())
     before = curve(shell, "ph").copy()
     shell.session.turn("waters.river.analysis.ph", 8.2)
     assert not np.allclose(before, curve(shell, "ph"))
-    assert [plot.figure for plot in shell.sweep.plots.plots.values()] == figures
+    assert [plot.figure for plot in shell.views["sweep"].plots.plots.values()] == figures
     assert len(figures[0].references()) == count
 
 
@@ -120,12 +120,12 @@ def test_dragged_point_turns_the_dial_to_its_step(shell: Shell) -> None:
     """The noise of a drag is rounded away; the point is one and the same in all plots."""
     spans = {
         id(span)
-        for plot in shell.sweep.plots.plots.values()
+        for plot in shell.views["sweep"].plots.plots.values()
         for span in plot.figure.select(Span)
         if span.name == "operating-point"
     }
     assert len(spans) == 1
-    shell.sweep.plots.point.location = 62.2999873
+    shell.views["sweep"].plots.point.location = 62.2999873
     step = shell.session.dials[WELL].step
     assert shell.session.value(WELL) == pytest.approx(62.3, abs=step / 2)
     assert shell.session.value(WELL) / step == pytest.approx(round(shell.session.value(WELL) / step))
@@ -134,20 +134,20 @@ def test_dragged_point_turns_the_dial_to_its_step(shell: Shell) -> None:
 def test_point_follows_the_dial(shell: Shell) -> None:
     """A share typed in the rail moves the point in the plots, once."""
     shell.session.turn(WELL, 25)
-    assert shell.sweep.plots.point.location == pytest.approx(25)
+    assert shell.views["sweep"].plots.point.location == pytest.approx(25)
     assert len(shell.session.work.past) == 1
 
 
 def test_axes_stay_while_a_dial_is_turned_a_little(shell: Shell) -> None:
     """The curve moves, the axis does not."""
-    limits = {name: (p.y_range.start, p.y_range.end) for name, p in shell.sweep.plots.plots.items()}
+    limits = {name: (p.y_range.start, p.y_range.end) for name, p in shell.views["sweep"].plots.plots.items()}
     shell.session.turn("train.hypo.dose", 1.3)
-    assert {name: (p.y_range.start, p.y_range.end) for name, p in shell.sweep.plots.plots.items()} == limits
+    assert {name: (p.y_range.start, p.y_range.end) for name, p in shell.views["sweep"].plots.plots.items()} == limits
 
 
 def test_plots_carry_words_that_follow_the_data(shell: Shell) -> None:
     """What a screen reader says of a plot changes with the curve."""
-    figure = shell.sweep.plots.plots["ph"].figure
+    figure = shell.views["sweep"].plots.plots["ph"].figure
     before = figure.html_attributes["aria-label"]
     assert before.startswith("pH against share of Granite Wellfield")
     shell.session.choose_season("summer")
@@ -156,25 +156,25 @@ def test_plots_carry_words_that_follow_the_data(shell: Shell) -> None:
 
 def test_dark_palette_reaches_the_curves(shell: Shell) -> None:
     """Colours in columns are exchanged with the palette."""
-    shell.sweep.restyle(DARK)
-    assert shell.sweep.plots.plots["ph"].lines.data["colour"] == [DARK.accent]
-    assert shell.sweep.plots.plots["species"].lines.data["colour"][0] == DARK.series[0]
+    shell.views["sweep"].restyle(DARK)
+    assert shell.views["sweep"].plots.plots["ph"].lines.data["colour"] == [DARK.accent]
+    assert shell.views["sweep"].plots.plots["species"].lines.data["colour"][0] == DARK.series[0]
 
 
 def test_gap_in_the_sweep_is_drawn_and_explained(shell: Shell) -> None:
     """Where no water has the entered pH the curve has a gap, and its reason stands beside the controls."""
     assert shell.session.set_sweep(dial="waters.river.analysis.ph", start=6, stop=14) == ""
-    plot = shell.sweep.plots.plots["ph"]
+    plot = shell.views["sweep"].plots.plots["ph"]
     assert np.isnan(curve(shell, "ph")[-1])
     assert len(plot.gaps.data["x0"]) == 1
-    assert "▲ No result from " in shell.sweep.controls.describe().words()
+    assert "▲ No result from " in shell.views["sweep"].controls.describe().words()
 
 
 def test_refused_range_stays_beside_its_field(shell: Shell) -> None:
     """A sweep of no length is refused in words and nothing is swept anew."""
     before = shell.session.swept
-    shell.sweep.controls.report("stop", "0")
-    assert "differ" in shell.sweep.controls.describe().words()
+    shell.views["sweep"].controls.report("stop", "0")
+    assert "differ" in shell.views["sweep"].controls.describe().words()
     assert shell.session.swept is before
 
 
@@ -289,7 +289,8 @@ def test_save_marks_the_scenario_as_saved(shell: Shell, monkeypatch: pytest.Monk
     monkeypatch.setattr(FileDesk, "_send_msg", lambda self, message: sent.append(message))
     shell.session.turn(WELL, 33)
     shell.files.save()
-    assert sent == [{"text": dumps(shell.session.scenario), "name": "amber-river-and-wellfield.json"}]
+    name, kind = "amber-river-and-wellfield.json", "application/json"
+    assert sent == [{"text": dumps(shell.session.scenario), "name": name, "type": kind}]
     assert not shell.session.unsaved
 
 
