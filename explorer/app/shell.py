@@ -13,9 +13,9 @@ from explorer.app.look import FOLDER, THEMES, Palette, page_css
 from explorer.app.rail import Rail
 from explorer.app.state import Session
 from explorer.app.summary import Foot, Message, Summary
-from explorer.app.sweep_view import SweepView
 from explorer.app.theme import ThemeSwitch
 from explorer.app.tiles import Tiles
+from explorer.app.view_tabs import ViewTabs
 
 TITLE = "Blendwright"
 
@@ -35,7 +35,7 @@ class Shell:
         self.tiles = Tiles(session)
         self.summary = Summary(session)
         self.message = Message(session)
-        self.sweep = SweepView(session)
+        self.views = ViewTabs(session)
         self.foot = Foot(session)
         self.template = self._page()
 
@@ -50,7 +50,7 @@ class Shell:
             "message": self.message,
             "tiles": self.tiles,
             "summary": self.summary,
-            "views": self.sweep.view,
+            "views": self.views.view,
             "foot": self.foot,
         }
 
@@ -70,7 +70,7 @@ class Shell:
             with pn.io.hold():
                 if document is not None:
                     document.theme = THEMES[palette.scheme]
-                self.sweep.restyle(palette)
+                self.views.restyle(palette)
 
         self.theme.follow(restyle)
         # Panel sets a theme of its own while it builds the page; ours has to come after it.

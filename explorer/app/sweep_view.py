@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from typing import Any
-
 import panel as pn
 
 from explorer.app.look import PLOT_CARD_CSS, PLOT_GRID_CSS, VIEW_HOST_CSS, Palette
@@ -18,6 +16,7 @@ from explorer.app.plot_heads import (
 from explorer.app.plots import LinkedPlots
 from explorer.app.state import Session
 from explorer.app.sweep_controls import SweepControls
+from explorer.app.view import View
 from explorer.studies.pictures import Axis, Memory, Picture
 from explorer.studies.sweep_pictures import picture_of, picture_of_species, swept_axis
 
@@ -25,11 +24,13 @@ PLOTS = ("ph", "species", "buffer", "chosen")
 """Plots in reading order; the second column carries the labels of the species at its right."""
 
 
-class SweepView:
-    """Control row and plots. ``view`` is the Panel object for the page."""
+class SweepView(View):
+    """Control row and plots."""
+
+    watched = ("swept", "point", "choices", "structure")
 
     def __init__(self, session: Session) -> None:
-        self.session = session
+        super().__init__(session)
         self.controls = SweepControls(session)
         self.plots = LinkedPlots(list(PLOTS), self._turned)
         kinds = {"species": SpeciesHead, "chosen": ReadoutHead}
@@ -47,13 +48,14 @@ class SweepView:
         self.view = pn.Column(
             self.controls, grid, sizing_mode="stretch_both", margin=0, stylesheets=[VIEW_HOST_CSS]
         )
-        self._want()
-        session.param.watch(self._changed, ["swept", "point", "choices", "structure"])
-        self.show()
 
     def restyle(self, palette: Palette) -> None:
-        """Take the colours of another palette."""
+        super().restyle(palette)
         self.plots.restyle(palette)
+
+    def closed(self) -> None:
+        super().closed()
+        self.session.want("sweep", ())
 
     def show(self) -> None:
         """Bring the plots to the session's sweep."""
@@ -104,14 +106,12 @@ class SweepView:
         if refused:
             self.session.message = refused
 
-    def _changed(self, *events: Any) -> None:
-        names = {event.name for event in events}
-        if names & {"choices"}:
-            self._want()
-        if names & {"structure"}:
+    def follow(self, changed: set[str]) -> None:
+        self._want()
+        if "structure" in changed:
             self._memory.limits.clear()
-        if names & {"swept", "point", "choices"}:
+        if changed & {"swept", "point", "choices"}:
             self.show()
-        if names & {"structure", "choices"}:
+        if changed & {"structure", "choices"}:
             for head in self.heads.values():
                 head.refresh()
