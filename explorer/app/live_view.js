@@ -201,14 +201,6 @@ export function render({ model, el }) {
       tabs.at(to).focus()
       tabs.at(to).click()
     }
-    if (element.getAttribute("role") === "tab") {
-      const tabs = [...element.parentElement.querySelectorAll("[role=tab]")], at = tabs.indexOf(element)
-      const to = { ArrowRight: (at + 1) % tabs.length, ArrowLeft: at - 1, Home: 0, End: -1 }[event.key]
-      if (to === undefined) return
-      event.preventDefault()
-      tabs.at(to).focus()
-      tabs.at(to).click()
-    }
     if (!sheet) return
     const choices = [...sheet.querySelectorAll("button")].filter((button) => button.checkVisibility())
     choices.sort((one, other) => one.getBoundingClientRect().top - other.getBoundingClientRect().top)
