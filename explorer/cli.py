@@ -17,7 +17,7 @@ from typing import TYPE_CHECKING, Any, NoReturn
 
 import numpy as np
 
-from explorer import cli_studies
+from explorer import cli_spread, cli_studies
 from explorer.cli_parts import UsageError, aligned, entered, number, opened, scenario_arguments
 from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import Outcome, Stage, evaluate
@@ -29,7 +29,7 @@ from explorer.treatment.notes import Note
 if TYPE_CHECKING:
     from explorer.studies.sweep import Sweep
 
-COMMANDS = ("serve", "solve", "sweep", "check", "report", *cli_studies.COMMANDS)
+COMMANDS = ("serve", "solve", "sweep", "check", "report", *cli_studies.COMMANDS, *cli_spread.COMMANDS)
 
 USER_ERROR = 2
 INTERRUPTED = 130
@@ -109,6 +109,7 @@ def _parser() -> argparse.ArgumentParser:
     form.add_argument("--json", action="store_true", help="print JSON")
 
     cli_studies.register(command)
+    cli_spread.register(command)
 
     check = command("check", _check, "Say whether a file is valid, its analyses balance, what is assumed.")
     check.add_argument("file", metavar="FILE")

@@ -8,6 +8,7 @@ goes on: it finds extremes that lie inside, where a readout has a minimum of its
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from types import MappingProxyType
+from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -71,6 +72,17 @@ class Extreme:
     places: Mapping[str, float]
     dials: Mapping[str, float]
     corner: bool
+
+    def to_dict(self) -> dict[str, Any]:
+        """Plain numbers by name."""
+        return {
+            "value": self.value,
+            "x": self.x,
+            "season": self.season,
+            "places": dict(self.places),
+            "dials": dict(self.dials),
+            "corner": self.corner,
+        }
 
 
 def extremes(

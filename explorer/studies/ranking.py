@@ -1,9 +1,10 @@
 """Which tolerance matters, which measurement pays, and how wide a tolerance may be."""
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import asdict, dataclass
 from itertools import product
 from types import MappingProxyType
+from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -49,6 +50,14 @@ class Ranking:
     readout: str
     width: float
     ranks: tuple[Rank, ...]
+
+    def to_dict(self) -> dict[str, Any]:
+        """Plain numbers by name, in the order of the ranks."""
+        inputs = [
+            {"name": r.input.name, "label": r.input.label, "alone": r.alone, "removed": r.removed}
+            for r in self.ranks
+        ]
+        return {"readout": self.readout, "width": self.width, "inputs": inputs}
 
 
 def ranking(
@@ -117,6 +126,10 @@ class Allowed:
     nominal: float
     at: Mapping[str, float]
     limited: bool
+
+    def to_dict(self) -> dict[str, Any]:
+        """Plain values by name."""
+        return asdict(self)
 
 
 def allowed_tolerance(
