@@ -111,6 +111,9 @@ DASHES: tuple[list[int], ...] = (
 """Dash of the n-th line of a plot, in pixels on and off; [] is solid."""
 
 LINE_WIDTH = 2.2
+FAN_ALPHA = 0.15
+"""Of each layer of a fan; where layers overlap they add up."""
+
 POINTER = "#7f8f93"
 """Line under the pointer, in both palettes."""
 

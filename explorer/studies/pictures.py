@@ -48,6 +48,15 @@ class Mark:
 
 
 @dataclass(frozen=True)
+class Layer:
+    """Part of a fan: between ``low`` and ``high`` lie ``percent`` of all outcomes; nan where there are none."""
+
+    percent: float
+    low: np.ndarray
+    high: np.ndarray
+
+
+@dataclass(frozen=True)
 class Picture:
     """Everything one plot shows."""
 
@@ -65,6 +74,7 @@ class Picture:
     gaps: Missing = ()
     words: str = ""
     empty: str = ""
+    fan: tuple[Layer, ...] = ()
 
 
 @dataclass(frozen=True)

@@ -1,0 +1,270 @@
+"""One plot of a quantity along a dial: curves, their fan, target band, crossings, gaps, operating point."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from typing import Any
+
+import numpy as np
+from bokeh.models import (
+    BasicTicker,
+    BoxAnnotation,
+    ColumnDataSource,
+    CrosshairTool,
+    PlainText,
+    Range1d,
+    Span,
+)
+from bokeh.plotting import figure
+
+from explorer.app.look import CROSSING_MARKER, DASHES, FAN_ALPHA, LIGHT, LINE_WIDTH, POINT_MARKER, Palette
+from explorer.app.plot_parts import in_page, lettered, pointer_line, put, ticks
+from explorer.studies.pictures import Axis, Band, Layer, Picture
+
+
+class LinePlot:
+    """One figure, built once; :meth:`show` changes columns and ranges only."""
+
+    def __init__(
+        self, name: str, x_range: Range1d, point: Span, cross: Span, labels_right: bool, x_label: bool
+    ) -> None:
+        self.name = name
+        self.picture: Picture | None = None
+        self.palette = LIGHT
+        self._band: Band | None = None
+        self.y_range = Range1d(0, 1)
+        self.has_x_label = x_label
+        self.lines = ColumnDataSource(
+            data={
+                key: []
+                for key in ("xs", "ys", "colour", "dash", "label", "digits", "figures", "signed", "unit")
+            }
+        )
+        self.fan = ColumnDataSource(data={"xs": [], "ys": [], "alpha": []})
+        self.ends = in_page(x=[], y=[], text=[], colour=[])
+        self.crossings = ColumnDataSource(data={key: [] for key in ("x", "y", "text", "dx", "dy", "align")})
+        self.gaps = ColumnDataSource(data={key: [] for key in ("x0", "x1", "x", "y", "text", "angle")})
+        self.rings = in_page(x=[], y=[], colour=[])
+        self.labels = in_page(x=[], y=[], text=[], colour=[], dx=[], dy=[], align=[])
+        self.figure = self._build(x_range, point, cross, labels_right)
+
+    def _build(self, x_range: Range1d, point: Span, cross: Span, labels_right: bool) -> figure:
+        fig = figure(
+            name=self.name,
+            x_range=x_range,
+            y_range=self.y_range,
+            tools=[],
+            toolbar_location=None,
+            sizing_mode="stretch_both",
+            min_height=120,
+            min_border_left=54,
+            min_border_top=6,
+            min_border_right=74 if labels_right else 28,
+            min_border_bottom=26,
+            output_backend="canvas",
+            html_attributes={"role": "img", "aria-label": self.name},
+        )
+        fig.xgrid.grid_line_color = None
+        fig.xaxis.formatter, fig.yaxis.formatter = ticks(), ticks()
+        fig.yaxis.ticker = BasicTicker(desired_num_ticks=5)
+        fig.xaxis.ticker = BasicTicker(desired_num_ticks=6)
+        fig.yaxis.axis_line_color = None
+        self.band = BoxAnnotation(
+            level="underlay", fill_alpha=0.1, line_alpha=0.35, line_dash=[2, 2], visible=False
+        )
+        fig.add_layout(self.band)
+        self.gap = fig.vstrip(
+            x0="x0",
+            x1="x1",
+            source=self.gaps,
+            level="underlay",
+            line_alpha=0,
+            fill_alpha=0.5,
+            hatch_pattern="right_diagonal_line",
+            hatch_scale=8,
+            hatch_weight=0.6,
+            hatch_alpha=0.5,
+        )
+        self.gap_text = lettered(
+            fig,
+            self.gaps,
+            angle="angle",
+            text_align="center",
+            text_baseline="middle",
+            background_fill_alpha=0.9,
+            padding=3,
+            border_radius=3,
+        )
+        self.fan_area = fig.patches(xs="xs", ys="ys", source=self.fan, fill_alpha="alpha", line_alpha=0)
+        self.curve = fig.multi_line(
+            xs="xs",
+            ys="ys",
+            source=self.lines,
+            line_color="colour",
+            line_dash="dash",
+            line_width=LINE_WIDTH,
+            line_join="round",
+        )
+        self.crossing = fig.scatter(
+            x="x",
+            y="y",
+            source=self.crossings,
+            marker=CROSSING_MARKER,
+            size=9,
+            line_width=1.2,
+            level="annotation",
+        )
+        self.crossing_text = lettered(
+            fig,
+            self.crossings,
+            x_offset="dx",
+            y_offset="dy",
+            text_align="align",
+            text_baseline="bottom",
+            level="annotation",
+        )
+        self.end = lettered(
+            fig,
+            self.ends,
+            size=12,
+            text_color="colour",
+            x_offset=7,
+            text_baseline="middle",
+            level="overlay",
+        )
+        fig.add_layout(point)
+        self.ring = fig.scatter(
+            x="x",
+            y="y",
+            source=self.rings,
+            marker=POINT_MARKER,
+            size=9,
+            line_width=LINE_WIDTH,
+            line_color="colour",
+            level="overlay",
+        )
+        self.label = lettered(
+            fig,
+            self.labels,
+            size=12,
+            text_color="colour",
+            text_font_style="bold",
+            x_offset="dx",
+            y_offset="dy",
+            text_align="align",
+            text_baseline="middle",
+            background_fill_alpha=0.88,
+            padding=3,
+            border_radius=3,
+            level="overlay",
+        )
+        fig.add_tools(CrosshairTool(overlay=[cross, pointer_line("width", 0.0)]))
+        return fig
+
+    # ---- drawing -------------------------------------------------------------------------------------
+
+    def show(self, picture: Picture, along: Axis) -> None:
+        """Bring the figure to ``picture``; call inside one hold for all plots."""
+        self.picture = picture
+        low, high = picture.limits
+        if (self.y_range.start, self.y_range.end) != (low, high):
+            self.y_range.update(start=low, end=high)
+        if self.band.visible != (picture.band is not None):
+            self.band.visible = picture.band is not None
+        # Compared with what was set, not with what is stored: an open side is stored as something else, and
+        # setting it makes Bokeh walk through all models of the page.
+        if picture.band not in (None, self._band):
+            self.band.update(bottom=picture.band[0], top=picture.band[1])
+            self._band = picture.band
+        self._draw()
+        if self.has_x_label:
+            label = f"{along.name}, {along.unit}" if along.unit else along.name
+            if getattr(self.figure.xaxis[0].axis_label, "text", None) != label:
+                self.figure.xaxis[0].axis_label = PlainText(label)
+        self.figure.html_attributes = {"role": "img", "aria-label": picture.words}
+
+    def restyle(self, palette: Palette) -> None:
+        """Take the colours of another palette."""
+        self.palette = palette
+        self.band.update(fill_color=palette.ok, line_color=palette.ok)
+        self.fan_area.glyph.fill_color = palette.accent
+        self.gap.glyph.update(fill_color=palette.track, hatch_color=palette.soft)
+        self.gap_text.glyph.update(text_color=palette.soft, background_fill_color=palette.card)
+        self.crossing.glyph.update(fill_color=palette.card, line_color=palette.ink)
+        self.crossing_text.glyph.update(text_color=palette.soft)
+        self.ring.glyph.update(fill_color=palette.card)
+        self.label.glyph.update(background_fill_color=palette.card)
+        if self.picture is not None:
+            self._draw()
+
+    def _draw(self) -> None:
+        picture, palette = self.picture, self.palette
+        assert picture is not None
+        count = len(picture.lines)
+        colours = (
+            [palette.accent]
+            if count == 1
+            else [palette.series[i % len(palette.series)] for i in range(count)]
+        )
+        self.lines.data = {
+            "xs": [picture.x] * count,
+            "ys": [line.y for line in picture.lines],
+            "colour": colours,
+            "dash": [DASHES[i % len(DASHES)] for i in range(count)],
+            "label": [line.name for line in picture.lines],
+            "digits": [picture.digits] * count,
+            "figures": [picture.significant or 0] * count,
+            "signed": [picture.signed] * count,
+            "unit": [picture.unit] * count,
+        }
+        put(self.fan, fan_columns(picture.x, picture.fan))
+        put(self.crossings, self._crossing_labels(picture))
+        put(self.gaps, self._gap_labels(picture))
+
+    @staticmethod
+    def _gap_labels(picture: Picture) -> dict[str, list[Any]]:
+        """Stretches without a result; their words stand upright, or are left out, where there is no room."""
+        width = float(picture.x[-1] - picture.x[0]) or 1.0
+        parts = [(stop - start) / width for start, stop, _ in picture.gaps]
+        return {
+            "x0": [gap[0] for gap in picture.gaps],
+            "x1": [gap[1] for gap in picture.gaps],
+            "x": [(gap[0] + gap[1]) / 2 for gap in picture.gaps],
+            "y": [sum(picture.limits) / 2] * len(parts),
+            "text": ["no result" if part > 0.04 else "" for part in parts],
+            "angle": [0.0 if part > 0.2 else math.pi / 2 for part in parts],
+        }
+
+    @staticmethod
+    def _crossing_labels(picture: Picture) -> dict[str, list[Any]]:
+        """Marks with their texts outside of the band and beside the curve, on the plot at both ends."""
+        start, width = float(picture.x[0]), float(picture.x[-1] - picture.x[0]) or 1.0
+        sides = []
+        for mark in picture.marks:
+            part = (mark.x - start) / width
+            left = (mark.rising == mark.upper or part > 0.88) and part > 0.12
+            sides.append((left, not mark.upper))
+        return {
+            "x": [mark.x for mark in picture.marks],
+            "y": [mark.y for mark in picture.marks],
+            "text": [mark.text for mark in picture.marks],
+            "dx": [-7 if left else 7 for left, _ in sides],
+            "dy": [18 if below else -4 for _, below in sides],
+            "align": ["right" if left else "left" for left, _ in sides],
+        }
+
+
+def fan_columns(x: np.ndarray, fan: Sequence[Layer]) -> dict[str, list[Any]]:
+    """Outlines of the layers of a fan, each solved stretch one patch."""
+    xs: list[list[float]] = []
+    ys: list[list[float]] = []
+    alphas: list[float] = []
+    for layer in fan:
+        solved = np.flatnonzero(np.isfinite(layer.low) & np.isfinite(layer.high))
+        for part in np.split(solved, np.flatnonzero(np.diff(solved) > 1) + 1):
+            if part.size > 1:
+                xs.append([*x[part].tolist(), *x[part][::-1].tolist()])
+                ys.append([*layer.high[part].tolist(), *layer.low[part][::-1].tolist()])
+                alphas.append(FAN_ALPHA)
+    return {"xs": xs, "ys": ys, "alpha": alphas}
