@@ -20,13 +20,14 @@ Questions = Iterable[Callable[[Outcome], None]]
 class Results:
     """What one calculation brought: both results, or the sentence that says why there are none.
 
-    ``curve`` numbers the inputs the sweep depends on.
+    ``curve`` numbers the inputs the sweep depends on; ``scenario`` is what has been solved.
     """
 
     point: Outcome | None
     swept: Sweep | None
     message: str = ""
     curve: int = 0
+    scenario: Scenario | None = None
 
 
 class Runner(Protocol):
@@ -68,4 +69,4 @@ def solve(
     except Exception:
         logger.exception("the scenario could not be calculated")
         return Results(None, None, "This could not be calculated; the log of the server says more.", curve)
-    return Results(point, swept, curve=curve)
+    return Results(point, swept, curve=curve, scenario=scenario)

@@ -1,6 +1,6 @@
-"""Menus and searchable lists that open over the rail."""
+"""Menus, searchable lists that open over the page, and buttons of which one is pressed."""
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Container, Iterable
 from dataclasses import dataclass
 
 from explorer.app.live_view import Handler, Node, node
@@ -93,3 +93,24 @@ def picker(
         key=sheet, id=sheet, popover="auto", role="dialog", aria_label=label,
     )  # fmt: skip
     return [button, body]
+
+
+def segments(
+    key: str,
+    label: str,
+    options: dict[str, tuple[str, str]],
+    chosen: str,
+    choose: Callable[[str], object],
+    disabled: Container[str] = (),
+) -> Node:
+    """Buttons side by side of which one is pressed; ``options``: what is chosen, its words, and a hint."""
+
+    def segment(name: str, words: str, hint: str) -> Node:
+        return node(
+            "button", "", text=words, title=hint or None, aria_label=hint or None, key=f"{key}:{name}",
+            type="button", aria_pressed=str(name == chosen).lower(), disabled=name in disabled,
+            on=_press(lambda: choose(name)),
+        )  # fmt: skip
+
+    buttons = [segment(name, *words) for name, words in options.items()]
+    return node("div", "segments", *buttons, role="group", aria_label=label)

@@ -2,13 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from typing import Any
 
 from explorer.app.entry import Entries
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
-from explorer.app.pickers import Choice, picker
+from explorer.app.pickers import Choice, picker, segments
 from explorer.app.state import Session
 from explorer.app.text import compact, plain, unit_text
 from explorer.scenario.readouts import READOUTS
@@ -86,24 +85,15 @@ class SpeciesHead(Head):
         return [self.entries.choice("family", "Family of species", names, shown, self._show, look="pick")]
 
     def extras(self) -> list[Node]:
-        logarithmic = bool(self.session.choices.get("log"))
-
-        def segment(key: str, text: str, hint: str, on: bool) -> Node:
-            pressed = str(on == logarithmic).lower()
-            return node(
-                "button", "", text=text, title=hint, aria_label=hint, key=f"scale:{key}", type="button",
-                aria_pressed=pressed, on=self._scale(on),
-            )  # fmt: skip
-
-        share = segment("share", "%", "Percent of the family", False)
-        log = segment("log", "log", "log₁₀ of mol/L", True)
-        return [node("div", "segments", share, log, role="group", aria_label="Scale of the species plot")]
+        scales = {"share": ("%", "Percent of the family"), "log": ("log", "log₁₀ of mol/L")}
+        chosen = "log" if self.session.choices.get("log") else "share"
+        return [segments("scale", "Scale of the species plot", scales, chosen, self._scale)]
 
     def _show(self, family: str) -> None:
         self.session.choose(family=family)
 
-    def _scale(self, on: bool) -> Callable[[Any], None]:
-        return lambda value: self.session.choose(log=on)
+    def _scale(self, scale: str) -> None:
+        self.session.choose(log=scale == "log")
 
 
 class ReadoutHead(Head):

@@ -84,6 +84,8 @@ class Session(param.Parameterized):
         record = work if isinstance(work, Work) else Work(work)
         super().__init__(scenario=record.scenario, choices=dict(record.choices))
         self.work = record
+        self.solved: Scenario | None = None
+        """What ``point`` and ``swept`` are of: a copy of its own, which nobody changes."""
         self.runner: Runner = runner or Immediate()
         self._clock = clock
         self._wanted: dict[str, tuple[str, ...]] = {}
@@ -246,7 +248,8 @@ class Session(param.Parameterized):
 
     def solve_now(self) -> None:
         """Solve before anything else happens; for the first page, which should come with results."""
-        self._apply(solve(self.scenario, self._all_wanted(), self._questions.values(), curve=self._curve))
+        snapshot, questions = self.scenario.copy(), self._questions.values()
+        self._apply(solve(snapshot, self._all_wanted(), questions, curve=self._curve))
 
     def calculate(self, keeps_curve: bool = False) -> None:
         """Solve the scenario as it stands; results arrive in ``point`` and ``swept``.
@@ -278,7 +281,7 @@ class Session(param.Parameterized):
         if results.point is None:
             self.param.update(message=results.message, stale=self.point is not None)
         else:
-            self._shown_curve = results.curve
+            self._shown_curve, self.solved = results.curve, results.scenario
             self.param.update(point=results.point, swept=results.swept, message="", stale=False)
 
     # ---- history -------------------------------------------------------------------------------------

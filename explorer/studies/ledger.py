@@ -114,13 +114,21 @@ class Ledger:
             "closed": self.closed,
         }
 
-    def table(self) -> list[list[Any]]:
-        """Rows for a spreadsheet, the heading first."""
-        heading = ["Where", "What", *(f"{column.label} [{column.unit}]" for column in self.columns)]
-        rows = [[line.place, line.text, *line.amounts.tolist()] for line in self.lines]
-        ends = [("Total of the lines", self.total), ("Finished water", self.finished)]
-        ends.append(("Residual", self.residual))
-        return [heading, *rows, *(["", text, *amounts.tolist()] for text, amounts in ends)]
+    def table(self, per_day: bool = False) -> list[list[Any]]:
+        """Rows for a spreadsheet, the heading first; ``per_day``: amounts in kg a day."""
+        units = [column.unit.replace("mg/L", "kg/d") if per_day else column.unit for column in self.columns]
+        named = zip(self.columns, units, strict=True)
+        heading = ["Where", "What", *(f"{column.label} [{unit}]" for column, unit in named)]
+        lines = [(line.place, line.text, line.amounts) for line in self.lines]
+        lines += [("", "Total of the lines", self.total), ("", "Finished water", self.finished)]
+        lines.append(("", "Residual", self.residual))
+        return [
+            heading,
+            *(
+                [place, text, *(self.loads(part) if per_day else part).tolist()]
+                for place, text, part in lines
+            ),
+        ]
 
 
 def ledger(scenario: Scenario, outcome: Outcome) -> Ledger:

@@ -200,6 +200,7 @@ def test_results_belong_to_the_inputs_they_were_computed_from(session: Session) 
     session.runner.waiting = running
     session.runner.work()
     assert float(session.point.readout("nitrate")) == pytest.approx(0.6 * 29 + 0.4 * 6.2, rel=1e-6)
+    assert session.solved.water("well").share == 60 and session.scenario.water("well").share == 90
 
 
 def test_unexpected_failure_is_one_sentence(monkeypatch: pytest.MonkeyPatch, session: Session) -> None:
