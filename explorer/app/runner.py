@@ -7,8 +7,9 @@ from __future__ import annotations
 
 import asyncio
 import logging
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from concurrent.futures import ThreadPoolExecutor
+from contextlib import contextmanager
 from typing import Any
 
 from bokeh.document import Document
@@ -19,6 +20,17 @@ logger = logging.getLogger(__name__)
 
 POOL = ThreadPoolExecutor(max_workers=2, thread_name_prefix="solve")
 """Shared by all tabs of the server; NumPy lets two calculations overlap."""
+
+
+@contextmanager
+def on_page(document: Document | None) -> Iterator[None]:
+    """For changes to a page that do not answer one of its events.
+
+    Bokeh refuses changes outside of an event unless they are held; held, they leave as one message. The
+    document is named because a drag in a plot does not leave it in the context.
+    """
+    with set_curdoc(document), hold(document):
+        yield
 
 
 class Conflate:
@@ -53,9 +65,7 @@ class Conflate:
             (compute, apply), self._next = self._next, None
             try:
                 result = await asyncio.get_running_loop().run_in_executor(self._pool, compute)
-                # Bokeh refuses changes outside of an event unless they are held; held, they leave as one
-                # message. The document is named because a drag in a plot does not leave it in the context.
-                with set_curdoc(self._document), hold(self._document):
+                with on_page(self._document):
                     apply(result)
             except Exception:
                 logger.exception("a calculation could not be shown")

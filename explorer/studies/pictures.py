@@ -49,7 +49,7 @@ class Mark:
 
 @dataclass(frozen=True)
 class Layer:
-    """Part of a fan: between ``low`` and ``high`` lie ``percent`` of all outcomes; nan where there are none."""
+    """Part of a fan: between ``low`` and ``high`` lie ``percent`` of all outcomes, nan where none are."""
 
     percent: float
     low: np.ndarray
