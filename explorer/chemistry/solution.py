@@ -17,6 +17,10 @@ from .constants import LN10
 from .newton import ABSENT
 from .organics import END_POINT_FRACTION, dissociated
 
+HIGHEST_CHARGE = 4
+BLOCK = 4096
+"""Points for which a quantity of all species is held in memory at once."""
+
 if TYPE_CHECKING:
     from .system import System
 
@@ -75,23 +79,42 @@ class Solution:
         return self.system.network.species
 
     @cached_property
-    def _log_gamma(self) -> dict[int, NDArray]:
-        """ln activity coefficient by charge magnitude, flat."""
+    def _log_gamma(self) -> NDArray:
+        """ln activity coefficient; (charge magnitude, N)."""
         factor, _ = davies(debye_hueckel_slope(self._answer.temperature), self._answer.strength)
         uncharged, _ = neutral(self._answer.strength)
-        return {0: uncharged} | {z: -float(z * z) * factor for z in range(1, 5)}
+        return np.stack([uncharged, *(-float(z * z) * factor for z in range(1, HIGHEST_CHARGE + 1))])
+
+    @cached_property
+    def _log_k(self) -> NDArray:
+        """ln K of all species; (species, N). Only for small batches, as it is large."""
+        return self.system.network.log_k(self._answer.temperature)
 
     def _log_activity(self, species: str) -> NDArray:
-        row = self._index[species]
-        counts = self.system.network.counts[row]
+        network, row = self.system.network, self._index[species]
+        counts = network.counts[row]
         used = np.flatnonzero(counts)
-        return (
-            self.system.network.log_k.row(row, self._answer.temperature) + counts[used] @ self._answer.x[used]
-        )
+        small = len(self._answer.strength) <= BLOCK
+        log_k = self._log_k[row] if small else network.log_k.row(row, self._answer.temperature)
+        return log_k + counts[used] @ self._answer.x[used]
 
     def _concentration(self, species: str) -> NDArray:
         charge = abs(int(self.system.network.charges[self._index[species]]))
         return np.exp(self._log_activity(species) - self._log_gamma[charge])
+
+    def _weighted(self, weights: NDArray) -> NDArray:
+        """Σ weight × concentration over all species, flat; ``weights`` (species,)."""
+        network, answer = self.system.network, self._answer
+        rows = np.flatnonzero(weights)
+        log_k = network.log_k.rows(rows)
+        charges = np.abs(network.charges[rows]).astype(int)
+        total = np.empty(len(answer.strength))
+        for first in range(0, len(total), BLOCK):
+            some = slice(first, first + BLOCK)
+            log_c = network.counts[rows] @ answer.x[:, some] - self._log_gamma[charges, some]
+            log_c += log_k(answer.temperature[some])
+            total[some] = weights[rows] @ np.exp(log_c)
+        return total
 
     def log_activity(self, species: str) -> NDArray:
         """log10 activity of a species; below −1000 where a component is absent. KeyError if unknown."""
@@ -137,11 +160,7 @@ class Solution:
 
     @cached_property
     def _alkalinity(self) -> NDArray:
-        network = self.system.network
-        protons = network.counts[:, 0]
-        total = sum(
-            -protons[row] * self._concentration(network.species[row]) for row in np.flatnonzero(protons)
-        )
+        total = self._weighted(-self.system.network.counts[:, 0])
         groups = self.system.organic_equivalents * self._answer.totals[self.system.index["organic_carbon"]]
         return total + self._organic_ions - END_POINT_FRACTION * groups
 
@@ -158,8 +177,7 @@ class Solution:
     @cached_property
     def charge(self) -> NDArray:
         """Residual charge of the water as analysed, eq/L: dissolved ions, inert ions and organic acids."""
-        charges = self.system.network.charges
-        total = sum(charges[row] * self._concentration(self.species[row]) for row in np.flatnonzero(charges))
+        total = self._weighted(self.system.network.charges)
         total = total + self.system.inert_charge(self._answer.totals) - self._organic_ions
         return self._shaped(total)
 
