@@ -7,11 +7,11 @@ from typing import Any
 
 import numpy as np
 
+from explorer.app.choosers import default_range
 from explorer.app.entry import Entries, message, show_number
 from explorer.app.live_view import Node, node
 from explorer.app.other_units import Originals
 from explorer.app.state import Change, Session
-from explorer.app.sweep_controls import default_range
 from explorer.app.text import unit_text
 from explorer.chemistry import System
 from explorer.scenario import editing

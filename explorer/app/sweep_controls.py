@@ -2,35 +2,16 @@
 
 from __future__ import annotations
 
-import math
 from typing import Any
 
+from explorer.app.choosers import default_range, dial_picker, range_fields
 from explorer.app.entry import Entries, show_number
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
-from explorer.app.pickers import Choice, picker
 from explorer.app.state import Session
 from explorer.app.text import plain, unit_text
 from explorer.scenario.dials import Dial
-from explorer.studies.axes import nice_step
 from explorer.studies.sweep import Sweep
-
-
-def default_range(dial: Dial) -> tuple[float, float]:
-    """Range a dial is first swept over.
-
-    Percent and temperature: the bounds of the dial. pH: two units to both sides. Everything else: from the
-    lower bound to a round number about twice the value.
-    """
-    top = math.inf if dial.high is None else dial.high
-    if dial.unit in {"%", "°C"} and top - dial.low <= 100:
-        return dial.low, top
-    if dial.label.startswith("pH"):
-        middle = round(dial.value)
-        return max(dial.low, middle - 2.0), min(top, middle + 2.0)
-    span = 2 * max(abs(dial.value - dial.low), 10 * dial.step)
-    step = nice_step(span)
-    return dial.low, min(top, dial.low + math.ceil(span / step - 1e-9) * step)
 
 
 def gap_words(swept: Sweep | None) -> str:
@@ -66,27 +47,18 @@ class SweepControls(LiveView):
         self.refresh()
 
     def describe(self) -> Node:
+        dial = dial_picker(
+            self.session, "dial", self._swept_dial(), self._choose_dial, "The dial along the x axis"
+        )
         return node(
             "div", "controls",
-            node("div", "group", node("span", text="Sweep"), *self._dial()),
+            node("div", "group", node("span", text="Sweep"), *dial),
             *self._range(),
             node("span", text=self._rule()),
             node("span", "gap", text=self._shown[0], role="status"),
         )  # fmt: skip
 
     # ---- the dial on x and its range -----------------------------------------------------------------
-
-    def _dial(self) -> list[Node]:
-        dials = self.session.dials
-        groups: dict[str, list[Choice]] = {}
-        for dial in dials.values():
-            groups.setdefault(plain(dial.group, 60), []).append(
-                Choice(dial.address, plain(dial.label, 90), unit_text(dial.unit), dial.address)
-            )
-        chosen = self._swept_dial()
-        label = plain(chosen.label, 60) if chosen else "Choose a dial"
-        return picker("dial", f"{label} ▾", groups, self._choose_dial, look="button", hint="Search dials",
-                      title="The dial along the x axis")  # fmt: skip
 
     def _swept_dial(self) -> Dial | None:
         swept = self.session.swept
@@ -103,27 +75,12 @@ class SweepControls(LiveView):
         dial, swept = self._swept_dial(), self.session.swept
         if dial is None or swept is None:
             return []
-        unit = unit_text(dial.unit)
-        start, start_refused = self._end("start", "From", float(swept.x[0]), dial)
-        stop, stop_refused = self._end("stop", "To", float(swept.x[-1]), dial)
-        return [
-            node("div", "group", node("span", text="from"), start, node("span", text="to"), stop,
-                 node("span", "unit", text=unit)),
-            start_refused, stop_refused,
-        ]  # fmt: skip
 
-    def _end(self, name: str, label: str, value: float, dial: Dial) -> tuple[Node, Node]:
-        def take(number: float) -> str:
-            swept = self.session.swept
-            other = float(swept.x[-1 if name == "start" else 0])
-            if math.isclose(number, other):
-                return "from and to have to differ"
-            return self.session.set_sweep(**{name: number})
+        def take(ends: tuple[float, float]) -> str:
+            return self.session.set_sweep(start=ends[0], stop=ends[1])
 
-        return self.entries.number(
-            name, f"{label}, end of the sweep", show_number(value), take, low=dial.low, high=dial.high,
-            unit=unit_text(dial.unit),
-        )  # fmt: skip
+        ends = (float(swept.x[0]), float(swept.x[-1]))
+        return range_fields(self.entries, "", "the sweep", ends, dial, take)
 
     def _rule(self) -> str:
         """How the other waters follow when a share is swept."""

@@ -12,6 +12,7 @@ from bokeh.document import Document
 from bokeh.models import Span
 
 from explorer.app import serve
+from explorer.app.choosers import default_range
 from explorer.app.files import FileDesk, Shelf, file_name, tab_name
 from explorer.app.history import Work
 from explorer.app.look import DARK
@@ -20,7 +21,6 @@ from explorer.app.runner import Conflate
 from explorer.app.shell import Shell
 from explorer.app.state import Session
 from explorer.app.summary import foot_line
-from explorer.app.sweep_controls import default_range
 from explorer.app.tiles import default_tiles, gauge
 from explorer.scenario.files import LARGEST_FILE, dumps, open_scenario
 from explorer.scenario.model import Target
@@ -140,9 +140,10 @@ def test_point_follows_the_dial(shell: Shell) -> None:
 
 def test_axes_stay_while_a_dial_is_turned_a_little(shell: Shell) -> None:
     """The curve moves, the axis does not."""
-    limits = {name: (p.y_range.start, p.y_range.end) for name, p in shell.views["sweep"].plots.plots.items()}
+    plots = shell.views["sweep"].plots.plots.values()
+    limits = [(plot.y_range.start, plot.y_range.end) for plot in plots]
     shell.session.turn("train.hypo.dose", 1.3)
-    assert {name: (p.y_range.start, p.y_range.end) for name, p in shell.views["sweep"].plots.plots.items()} == limits
+    assert [(plot.y_range.start, plot.y_range.end) for plot in plots] == limits
 
 
 def test_plots_carry_words_that_follow_the_data(shell: Shell) -> None:
