@@ -18,9 +18,19 @@ from bokeh.models import (
 )
 from bokeh.plotting import figure
 
-from explorer.app.look import CROSSING_MARKER, DASHES, FAN_ALPHA, LIGHT, LINE_WIDTH, POINT_MARKER, Palette
+from explorer.app.look import (
+    CROSSING_MARKER,
+    DASHES,
+    DOT_MARKERS,
+    DOT_SIZE,
+    FAN_ALPHA,
+    LIGHT,
+    LINE_WIDTH,
+    POINT_MARKER,
+    Palette,
+)
 from explorer.app.plot_parts import in_page, lettered, pointer_line, put, ticks
-from explorer.studies.pictures import Axis, Band, Layer, Picture
+from explorer.studies.pictures import Axis, Band, Dots, Layer, Picture
 
 
 class LinePlot:
@@ -45,6 +55,7 @@ class LinePlot:
         self.ends = in_page(x=[], y=[], text=[], colour=[])
         self.crossings = ColumnDataSource(data={key: [] for key in ("x", "y", "text", "dx", "dy", "align")})
         self.gaps = ColumnDataSource(data={key: [] for key in ("x0", "x1", "x", "y", "text", "angle")})
+        self.dots = ColumnDataSource(data={key: [] for key in ("x", "y", "marker", "colour")})
         self.rings = in_page(x=[], y=[], colour=[])
         self.labels = in_page(x=[], y=[], text=[], colour=[], dx=[], dy=[], align=[])
         self.figure = self._build(x_range, point, cross, labels_right)
@@ -105,6 +116,16 @@ class LinePlot:
             line_dash="dash",
             line_width=LINE_WIDTH,
             line_join="round",
+        )
+        self.dot = fig.scatter(
+            x="x",
+            y="y",
+            source=self.dots,
+            marker="marker",
+            size=DOT_SIZE,
+            line_color="colour",
+            line_width=1.6,
+            fill_alpha=0.85,
         )
         self.crossing = fig.scatter(
             x="x",
@@ -191,6 +212,7 @@ class LinePlot:
         self.fan_area.glyph.fill_color = palette.accent
         self.gap.glyph.update(fill_color=palette.track, hatch_color=palette.soft)
         self.gap_text.glyph.update(text_color=palette.soft, background_fill_color=palette.card)
+        self.dot.glyph.fill_color = palette.card
         self.crossing.glyph.update(fill_color=palette.card, line_color=palette.ink)
         self.crossing_text.glyph.update(text_color=palette.soft)
         self.ring.glyph.update(fill_color=palette.card)
@@ -201,24 +223,23 @@ class LinePlot:
     def _draw(self) -> None:
         picture, palette = self.picture, self.palette
         assert picture is not None
-        count = len(picture.lines)
-        colours = (
-            [palette.accent]
-            if count == 1
-            else [palette.series[i % len(palette.series)] for i in range(count)]
-        )
+        lines, count = picture.lines, len(picture.lines)
+        colours = [_chosen(palette.series, line.colour, place) for place, line in enumerate(lines)]
+        if count == 1 and lines[0].colour is None:
+            colours = [palette.accent]
         self.lines.data = {
             "xs": [picture.x] * count,
-            "ys": [line.y for line in picture.lines],
+            "ys": [line.y for line in lines],
             "colour": colours,
-            "dash": [DASHES[i % len(DASHES)] for i in range(count)],
-            "label": [line.name for line in picture.lines],
+            "dash": [_chosen(DASHES, line.dash, place) for place, line in enumerate(lines)],
+            "label": [line.name for line in lines],
             "digits": [picture.digits] * count,
             "figures": [picture.significant or 0] * count,
             "signed": [picture.signed] * count,
             "unit": [picture.unit] * count,
         }
         put(self.fan, fan_columns(picture.x, picture.fan))
+        put(self.dots, dot_columns(picture.dots, palette))
         put(self.crossings, self._crossing_labels(picture))
         put(self.gaps, self._gap_labels(picture))
 
@@ -253,6 +274,22 @@ class LinePlot:
             "dy": [18 if below else -4 for _, below in sides],
             "align": ["right" if left else "left" for left, _ in sides],
         }
+
+
+def _chosen(styles: Sequence[Any], wanted: int | None, place: int) -> Any:
+    """One of the styles there are; they begin anew after the last."""
+    return styles[(place if wanted is None else wanted) % len(styles)]
+
+
+def dot_columns(sets: Sequence[Dots], palette: Palette) -> dict[str, list[Any]]:
+    """Measured points, each set with a marker of its own; colours are those after the curve's."""
+    columns: dict[str, list[Any]] = {"x": [], "y": [], "marker": [], "colour": []}
+    for place, part in enumerate(sets):
+        columns["x"] += part.x.tolist()
+        columns["y"] += part.y.tolist()
+        columns["marker"] += [_chosen(DOT_MARKERS, None, place)] * len(part.x)
+        columns["colour"] += [_chosen(palette.series, None, place + 1)] * len(part.x)
+    return columns
 
 
 def fan_columns(x: np.ndarray, fan: Sequence[Layer]) -> dict[str, list[Any]]:

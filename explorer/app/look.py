@@ -120,6 +120,11 @@ POINTER = "#7f8f93"
 CROSSING_MARKER = "diamond"
 POINT_MARKER = "circle"
 
+DOT_MARKERS = ("square", "triangle", "inverted_triangle", "hex", "star")
+"""Marker of the n-th set of measured points of a plot."""
+
+DOT_SIZE = 8
+
 
 def water_colour(index: int) -> str:
     """CSS colour of the swatch of the water at ``index`` (0-based; repeats after eight)."""

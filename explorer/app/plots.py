@@ -25,24 +25,31 @@ class LinkedPlots:
     """Several :class:`LinePlot` over one x axis, crosshair and operating point, in reading order.
 
     The last of two ``columns`` has room for the names of curves; the lowest row carries the axis label.
-    ``turned`` is called with the place the operating point was dragged or tapped to, in the dial's unit.
+    ``turned`` is called with the place the operating point was dragged or tapped to, in the dial's unit;
+    without it the point is a mark that nobody moves. ``kind``: what the plots are.
     """
 
-    def __init__(self, names: Sequence[str], turned: Callable[[float], None], columns: int = 2) -> None:
+    def __init__(
+        self,
+        names: Sequence[str],
+        turned: Callable[[float], None] | None = None,
+        columns: int = 2,
+        kind: type[LinePlot] = LinePlot,
+    ) -> None:
         self.turned = turned
         self.x_range = Range1d(0, 1)
         self.point = Span(
             name="operating-point",
             dimension="height",
             location=0,
-            editable=True,
+            editable=turned is not None,
             line_width=1.6,
             line_dash=[2, 3],
             level="annotation",
         )
         cross = pointer_line("height", 0.6)
         self.plots = {
-            name: LinePlot(
+            name: kind(
                 name, self.x_range, self.point, cross,
                 labels_right=index % columns == 1, x_label=index >= len(names) - columns,
             )
@@ -66,8 +73,9 @@ class LinkedPlots:
             for plot in self.plots.values()
         ]
         script = CustomJS(args={"parts": parts, "point": self.point, "x_range": self.x_range}, code=_SCRIPT)
+        moving = () if self.turned is None else (Tap, PanStart, Pan, PanEnd)
         for plot in self.plots.values():
-            for event in (MouseMove, MouseLeave, Tap, PanStart, Pan, PanEnd):
+            for event in (MouseMove, MouseLeave, *moving):
                 plot.figure.js_on_event(event, script)
             plot.lines.js_on_change("data", script)
             plot.figure.js_on_change("inner_height", script)
@@ -109,5 +117,5 @@ class LinkedPlots:
             plot.restyle(palette)
 
     def _moved(self, attr: str, old: Any, new: Any) -> None:
-        if not self._quiet and new is not None:
+        if self.turned is not None and not self._quiet and new is not None:
             self.turned(float(new))

@@ -30,10 +30,25 @@ Missing = tuple[tuple[float, float, str], ...]
 
 @dataclass(frozen=True)
 class Line:
-    """One curve: ``name`` labels its end ("" in a plot with one curve); ``y`` is nan where not solved."""
+    """One curve: ``name`` labels its end ("" in a plot with one curve); ``y`` is nan where not solved.
+
+    ``colour``, ``dash``: which of those there are, the one of its place among the lines where None.
+    """
 
     name: str
     y: np.ndarray
+    colour: int | None = None
+    dash: int | None = None
+
+
+@dataclass(frozen=True)
+class Dots:
+    """Measured points laid over a plot: a set with its ``name``, and in words how far the model is off."""
+
+    name: str
+    x: np.ndarray
+    y: np.ndarray
+    words: str = ""
 
 
 @dataclass(frozen=True)
@@ -75,6 +90,7 @@ class Picture:
     words: str = ""
     empty: str = ""
     fan: tuple[Layer, ...] = ()
+    dots: tuple[Dots, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -157,18 +173,22 @@ def readout_picture(
     missing: Missing = (),
     previous: Limits | None = None,
     slack: float = 0.0,
+    dots: Sequence[Dots] = (),
 ) -> Picture:
-    """One readout against the swept dial, with its target band and the places where it crosses a bound."""
+    """One readout against the swept dial, with its target band, the places where it crosses a bound, and what
+    was measured of it."""
     y = np.asarray(y, float)
     bounds = [bound for target in targets for bound in target if bound is not None]
     finite = y[np.isfinite(y)]
     largest = float(np.abs(finite).max()) if finite.size else 1.0
-    limits = steady_limits(y, previous, least_span(quantity.digits, largest), bounds)
+    everything = np.concatenate([y, *(part.y for part in dots)])
+    limits = steady_limits(everything, previous, least_span(quantity.digits, largest), bounds)
     marks = crossing_marks(x, y, targets, along, slack)
     notes = [quantity.unit.replace(" as ", " ")] if quantity.unit else []
     if targets:
         band = band_of(targets)
         notes.append("target " + range_text(*band) if band else "targets exclude each other")
+    notes += [part.words for part in dots if part.words]
     return Picture(
         title=quantity.label,
         note=" · ".join(notes),
@@ -182,9 +202,16 @@ def readout_picture(
         band=band_of(targets),
         marks=marks,
         gaps=missing,
-        words=_words(quantity, x, y, along, marks, missing),
+        words=" ".join([_words(quantity, x, y, along, marks, missing), *(_told(part) for part in dots)]),
         empty="" if finite.size else _first_reason(missing),
+        dots=tuple(dots),
     )
+
+
+def _told(dots: Dots) -> str:
+    """A set of measured points in a sentence."""
+    count = f"{len(dots.x)} measured point{'s' if len(dots.x) > 1 else ''}"
+    return f"{count}: {dots.name}{f', {dots.words}' if dots.words else ''}."
 
 
 def species_picture(
