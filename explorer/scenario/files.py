@@ -70,13 +70,18 @@ def open_scenario(path: str | os.PathLike[str]) -> Scenario:
 
 
 def save_scenario(scenario: Scenario, path: str | os.PathLike[str]) -> None:
-    """Write a scenario to a file, whole or not at all.
+    """Write a scenario to a file, whole or not at all. Raises ScenarioError.
 
-    The text is read back first, so that no file is written that could not be opened. A new file takes the
-    place of the old one in one step; a failure leaves the old one as it was. Raises ScenarioError.
+    The text is read back first, so that no file is written that could not be opened.
     """
     text = dumps(scenario)
     read_scenario(text)
+    write_text(text, path)
+
+
+def write_text(text: str, path: str | os.PathLike[str]) -> None:
+    """Write a file, whole or not at all: a new one takes the place of the old one in one step, and a failure
+    leaves the old one as it was. Raises ScenarioError for what the system refuses."""
     with _system_errors(path, "saved"):
         target = Path(path).resolve()
         mode = _mode_to_keep(target)

@@ -1,6 +1,6 @@
 """Sweep: one dial over a range, everything else as it stands."""
 
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from types import MappingProxyType
 from typing import Any
@@ -192,13 +192,10 @@ def swept_dial(
 
 
 def _first(every: Mapping[str, Dial]) -> str:
-    """The dial to sweep where nobody has said: a share, else a dose, else the first."""
-    kinds: tuple[Callable[[str], bool], ...] = (
-        lambda address: address.endswith(".share"),
-        lambda address: address.endswith(".dose"),
-        lambda address: True,
-    )
-    return next(address for kind in kinds for address in every if kind(address))
+    """The dial to sweep where nobody has said: a share of several, else a dose, else a temperature."""
+    several = sum(address.endswith(".share") for address in every) > 1
+    kinds = (*([".share"] if several else []), ".dose", ".analysis.temperature", "")
+    return next(address for kind in kinds for address in every if address.endswith(kind))
 
 
 def swept_range(

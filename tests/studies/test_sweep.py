@@ -36,6 +36,13 @@ def test_another_dial_has_a_range_of_its_own(plant):
     assert (swept.x[0], swept.x[-1], swept.x.size) == (0, 16, 101)
 
 
+def test_a_single_water_is_swept_along_a_dose_or_its_temperature(plant):
+    """Its share has nothing to turn against."""
+    dosed = plant({"river": 100}, [plant.dosed("caustic", "sodium_hydroxide", 8, "mg/L")])
+    assert sweep(dosed).address == "train.caustic.dose"
+    assert sweep(plant({"river": 100})).address == "waters.river.analysis.temperature"
+
+
 def test_overrides_hold_other_dials(blend):
     """The sweep at a warmer river is the sweep of a warmer river."""
     warm = {"waters.river.analysis.temperature": 15.0}
