@@ -229,7 +229,15 @@ def solved(title: str, outcome: Outcome) -> dict[str, Any]:
             step: {"value": _plain(value), "unit": unit, "held": held}
             for step, (value, unit, held) in outcome.doses.items()
         },
+        **({"held": _held(outcome)} if outcome.held else {}),
         "notes": [{"level": note.level, "where": note.where, "text": note.text} for note in notes],
+    }
+
+
+def _held(outcome: Outcome) -> dict[str, dict[str, Any]]:
+    return {
+        address: {"value": _plain(dial.value), "unit": dial.unit, "met": bool(dial.met)}
+        for address, dial in outcome.held.items()
     }
 
 
@@ -275,6 +283,15 @@ def _solved_text(scenario: Scenario, outcome: Outcome) -> Iterator[str]:
             [
                 [outcome.stage(step).name, entered(value), unit, "held" if held else ""]
                 for step, (value, unit, held) in outcome.doses.items()
+            ],
+            right=(1,),
+        )
+    if outcome.held:
+        yield from ("", "Held dials")
+        yield from aligned(
+            [
+                [address, entered(dial.value), dial.unit, "" if dial.met else "not met"]
+                for address, dial in outcome.held.items()
             ],
             right=(1,),
         )

@@ -1,13 +1,14 @@
 """A scenario made ready for evaluation: plain values by address, and what happens to the water in order."""
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 
 from explorer.chemistry import System, WeakAcid
 from explorer.scenario.dials import Dial, dials, step_name
 from explorer.scenario.errors import ScenarioError, join, unknown
-from explorer.scenario.model import DoseStep, Scenario, Step, Target
+from explorer.scenario.held_dials import DialGoal
+from explorer.scenario.model import DialHold, DoseStep, Scenario, Step, Target
 from explorer.scenario.operations import (
     AirOperation,
     ConcentrateOperation,
@@ -19,9 +20,11 @@ from explorer.scenario.operations import (
     TemperatureOperation,
 )
 from explorer.scenario.readouts import READOUTS
+from explorer.scenario.stage import BLEND, FINISHED
 from explorer.treatment.analysis import Measured
 from explorer.treatment.catalogue import SETTINGS
 from explorer.treatment.chemicals import with_setting
+from explorer.treatment.notes import Note
 
 
 @dataclass(frozen=True)
@@ -55,6 +58,11 @@ class Plan:
     flow_unit: str
     train: tuple[Operation, ...]
     targets: tuple[Target, ...]
+    holds: tuple[DialGoal, ...] = ()
+    notes: tuple[Note, ...] = ()
+
+
+RESTS = "the step behind which the readout is held is out of service: the dial stands as entered"
 
 
 @lru_cache(maxsize=16)
@@ -68,16 +76,39 @@ def compiled(scenario: Scenario, season: str | None = None) -> Plan:
     season = scenario.season if season is None else season
     if season not in scenario.seasons:
         raise ScenarioError("season", unknown(season, "one of the seasons", scenario.seasons))
+    every = dials(scenario, season)
+    sources = tuple(_source(scenario, position, season) for position in range(len(scenario.waters)))
+    train = _train(scenario, scenario.train, "")
+    places = {BLEND, FINISHED, *_places(train)}
+    for source in sources:
+        places |= {source.id, *_places(source.train)}
+    holds = {address: hold for address, hold in scenario.holds.items() if address in every}
+    resting = [address for address, hold in holds.items() if hold.stage not in places]
     return Plan(
         system=system_of(scenario.weak_acids(), float(scenario.organic_charge_density)),
         season=season,
-        dials=dials(scenario, season),
-        sources=tuple(_source(scenario, position, season) for position in range(len(scenario.waters))),
+        dials=every,
+        sources=sources,
         balance=scenario.balance_water,
         flow_unit="" if scenario.flow is None else scenario.flow.unit,
-        train=_train(scenario, scenario.train, ""),
+        train=train,
         targets=tuple(scenario.targets),
+        holds=tuple(_goal(every[a], hold) for a, hold in holds.items() if a not in resting),
+        notes=tuple(Note("caution", address, RESTS) for address in resting),
     )
+
+
+def _places(train: Sequence[Operation]) -> Iterator[str]:
+    """Ids of all steps in service of a train."""
+    for operation in train:
+        yield operation.id
+        yield from _places(getattr(operation, "train", ()))
+
+
+def _goal(dial: Dial, hold: DialHold) -> DialGoal:
+    low = dial.low if hold.low is None else hold.low
+    high = dial.high if hold.high is None else hold.high
+    return DialGoal(dial.address, READOUTS[hold.readout], hold.stage, low, high, dial.value)
 
 
 def _source(scenario: Scenario, position: int, season: str) -> Source:

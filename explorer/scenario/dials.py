@@ -29,6 +29,7 @@ from explorer.scenario.model import (
 )
 from explorer.scenario.quantity import DOSE, Amount
 from explorer.scenario.readouts import READOUTS
+from explorer.scenario.words import in_sentence
 from explorer.treatment.catalogue import SETTINGS
 from explorer.treatment.units import from_base, to_base
 
@@ -68,7 +69,8 @@ class Dial:
 
 def dials(scenario: Scenario, season: str | None = None) -> dict[str, Dial]:
     """Every dial by address. ``season`` chooses the analyses; the scenario's own where it is None."""
-    return {dial.address: dial for dial in _walk(scenario, scenario.season if season is None else season)}
+    every = {dial.address: dial for dial in _walk(scenario, scenario.season if season is None else season)}
+    return every | {dial.address: dial for dial in _held_values(scenario, every)}
 
 
 def find(scenario: Scenario, address: str, season: str | None = None) -> Dial:
@@ -126,6 +128,19 @@ def _walk(scenario: Scenario, season: str) -> Iterator[Dial]:
             yield from _entries(water, water.analyses[season], prefix)
         yield from _train(scenario, water.train, prefix)
     yield from _train(scenario, scenario.train, "")
+
+
+def _held_values(scenario: Scenario, every: Mapping[str, Dial]) -> Iterator[Dial]:
+    """The values to which dials are held."""
+    for address, hold in scenario.holds.items():
+        if address not in every or hold.readout not in READOUTS:
+            continue
+        readout, held = READOUTS[hold.readout], every[address]
+        label = f"{readout.label} held by {in_sentence(held.label)}"
+        yield Dial(
+            f"{address}.hold.value", label, readout.unit, hold.value, min(0.0, hold.value), None,
+            fine_step(hold.value), held.group, False, partial(_store_field, hold, "value"),
+        )  # fmt: skip
 
 
 def _train(scenario: Scenario, train: Sequence[Step], prefix: str) -> Iterator[Dial]:

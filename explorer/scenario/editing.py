@@ -16,6 +16,7 @@ from typing import Any
 from explorer.scenario.dials import dials, neat
 from explorer.scenario.errors import ScenarioError, shown, unknown
 from explorer.scenario.fields import NAME_LENGTH
+from explorer.scenario.hold_rule import stages, waiting_shares
 from explorer.scenario.model import Measured, Option, Quantity, Scenario, SideStreamStep, Step, Water
 from explorer.scenario.observed_rule import known_dials, misfits
 from explorer.scenario.rules import RESERVED_IDS
@@ -292,10 +293,14 @@ def take_option(scenario: Scenario, name: str) -> Scenario:
 
 
 def tidy(scenario: Scenario) -> None:
-    """Drop the tolerances, the sweep and the measured points of what is no longer there; fit the sweep to its
-    dial."""
-    known = {f"waters.{water.id}.share" for water in scenario.waters if water.share is not None}
-    known = known.union(*(dials(scenario, season) for season in scenario.seasons))
+    """Drop the holds, the tolerances, the sweep and the measured points of what is no longer there; fit the
+    sweep to its dial."""
+    places, waiting = stages(scenario), waiting_shares(scenario)
+    known = waiting.union(known_dials(scenario))
+    scenario.holds = {
+        address: hold for address, hold in scenario.holds.items() if address in known and hold.stage in places
+    }
+    known = waiting.union(known_dials(scenario))
     scenario.tolerances = {address: part for address, part in scenario.tolerances.items() if address in known}
     if scenario.sweep is not None and scenario.sweep.dial not in known:
         scenario.sweep = None

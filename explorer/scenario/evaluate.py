@@ -1,6 +1,7 @@
 """One function at the centre: a scenario, any dials as arrays, and what comes out all over the plant."""
 
-from collections.abc import Mapping
+import math
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from functools import lru_cache
 from types import MappingProxyType
@@ -13,6 +14,7 @@ from explorer.scenario import shares
 from explorer.scenario.compile import Plan, Source, compiled
 from explorer.scenario.dials import no_dial
 from explorer.scenario.errors import ScenarioError
+from explorer.scenario.held_dials import DialGoal, distance, find_dials
 from explorer.scenario.model import Scenario
 from explorer.scenario.operations import Run, added
 from explorer.scenario.outcome import BLEND, Outcome
@@ -44,8 +46,35 @@ def evaluate(
 def follow(plan: Plan, dials: Mapping[str, ArrayLike] = MappingProxyType({})) -> Outcome:
     """:func:`evaluate` for a scenario that is compiled already; the plan does not change with it."""
     turned = _turned(plan, dials)
+    # A dial that is turned by hand is not held.
+    goals = tuple(goal for goal in plan.holds if goal.address not in turned)
+    return _followed(plan, turned | _held(plan, goals, turned) if goals else turned, goals)
+
+
+def _held(plan: Plan, goals: Sequence[DialGoal], turned: Mapping[str, np.ndarray]) -> dict[str, np.ndarray]:
+    """The held dials where they meet their goals, each of the common shape of what is turned."""
     shape = np.broadcast_shapes(*(values.shape for values in turned.values()))
-    run = Run({address: np.asarray(dial.value, float) for address, dial in plan.dials.items()} | turned)
+    count = math.prod(shape)
+    wanted = {goal.goal: np.asarray(plan.dials[goal.goal].value, float) for goal in goals}
+    flat = {
+        address: np.broadcast_to(values, shape).ravel() if values.size > 1 else values.reshape(())
+        for address, values in (wanted | dict(turned)).items()
+    }
+
+    def measure(held: np.ndarray, points: np.ndarray) -> np.ndarray:
+        here = {address: values[points] if values.ndim else values for address, values in flat.items()}
+        outcome = _followed(plan, here | {goal.address: held[row] for row, goal in enumerate(goals)})
+        far = [distance(outcome.stage(goal.stage), goal.readout, here[goal.goal]) for goal in goals]
+        return np.array([np.broadcast_to(part, points.shape) for part in far])
+
+    found = find_dials(goals, measure, count)
+    return {goal.address: found[row].reshape(shape) for row, goal in enumerate(goals)}
+
+
+def _followed(plan: Plan, turned: Mapping[str, np.ndarray], goals: tuple[DialGoal, ...] = ()) -> Outcome:
+    shape = np.broadcast_shapes(*(values.shape for values in turned.values()))
+    inputs = {address: np.asarray(dial.value, float) for address, dial in plan.dials.items()} | dict(turned)
+    run = Run(inputs, notes=list(plan.notes))
     parts, flow, problem = _parts(plan, turned, run.inputs)
     for address, values in turned.items():
         problem = np.where(plan.dials[address].allows(values), problem, PlantProblem.OUT_OF_RANGE)
@@ -57,8 +86,9 @@ def follow(plan: Plan, dials: Mapping[str, ArrayLike] = MappingProxyType({})) ->
     run.stages.append(blended)
     run.follow(plan.train, blended)
     return Outcome(
-        shape, plan.season, tuple(run.stages), run.doses, plan.targets, run.notes, parts, ends, run.inputs
-    )
+        shape, plan.season, tuple(run.stages), run.doses, plan.targets, run.notes, parts, ends, inputs,
+        {goal.address: (goal, plan.dials[goal.address].unit) for goal in goals},
+    )  # fmt: skip
 
 
 def _turned(plan: Plan, dials: Mapping[str, ArrayLike]) -> dict[str, np.ndarray]:
@@ -103,9 +133,7 @@ def _source(
 ) -> Stage:
     """The water of a source after its own train."""
     prefix = f"{source.address}.analysis."
-    overrides = {
-        address.removeprefix(prefix): turned[address] for address in turned if address.startswith(prefix)
-    }
+    overrides = {key: turned[prefix + key] for key, _ in source.entries if prefix + key in turned}
     try:
         if overrides:
             worked = None

@@ -81,15 +81,16 @@ def held_dose(stream: Stream, add: Adder, readout: Readout, goal: ArrayLike, cei
     moles = np.where(roots.found, roots.x, np.where(unmet, np.where(without, roots.low, roots.high), np.nan))
     far, known = unmet & ~without, roots.high == ceilings
     words = [
-        *_say(without & (none > 0), goals, readout, "is above {goal} without any of it"),
-        *_say(without & (none < 0), goals, readout, "is below {goal} without any of it"),
-        *_say(far & known, goals, readout, "cannot be brought to {goal}: the dose stays at its ceiling"),
-        *_say(far & ~known, goals, readout, "cannot be brought to {goal}: larger doses have no answer"),
+        *told(without & (none > 0), goals, readout, "is above {goal} without any of it"),
+        *told(without & (none < 0), goals, readout, "is below {goal} without any of it"),
+        *told(far & known, goals, readout, "cannot be brought to {goal}: the dose stays at its ceiling"),
+        *told(far & ~known, goals, readout, "cannot be brought to {goal}: larger doses have no answer"),
     ]
     return HeldDose(moles.reshape(shape), roots.found.reshape(shape), words)
 
 
-def _say(where: np.ndarray, goals: np.ndarray, readout: Readout, sentence: str) -> list[str]:
+def told(where: np.ndarray, goals: np.ndarray, readout: Readout, sentence: str) -> list[str]:
+    """The sentence on the readout for the points ``where`` there are any, with the goals there."""
     count = np.count_nonzero(where)
     if not count:
         return []

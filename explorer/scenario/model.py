@@ -44,6 +44,7 @@ __all__ = [
     "AirStep",
     "Analysis",
     "ConcentrateStep",
+    "DialHold",
     "DoseStep",
     "Hold",
     "LimestoneStep",
@@ -104,6 +105,16 @@ class Tolerance(Entity):
         return (both if self.minus is None else self.minus, both if self.plus is None else self.plus)
 
 
+class DialHold(Entity):
+    """A dial that is computed so that a readout anywhere in the plant meets a value."""
+
+    readout = Text(None, required=True, label="Readout", doc="Readout that is held.")
+    value = Number(None, required=True, label="Held value", doc="Value in the unit of the readout.")
+    stage = Text("finished", label="Stage", doc="Id of the water or step behind which it is held.")
+    low = Number(None, label="Lowest", doc="Of the dial; its own lower limit where not given.")
+    high = Number(None, label="Highest", doc="Of the dial; its own upper limit where not given.")
+
+
 class SweepSetting(Entity):
     """The dial that is swept, and over which range."""
 
@@ -147,6 +158,7 @@ class Scenario(Entity):
     )
     train = Children([], item=Step, label="Train", doc="Steps after blending, in flow order.")
     targets = Children([], item=Target, label="Targets", doc="Bands the finished water should meet.")
+    holds = Table({}, item=DialHold, label="Holds", doc="Of dials that are computed, by dial address.")
     tolerances = Table({}, item=Tolerance, label="Tolerances", doc="By dial address.")
     sweep = Child(None, item=SweepSetting, label="Sweep", doc="What the sweep view shows.")
     organic_charge_density = Number(

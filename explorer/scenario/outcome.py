@@ -2,12 +2,15 @@
 
 from collections.abc import Mapping
 from functools import cached_property
+from types import MappingProxyType
 
 import numpy as np
 
 from explorer.chemistry import Solution
 from explorer.scenario.alarms import alarms_of
 from explorer.scenario.errors import ScenarioError, unknown
+from explorer.scenario.held_dials import DialGoal, HeldDial
+from explorer.scenario.holds import told
 from explorer.scenario.model import Target
 from explorer.scenario.operations import Dose
 from explorer.scenario.readouts import READOUTS
@@ -15,6 +18,12 @@ from explorer.scenario.stage import BLEND, FINISHED, Stage
 from explorer.treatment.notes import Note
 
 __all__ = ["BLEND", "FINISHED", "Outcome"]
+
+HELD_SLACK = 10
+"""Slacks of the readout within which a held dial meets its goal."""
+
+WHERE = {FINISHED: "in the finished water", BLEND: "in the blend"}
+NEAREST = "the dial stands where it comes nearest"
 
 
 class Outcome:
@@ -38,10 +47,11 @@ class Outcome:
         parts: Mapping[str, np.ndarray],
         ends: Mapping[str, Stage],
         inputs: Mapping[str, np.ndarray],
+        goals: Mapping[str, tuple[DialGoal, str]] = MappingProxyType({}),
     ) -> None:
         self.shape, self.season, self.stages = shape, season, stages
         self.dosing, self.parts, self.ends, self.inputs = doses, parts, ends, inputs
-        self._targets, self._notes = targets, notes
+        self._targets, self._notes, self._goals = targets, notes, goals
         self._by_id = {stage.id: stage for stage in stages} | {FINISHED: stages[-1]}
 
     def stage(self, id: str = FINISHED) -> Stage:
@@ -70,10 +80,24 @@ class Outcome:
     @property
     def doses(self) -> dict[str, tuple[np.ndarray, str, bool]]:
         """By step: dose in its entered unit, the unit, and whether it is held."""
+        held = {address.split(".")[-2] for address in self._goals if address.endswith(".dose")}
         return {
-            step: (np.broadcast_to(dose.value, self.shape), dose.unit, dose.held)
+            step: (np.broadcast_to(dose.value, self.shape), dose.unit, dose.held or step in held)
             for step, dose in self.dosing.items()
         }
+
+    @cached_property
+    def held(self) -> dict[str, HeldDial]:
+        """Dials that were computed so that readouts meet their held values, by address."""
+        found = {}
+        for address, (goal, unit) in self._goals.items():
+            wanted = np.broadcast_to(self.inputs[goal.goal], self.shape)
+            off = np.abs(self.readout(goal.readout.key, goal.stage) - wanted)
+            met = off <= HELD_SLACK * goal.readout.slack
+            sentence = f"cannot be brought to {{goal}} {WHERE.get(goal.stage, 'there')}: {NEAREST}"
+            words = tuple(told(~met, wanted, goal.readout, sentence))
+            found[address] = HeldDial(np.broadcast_to(self.inputs[address], self.shape), unit, met, words)
+        return found
 
     def targets(self) -> list[tuple[Target, np.ndarray, np.ndarray, np.ndarray]]:
         """Every entered target with value, whether it is met, and the margin to the nearer limit (negative
@@ -90,4 +114,5 @@ class Outcome:
     @cached_property
     def notes(self) -> list[Note]:
         """What there is to say: of the analyses and the holds, and every alarm."""
-        return [*self._notes, *alarms_of(self)]
+        holds = [Note("caution", address, text) for address, held in self.held.items() for text in held.words]
+        return [*self._notes, *holds, *alarms_of(self)]

@@ -11,6 +11,7 @@ from explorer.chemistry import COMPONENTS
 from explorer.scenario.dials import Dial, dials, no_dial
 from explorer.scenario.errors import ScenarioError, join, listed, shown, unknown
 from explorer.scenario.fields import Faults, object_fault, outside, span
+from explorer.scenario.hold_rule import held_dials
 from explorer.scenario.measured import entry_faults
 from explorer.scenario.model import FORMAT, VERSION, Scenario, SweepSetting
 from explorer.scenario.observed_rule import measured_points
@@ -286,6 +287,7 @@ RULES: tuple[Callable[[Scenario], Faults], ...] = (
     _analyses,
     _steps,
     _targets,
+    held_dials,
     _dials,
     measured_points,
     _options,

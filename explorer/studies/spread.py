@@ -3,8 +3,8 @@
 An *input* is one independent cause of error with one random number: a dial with a tolerance, or several dials
 that are off together. What one error does follows from what it is:
 
-* A tolerance of a **dose** is that of its pump. A dose that is held has none: its controller makes up for it,
-  as far as its meter is right (the tolerance of the held value).
+* A tolerance of a **dose** is that of its pump. A dose or another dial that is held has none: its controller
+  makes up for it, as far as its meter is right (the tolerance of the held value).
 * A tolerance of a product **strength** is one error for the tank: the pumps run as set, so every fixed dose
   of that product, wherever it is added, is off in proportion. Steps with the same chemical and strength draw
   from one tank, unless they have tolerances with different words under ``shared``.
@@ -234,6 +234,8 @@ def spread_of(scenario: Scenario, season: str | None = None) -> Spread:
         for address, tolerance in entered.items()
         if address in plan.dials and address.startswith(live) and any(tolerance.sides)
     }
+    for goal in plan.holds:
+        widths.pop(goal.address, None)
     return Spread(plan, _inputs(plan, widths, pumps), pumps)
 
 
@@ -278,13 +280,15 @@ def _in_service(plan: Plan) -> tuple[list[Pump], tuple[str, ...]]:
     """Fixed doses, and the starts of the addresses of everything that is in service."""
     pumps: list[Pump] = []
     live = ["flow"]
+    held = {goal.address for goal in plan.holds}
 
     def follow(train: Sequence[Operation], source: str) -> None:
         for operation in train:
             live.append(f"{operation.address}.")
             if isinstance(operation, SideStreamOperation):
                 follow(operation.train, source)
-            if isinstance(operation, DoseOperation) and operation.held is None:
+            fixed = isinstance(operation, DoseOperation) and operation.held is None
+            if fixed and f"{operation.address}.dose" not in held:
                 strength = plan.dials.get(f"{operation.address}.strength")
                 usual = np.nan if strength is None else strength.value
                 by_product = operation.unit == PRODUCT

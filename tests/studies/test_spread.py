@@ -269,6 +269,26 @@ def test_a_held_dose_makes_up_for_its_strength(plant):
     assert follow(spread.plan, ends(spread)).readout("ph") == pytest.approx(8.2, abs=1e-6)
 
 
+def test_a_dial_held_elsewhere_in_the_plant_makes_up_for_its_errors_too(plant):
+    """A dose held to the finished water is off neither by its pump nor by its tank; its meter may be."""
+    scenario = plant(
+        {"well": 100},
+        [
+            plant.dosed("caustic", "sodium_hydroxide", 0, "mg/L"),
+            plant.dosed("hypo", "sodium_hypochlorite", 1, "mg/L as Cl2"),
+        ],
+        holds={"train.caustic.dose": {"readout": "ph", "value": 8.2, "high": 60}},
+        tolerances={
+            "train.caustic.dose": {"plus_minus": 5, "unit": "%"},
+            "train.caustic.strength": {"plus_minus": 4, "unit": "%"},
+            "train.caustic.dose.hold.value": {"plus_minus": 0.1},
+        },
+    )
+    spread = spread_of(scenario)
+    places = np.array([[1.0, -1.0], [0.0, 1.0]])
+    assert follow(spread.plan, spread.placed(places, {})).readout("ph") == pytest.approx([8.2, 8.3], abs=1e-6)
+
+
 # ---- flows -------------------------------------------------------------------------------------------------
 
 
