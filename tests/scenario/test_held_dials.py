@@ -225,7 +225,9 @@ def test_points_where_it_is_met_are_told_from_others(plant):
 
 def test_a_point_without_an_answer_stays_without(plant):
     """Where the analysis is impossible the dial stands as entered; the reason is that of the analysis."""
-    scenario = plant({"river": 100}, [TOWER], holds={"train.tower.approach": {"readout": "co2", "value": 1.5}})
+    scenario = plant(
+        {"river": 100}, [TOWER], holds={"train.tower.approach": {"readout": "co2", "value": 1.5}}
+    )
     outcome = evaluate(scenario, {"waters.river.analysis.ph": np.array([8.0, 12.0])})
     assert outcome.held["train.tower.approach"].met.tolist() == [True, False]
     assert outcome.held["train.tower.approach"].value[1] == 50
