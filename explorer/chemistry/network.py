@@ -62,7 +62,8 @@ class LogK:
     """
 
     def __init__(self, tables: Mapping[tuple[float, float], NDArray]) -> None:
-        self._tables = [(key, np.flatnonzero(table.any(axis=1)), table) for key, table in tables.items()]
+        filled = [(key, np.flatnonzero(table.any(axis=1)), table) for key, table in tables.items()]
+        self._tables = sorted(filled, key=lambda entry: -len(entry[1]))
         self._size = max((len(table) for table in tables.values()), default=0)
         self._at_one = lru_cache(maxsize=64)(self._evaluate_one)
 
@@ -96,11 +97,14 @@ class LogK:
         return self._evaluate(np.array(temperature))
 
     def _evaluate(self, temperature: NDArray) -> NDArray:
-        result = np.zeros((self._size, *temperature.shape))
+        result = None
         for key, used, table in self._tables:
             basis = constants.basis_functions(np.clip(temperature, *key))
-            result[used] += np.tensordot(table[used], basis, axes=1)
-        return result
+            if result is None:
+                result = np.tensordot(table, basis, axes=1)
+            else:
+                result[used] += np.tensordot(table[used], basis, axes=1)
+        return np.zeros((self._size, *temperature.shape)) if result is None else result
 
 
 def _is_one(temperature: NDArray) -> bool:

@@ -141,6 +141,11 @@ class Newton:
         self.rows = {
             name: slice(end - len(r), end) for (name, r), end in zip(rows.items(), ends, strict=True)
         }
+        self.own_weights = np.vstack([rows["held"], rows["lacking"], rows["strength"][:1]])
+        steepest = rows["held"].max(axis=1)
+        steepest[self.two_sided] += rows["lacking"].max(axis=1)
+        self.own_power = 1.0 / steepest[:, None]
+        self.own_power[0] = 0.0
         self.diagonal = np.array([self.position[i, i] for i in range(self.masters)])
         self.proton_pairs = np.array([row for row, (i, j) in enumerate(self.pattern) if 0 in (i, j)])
 
@@ -194,6 +199,15 @@ class Newton:
         )
         return np.maximum(largest, np.abs(strength_change) / state.strength)
 
+    def scale(self, problem: Problem, state: State) -> None:
+        """Improve ``state`` in place as if every component but H+, which stays, were on its own: each is
+        scaled to its total with the power that its highest counts allow without overshooting."""
+        c = self.concentrations(problem, state)
+        sums = np.matmul(self.own_weights, c, out=_scratch.array("sums", len(self.own_weights), len(problem)))
+        held, lacking = sums[: self.masters], sums[self.masters : -1]
+        state.x += self.own_power * np.log(self.ratios(problem.totals, held, lacking))
+        state.strength = np.clip(sums[-1] + problem.inert, 1e-8, 1.0)
+
     def proton_response(self, problem: Problem, state: State) -> NDArray:
         """Change of ln activity of H+ per unit of proton total at a solution; (N,)."""
         linear = self.linearise(problem, state)
@@ -229,8 +243,9 @@ class Newton:
             totals = totals.copy()
             totals[0] -= problem.organic * END_POINT_FRACTION
 
-        ratio, larger = self.compared(totals, held, lacking)
-        residual = larger * np.log(ratio)
+        residual = np.log(self.ratios(totals, held, lacking))
+        held[self.two_sided] = np.maximum(held[self.two_sided], lacking)
+        residual *= held
         if problem.ph is not None:
             matrix[self.proton_pairs] = 0.0
             matrix[self.diagonal[0]] = 1.0
@@ -239,18 +254,17 @@ class Newton:
         matrix[self.diagonal] += matrix[self.diagonal] == 0.0
         return Linear(matrix, residual, column, row, strength_residual, corner)
 
-    def compared(self, totals: NDArray, held: NDArray, lacking: NDArray) -> tuple[NDArray, NDArray]:
-        """What each balance has over what it wants, and the larger of ``held`` and ``lacking``; (M, N).
+    def ratios(self, totals: NDArray, held: NDArray, lacking: NDArray) -> NDArray:
+        """What each balance has over what it wants; (M, N). A component that is absent has 1.
 
-        ``lacking`` has the rows ``two_sided`` only. A component that is absent has a ratio of 1.
+        ``lacking`` has the rows ``two_sided`` only.
         """
         two = self.two_sided
-        have, larger = totals + SMALLEST_TOTAL, held.copy()
-        want = held + SMALLEST_TOTAL
+        have, want = totals + SMALLEST_TOTAL, held + SMALLEST_TOTAL
         have[two] = lacking + np.maximum(totals[two], 0.0) + SMALLEST_TOTAL
         want[two] -= np.minimum(totals[two], 0.0)
-        larger[two] = np.maximum(held[two], lacking)
-        return np.clip(have / want, 1e-150, 1e150), larger
+        have /= want
+        return np.clip(have, 1e-150, 1e150, out=have)
 
     def eliminate(self, matrix: NDArray, columns: NDArray) -> None:
         """Solve the symmetric system for every right-hand side in place; ``columns`` (M, R, N)."""

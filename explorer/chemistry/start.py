@@ -46,7 +46,13 @@ class FirstGuess:
 
     def ph(self, totals: NDArray, organic: NDArray, temperature: NDArray) -> NDArray:
         """First guess (N,) from the masters' ``totals`` (M, N), ``organic`` acid groups (N,) and °C (N,)."""
-        protons = self._protons(TEMPERATURE_STEP * round(float(temperature.mean()) / TEMPERATURE_STEP))
+        cold, warm = (_on_step(float(end)) for end in (temperature.min(), temperature.max()))
+        ph = self._ph(totals, organic, self._protons(cold))
+        if warm > cold:
+            ph += (self._ph(totals, organic, self._protons(warm)) - ph) * (temperature - cold) / (warm - cold)
+        return ph
+
+    def _ph(self, totals: NDArray, organic: NDArray, protons: NDArray) -> NDArray:
         alkalinity = np.outer(self.organic, organic) - protons @ totals[1:]
         alkalinity += self.water[:, None]
         wanted = -totals[0]
@@ -70,8 +76,12 @@ class FirstGuess:
         return self._tables[temperature]
 
 
+def _on_step(temperature: float) -> float:
+    return TEMPERATURE_STEP * round(temperature / TEMPERATURE_STEP)
+
+
 def first_state(newton: Newton, problem: Problem, ph: NDArray) -> State:
-    """State at a pH, with every other component scaled to its total a few times as if on its own."""
+    """State at a pH, with every other component brought to its total a few times as if on its own."""
     totals = problem.totals
     floor = np.full((newton.masters, 1), SMALLEST_TOTAL)
     floor[newton.two_sided] = TRACE
@@ -80,13 +90,6 @@ def first_state(newton: Newton, problem: Problem, ph: NDArray) -> State:
     x[newton.two_sided] = np.maximum(x[newton.two_sided], np.log(TRACE))
     x[0] = -LN10 * ph
     state = State(x, np.clip(problem.inert + np.abs(totals[1:]).sum(axis=0), 1e-7, 0.5))
-    held, lacking = newton.weights[newton.rows["held"]], newton.weights[newton.rows["lacking"]]
-    power = held.max(axis=1)
-    power[newton.two_sided] += lacking.max(axis=1)
-    power[0] = np.inf
     for _ in range(PASSES):
-        c = newton.concentrations(problem, state)
-        ratio, _ = newton.compared(totals, held @ c, lacking @ c)
-        state.x += np.log(ratio) / power[:, None]
-        state.strength = np.clip(0.5 * newton.charges**2 @ c + problem.inert, 1e-8, 1.0)
+        newton.scale(problem, state)
     return state
