@@ -87,18 +87,18 @@ def test_thiosulfate_removes_four_free_chlorine(system):
     assert after["alkalinity"] == pytest.approx(1e-3 - 6e-5)
 
 
-@pytest.mark.parametrize(("agent", "alkalinity"), [("sulfite", 1), ("thiosulfate", 2)])
-def test_dechlorinating_monochloramine_gives_its_ammonia_back(system, agent, alkalinity):
+@pytest.mark.parametrize(("reductant", "alkalinity"), [("sulfite", 1), ("thiosulfate", 2)])
+def test_dechlorinating_monochloramine_gives_its_ammonia_back(system, reductant, alkalinity):
     """The nitrogen returns as ammonium."""
-    power = {"sulfite": 1, "thiosulfate": 4}[agent]
-    after = react(system, monochloramine=8e-5, alkalinity=1e-3, **{agent: 1e-5})
+    power = {"sulfite": 1, "thiosulfate": 4}[reductant]
+    after = react(system, monochloramine=8e-5, alkalinity=1e-3, **{reductant: 1e-5})
     assert after["ammonia"] == pytest.approx(power * 1e-5)
     assert after["monochloramine"] == pytest.approx(8e-5 - power * 1e-5)
     assert after["alkalinity"] == pytest.approx(1e-3 - alkalinity * 1e-5)
 
 
 def test_free_chlorine_is_removed_before_monochloramine(system):
-    """A dechlorinating agent spends itself on free chlorine first."""
+    """A reductant spends itself on free chlorine first."""
     after = react(system, free_chlorine=2e-5, monochloramine=3e-5, sulfite=2e-5)
     assert after["free_chlorine"] == 0
     assert after["monochloramine"] == pytest.approx(3e-5)
