@@ -117,6 +117,15 @@ FAN_ALPHA = 0.15
 POINTER = "#7f8f93"
 """Line under the pointer, in both palettes."""
 
+HATCHES = (
+    "right_diagonal_line", "left_diagonal_line", "horizontal_line", "dot", "vertical_line", "cross",
+    "diagonal_cross", "ring",
+)  # fmt: skip
+"""Hatch of the n-th missed target of a map; study.css draws them alike in the legend."""
+
+NO_ANSWER_HATCH = "dot"
+MAP_ALPHA, HATCH_ALPHA = 0.13, 0.5
+
 CROSSING_MARKER = "diamond"
 POINT_MARKER = "circle"
 
@@ -139,6 +148,7 @@ def css_variables(palette: Palette) -> str:
         if field.name not in {"scheme", "series", "waters"}
     }
     values |= {f"water-{index}": colour for index, colour in enumerate(palette.waters)}
+    values |= {f"series-{index}": colour for index, colour in enumerate(palette.series)}
     values |= {
         "panel-background-color": palette.bg,
         "panel-on-background-color": palette.ink,
@@ -162,6 +172,9 @@ VIEW_STYLES = ("live_view.css", "views.css")
 """Style files of the main column's views, which carry them because page styles stop at a shadow root."""
 
 
+STUDY_STYLES = (*VIEW_STYLES, "study.css")
+"""The same for views of long calculations."""
+
 VIEW_HOST_CSS = ":host { min-height: 0 !important; height: 100%; }"
 """For a view that fills the place under the verdict and shrinks with it."""
 
@@ -175,9 +188,16 @@ PLOT_GRID_CSS = """
 }
 """
 
+MAP_GRID_CSS = """
+:host { display: grid !important; grid-template-columns: minmax(0, 1fr) 232px; gap: 12px; min-height: 0;
+  margin-top: 9px !important; }
+@media (max-width: 759px) { :host { grid-template-columns: minmax(0, 1fr); grid-template-rows: 420px auto; } }
+"""
+
 PLOT_CARD_CSS = """
 :host { background: var(--card); border: 1px solid var(--line); border-radius: 7px; overflow: hidden;
-  min-height: 0; }
+  min-height: 0; transition: opacity .2s; }
+:host(.old) { opacity: .45; }
 """
 
 

@@ -8,7 +8,7 @@ from bokeh.core.properties import value
 from bokeh.models import ColumnDataSource, CustomJSTickFormatter, GlyphRenderer, Span
 from bokeh.plotting import figure
 
-from explorer.app.look import FONT, POINTER
+from explorer.app.look import FOLDER, FONT, POINTER
 
 _TICKS = """
 const largest = Math.max(...ticks.map(Math.abs)), power = largest >= 1e5 ? Math.floor(Math.log10(largest)) : 0
@@ -24,6 +24,11 @@ return (tick < 0 && Number(text) !== 0 ? "−" : "") + text + times + after
 def ticks(after: str = "") -> CustomJSTickFormatter:
     """Numbers at an axis: no more decimals than they need, a real minus, ``after`` behind each."""
     return CustomJSTickFormatter(code=_TICKS, args={"after": after})
+
+
+def script(*names: str) -> str:
+    """Scripts beside this module, one after the other, as one for the page."""
+    return "\n".join((FOLDER / name).read_text(encoding="utf-8") for name in names)
 
 
 def in_page(**columns: list[Any]) -> ColumnDataSource:

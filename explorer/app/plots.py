@@ -14,11 +14,11 @@ from bokeh.events import MouseLeave, MouseMove, Pan, PanEnd, PanStart, Tap
 from bokeh.models import CustomJS, Range1d, Span
 
 from explorer.app.line_plot import LinePlot
-from explorer.app.look import FOLDER, Palette
-from explorer.app.plot_parts import pointer_line, ticks
+from explorer.app.look import Palette
+from explorer.app.plot_parts import pointer_line, script, ticks
 from explorer.studies.pictures import Axis, Picture
 
-_SCRIPT = (FOLDER / "sweep.js").read_text(encoding="utf-8")
+_SCRIPT = script("numbers.js", "sweep.js")
 
 
 class LinkedPlots:
@@ -72,15 +72,15 @@ class LinkedPlots:
             }
             for plot in self.plots.values()
         ]
-        script = CustomJS(args={"parts": parts, "point": self.point, "x_range": self.x_range}, code=_SCRIPT)
+        react = CustomJS(args={"parts": parts, "point": self.point, "x_range": self.x_range}, code=_SCRIPT)
         moving = () if self.turned is None else (Tap, PanStart, Pan, PanEnd)
         for plot in self.plots.values():
             for event in (MouseMove, MouseLeave, *moving):
-                plot.figure.js_on_event(event, script)
-            plot.lines.js_on_change("data", script)
-            plot.figure.js_on_change("inner_height", script)
-        self.point.js_on_change("location", script)
-        self.x_range.js_on_change("end", script)
+                plot.figure.js_on_event(event, react)
+            plot.lines.js_on_change("data", react)
+            plot.figure.js_on_change("inner_height", react)
+        self.point.js_on_change("location", react)
+        self.x_range.js_on_change("end", react)
 
     def show(self, pictures: dict[str, Picture], along: Axis) -> None:
         """Show all pictures (by plot name); they share ``x``."""

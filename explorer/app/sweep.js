@@ -27,13 +27,6 @@ function at(xs, ys, x) {         // linear between neighbours; nan next to a gap
   return ys[low] + (ys[high] - ys[low]) * (x - xs[low]) / (xs[high] - xs[low])
 }
 
-function number(value, digits, figures, signed) {
-  const leading = value ? Math.floor(Math.log10(Math.abs(value))) + 1 : 1
-  const text = Math.abs(value).toFixed(figures ? Math.min(digits, Math.max(0, figures - leading)) : digits)
-  if (Number(text) === 0) return text
-  return (value < 0 ? "−" : signed ? "+" : "") + text
-}
-
 // Labels keep their order and never cover each other; near the top or bottom they stay inside.
 function settle(labels, gap, low, high) {
   labels.sort((a, b) => a.y - b.y)
