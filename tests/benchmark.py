@@ -13,7 +13,7 @@ os.environ.setdefault("OMP_NUM_THREADS", "1")
 import subprocess
 import sys
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from pathlib import Path
 from statistics import median
 from typing import Any
@@ -29,7 +29,10 @@ from explorer.chemistry.calcium_carbonate import precipitation_potential
 from explorer.scenario.evaluate import evaluate
 from explorer.scenario.files import open_scenario
 from explorer.scenario.model import Scenario
+from explorer.studies.corners import extremes
 from explorer.studies.sweep import sweep
+from explorer.studies.tolerance import tolerance
+from explorer.studies.window import window
 
 RUNS = 7
 WATERS = 20_000
@@ -151,6 +154,55 @@ def redraw(scenario: Scenario) -> None:
     swept.outcome.reasons()
 
 
+def first_and_last(pictures: Callable[[], Iterator[Any]]) -> tuple[float, float]:
+    """Median seconds to the first and to the last picture of a study."""
+    times = []
+    for _ in range(3):
+        start = time.perf_counter()
+        times.append([time.perf_counter() - start for _ in pictures()])
+    return median(run[0] for run in times), median(run[-1] for run in times)
+
+
+def studies() -> list[tuple[str, str]]:
+    """Rows of the studies of two dials, of tolerances, and of holds."""
+    amber, dune = (open_scenario(ROOT / "scenarios" / f"{name}.json") for name in ("amber", "dune"))
+    spread = first_and_last(lambda: tolerance(amber))
+    doses = ("waters.permeate.train.caustic.dose", "waters.wells.share")
+    mapped = first_and_last(lambda: window(dune, *doses, (5, 25), (0, 40)))
+    raw = amber.to_dict() | {"tolerances": {}}
+    alum = {"value": 30, "unit": "mg/L"}
+    hold = {"readout": "ph", "value": 8.2, "ceiling": {"value": 80, "unit": "mg/L"}}
+    raw["train"] = [
+        {"id": "alum", "step": "dose", "chemical": "aluminium_sulfate", "dose": alum},
+        {"id": "caustic", "step": "dose", "chemical": "sodium_hydroxide", "hold": hold},
+    ]
+    held = Scenario.from_dict(raw)
+    raw["train"] = [
+        {"id": "gas", "step": "dose", "chemical": "carbon_dioxide", "dose": {"value": 0, "unit": "mg/L"}},
+        {"id": "lime", "step": "dose", "chemical": "calcium_hydroxide", "dose": {"value": 0, "unit": "mg/L"}},
+    ]
+    raw["holds"] = {
+        "train.gas.dose": {"readout": "ccpp", "value": 4, "high": 200},
+        "train.lime.dose": {"readout": "alkalinity", "value": 300, "high": 300},
+    }
+    together = Scenario.from_dict(raw)
+    return [
+        ("tolerance: 2,048 samples of 18 inputs × 102 points, CCPP", f"{spread[1]:.2f} s"),
+        ("  first picture, 64 samples", f"{spread[0]:.2f} s"),
+        ("window: 129 × 129 points, 6 targets, borders", f"{mapped[1]:.2f} s"),
+        ("  first picture, 33 × 33 points", f"{mapped[0]:.2f} s"),
+        (
+            "extremes: all corners of the strongest of 18 inputs",
+            f"{timed(lambda: extremes(amber, 'ccpp'), 3):.2f} s",
+        ),
+        ("hold: caustic to pH 8.2 after alum, 101 blends", f"{1e3 * timed(lambda: sweep(held)):.0f} ms"),
+        (
+            "  lime and CO2 to alkalinity and CCPP, 101 blends",
+            f"{1e3 * timed(lambda: sweep(together)):.0f} ms",
+        ),
+    ]
+
+
 def cold_start() -> float:
     """Seconds of ``solve`` in a fresh process."""
     command = [sys.executable, "-m", "explorer", "solve", str(ROOT / "scenarios" / "amber.json"), "--json"]
@@ -183,8 +235,8 @@ def main() -> None:
         ("evaluate alone, one point", f"{1e3 * timed(lambda: evaluate(scenario)):.2f} ms"),
         ("blendwright solve, cold start", f"{cold_start():.2f} s"),
     )
-    for name, figure in rows:
-        print(f"{name:54}{figure}")
+    for name, figure in (*rows, *studies()):
+        print(f"{name:60}{figure}")
 
 
 if __name__ == "__main__":
