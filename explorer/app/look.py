@@ -189,9 +189,9 @@ PLOT_GRID_CSS = """
 """
 
 MAP_GRID_CSS = """
-:host { display: grid !important; grid-template-columns: minmax(0, 1fr) 232px; gap: 12px; min-height: 0;
+:host { display: grid !important; grid-template: minmax(0, 100%) / minmax(0, 1fr) 232px; gap: 12px; min-height: 0;
   margin-top: 9px !important; }
-@media (max-width: 759px) { :host { grid-template-columns: minmax(0, 1fr); grid-template-rows: 420px auto; } }
+@media (max-width: 759px) { :host { grid-template: 420px auto / minmax(0, 1fr); } }
 """
 
 PLOT_CARD_CSS = """

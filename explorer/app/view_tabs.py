@@ -31,6 +31,7 @@ class Kind:
 
 KINDS = (
     Kind("sweep", "Sweep", "sweep_view", "SweepView"),
+    Kind("window", "Window", "window_view", "WindowView"),
     Kind("ledger", "Ledger", "ledger_view", "LedgerView"),
 )  # fmt: skip
 """Views in the order of their tabs; the first is open at first."""
