@@ -1,0 +1,129 @@
+"""What a report is about: one scenario in one season, and everything worked out from it, once."""
+
+from collections.abc import Iterator, Sequence
+from functools import cached_property
+
+import numpy as np
+
+from explorer.chemistry.components import FAMILIES
+from explorer.scenario.dials import step_name
+from explorer.scenario.errors import ScenarioError, unknown
+from explorer.scenario.evaluate import Outcome, evaluate
+from explorer.scenario.model import DoseStep, Scenario, Step
+from explorer.scenario.readouts import READOUTS
+from explorer.studies.alarms import alarms
+from explorer.studies.finding import finding
+from explorer.studies.ledger import Ledger, ledger
+from explorer.studies.pictures import Axis
+from explorer.studies.sweep import Sweep, sweep
+from explorer.studies.sweep_pictures import swept_axis
+from explorer.studies.verdict import Verdict
+from explorer.treatment.chemicals import Chemical
+from explorer.treatment.notes import Note
+
+USUAL = (
+    "ph", "alkalinity", "calcium", "ccpp", "buffer_intensity", "dic", "hardness", "langelier_index",
+    "larson_ratio", "chloride_sulfate_ratio", "conductivity",
+)  # fmt: skip
+"""Results of most interest, after those with a target."""
+
+
+class Case:
+    """A scenario as it stands, in its own season. Raises ScenarioError where it cannot be evaluated."""
+
+    def __init__(self, scenario: Scenario) -> None:
+        self.scenario = scenario
+        self.season = scenario.season
+        self.outcome: Outcome = evaluate(scenario)
+        self.swept: Sweep = sweep(scenario)
+
+    @cached_property
+    def verdict(self) -> Verdict:
+        """The decision sentence."""
+        return finding(self.outcome, self.swept)
+
+    @cached_property
+    def along(self) -> Axis:
+        """The dial of the sweep."""
+        return swept_axis(self.swept)
+
+    @cached_property
+    def alarms(self) -> list[Note]:
+        """Every alarm, of the point and of the sweep, and what else there is to beware of."""
+        beside = [note for note in self.outcome.notes if not note.key and note.level != "info"]
+        return [*alarms(self.scenario, self.outcome, self.swept), *beside]
+
+    @cached_property
+    def ledger(self) -> Ledger | None:
+        """What everything brings and takes; None where there is no answer."""
+        try:
+            return ledger(self.scenario, self.outcome)
+        except ScenarioError:
+            return None
+
+    def results(self, most: int) -> list[str]:
+        """Readouts worth a row: those with targets, then the usual ones that have a value."""
+        aimed = [target.readout for target in self.scenario.targets]
+        usual = [key for key in USUAL if np.isfinite(self.swept.outcome.readout(key)).any()]
+        return list(dict.fromkeys([*aimed, *usual]))[: max(most, len(dict.fromkeys(aimed)))]
+
+    def value(self, key: str, stage: str = "finished") -> float:
+        """A readout at the operating point."""
+        return float(self.outcome.readout(key, stage))
+
+    def places(self) -> Iterator[tuple[str, Sequence[Step]]]:
+        """Every train with the words for where it stands, in the order of flow; empty ones left out."""
+        for water in self.scenario.waters:
+            yield from self._trains(f"{water.title}, before the blend", water.train)
+        yield from self._trains("After the blend", self.scenario.train)
+
+    def _trains(self, place: str, train: Sequence[Step]) -> Iterator[tuple[str, Sequence[Step]]]:
+        if train:
+            yield place, train
+        for step in train:
+            yield from self._trains(f"{step.title}, on the side", getattr(step, "train", ()))
+
+    def name(self, step: Step) -> str:
+        """Name of a step."""
+        return step_name(self.scenario, step)
+
+    @cached_property
+    def chemicals(self) -> dict[str, tuple[Chemical, list[str]]]:
+        """Chemicals dosed, by key, each with the names of the steps in service that dose it."""
+        found: dict[str, tuple[Chemical, list[str]]] = {}
+        for _, step in self.scenario.steps():
+            if isinstance(step, DoseStep) and step.id in self.outcome.dosing:
+                chemical = self.outcome.dosing[step.id].chemical
+                found.setdefault(step.chemical, (chemical, []))[1].append(self.name(step))
+        return found
+
+    def adds(self, *components: str) -> bool:
+        """Whether any dose brings one of some components."""
+        return any(
+            chemical.totals.get(key, 0) for chemical, _ in self.chemicals.values() for key in components
+        )
+
+    def present(self, *components: str) -> bool:
+        """Whether any of some components is in the water anywhere."""
+        return any(
+            np.nanmax(stage.total(key), initial=0.0) > 0
+            for stage in self.outcome.stages
+            for key in components
+        )
+
+    def place_of(self, where: str) -> str:
+        """Name of what a note or address is about; "" where it has none."""
+        names = {stage.id: stage.name for stage in self.outcome.stages}
+        names |= {"finished": "Finished water", "blend": "Blend"}
+        return next((names[part] for part in where.split(".") if part in names), "")
+
+    def family_name(self, family: str) -> str:
+        """Printed name of a family of species. Raises ScenarioError for one that is not known."""
+        names = {key: key for key in FAMILIES} | {a.id: a.name or a.id for a in self.scenario.acids}
+        if family not in names:
+            raise ScenarioError("family", unknown(family, "a family of species", names))
+        return names[family]
+
+    def readouts(self) -> list[str]:
+        """Readouts that the finished water has."""
+        return [key for key in READOUTS if np.isfinite(self.value(key))]

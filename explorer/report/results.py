@@ -1,0 +1,193 @@
+"""What comes out: targets, the sweep in figures and numbers, options side by side, every result."""
+
+from collections.abc import Iterator, Sequence
+
+import numpy as np
+
+from explorer.report.case import Case
+from explorer.report.markup import Markup, Part, element
+from explorer.report.svg import Fan, Points, plot
+from explorer.report.tables import Group, Row, table, unit_cell
+from explorer.scenario.evaluate import Outcome
+from explorer.scenario.model import Target
+from explorer.scenario.readouts import NO_VALUE, READOUTS, Readout, format_value, in_words, status
+from explorer.scenario.words import in_sentence, range_text, unit_text
+from explorer.studies.compare import Comparison
+from explorer.studies.hand_checks import figure
+from explorer.studies.sweep_pictures import picture_of, picture_of_species
+
+ABREAST, RESULTS = 5, 10
+"""Places along the sweep that the table shows, and results at each."""
+
+STATUS = {
+    "in range": "● meets the entered target",
+    "below": "▼ below the entered target",
+    "above": "▲ above the entered target",
+    "no value": "no value",
+}
+MAY_BE_ABSENT = ("Ions", "Chlorine and ammonia", "Solids and cost")
+OUTSIDE = {"below": " ▼", "above": " ▲"}
+
+
+def value_text(value: float, readout: Readout) -> str:
+    """A result as the page and the command line show it, without unit; with the word for its sign."""
+    if readout.sign_words:
+        return in_words(value, readout).removesuffix(readout.unit_text)
+    return format_value(value, readout)
+
+
+def span_text(low: float, high: float, readout: Readout) -> str:
+    """Two results as a range, with the word for their sign once where both have the same."""
+    first, last = value_text(low, readout), value_text(high, readout)
+    word = first.split(" ")[0] + " " if " " in first else ""
+    return f"{first} to {last.removeprefix(word)}"
+
+
+def targets(case: Case) -> Markup | None:
+    """Every entered target with value, margin and state."""
+    rows: list[Row] = []
+    for target, value, _, margin in case.outcome.targets():
+        readout = READOUTS[target.readout]
+        state = status(float(value), target.low, target.high, readout.slack)
+        aim: Part = [range_text(target.low, target.high), _small(target.basis)]
+        rows.append(
+            [
+                [readout.label, _small(readout.meaning)],
+                element("strong", value_text(float(value), readout)),
+                unit_cell(readout.unit),
+                aim,
+                format_value(float(margin), readout),
+                element("span", STATUS[state], class_="met" if state == "in range" else "missed"),
+            ]
+        )
+    heading = ["Result", "Value", "Unit", "Entered target and its basis", "Margin", "State"]
+    return table("targets", heading, rows, left=(0, 2, 3, 5))
+
+
+def _small(text: str) -> Markup | None:
+    return element("small", text, class_="under") if text else None
+
+
+# ---- the sweep ---------------------------------------------------------------------------------------------
+
+
+def figures(
+    case: Case,
+    keys: Sequence[str],
+    family: str,
+    fans: dict[str, Fan] | None = None,
+    points: dict[str, Sequence[Points]] | None = None,
+) -> Iterator[Markup]:
+    """One figure a readout, and that of the species after the first."""
+    fans, points = fans or {}, points or {}
+    here = case.swept.dial.value
+    for number, key in enumerate(keys):
+        picture = picture_of(case.swept, key, case.scenario.targets)
+        now = f"now {value_text(case.value(key), READOUTS[key])}"
+        drawn = plot(picture, case.along, here, f"plot-{key}", fans.get(key), points.get(key, ()))
+        yield _figure(picture.title, [picture.note, now], drawn, picture.gaps, case)
+        if number == 0:
+            picture = picture_of_species(case.swept, family, case.family_name(family))
+            drawn = plot(picture, case.along, here, "plot-species")
+            yield _figure(picture.title, [picture.note], drawn, picture.gaps, case)
+
+
+def _figure(title: str, notes: Sequence[str], drawn: Markup, gaps: Sequence, case: Case) -> Markup:
+    note = " · ".join(filter(None, notes))
+    missing = [
+        element("small", f"No result from {case.along.at(start)} to {case.along.at(stop)}: {reason}.")
+        for start, stop, reason in gaps
+    ]
+    caption = element("figcaption", element("strong", title), element("span", note))
+    return element("figure", caption, drawn, missing)
+
+
+def along_table(case: Case) -> Markup | None:
+    """Five places along the sweep, and the operating point, with the results of most interest."""
+    swept = case.swept
+    x = np.linspace(swept.x[0], swept.x[-1], ABREAST)
+    columns = [case.outcome, swept.at(x)]
+    heading = ["", f"now, {case.along.at(swept.dial.value)}", *(case.along.at(value) for value in x)]
+    rows: list[Row | Group] = []
+    for key in case.results(RESULTS):
+        readout = READOUTS[key]
+        aims = [target for target in case.scenario.targets if target.readout == key]
+        values = np.concatenate([np.ravel(column.readout(key)) for column in columns])
+        label = f"{readout.label}, {unit_text(readout.unit)}" if readout.unit else readout.label
+        rows.append([label, *(_marked(value, readout, aims) for value in values)])
+    rows += _held_rows(columns)
+    return table("along-the-sweep", heading, rows, full=swept.table(case.results(RESULTS)))
+
+
+def _marked(value: float, readout: Readout, aims: Sequence[Target]) -> str:
+    """A value with the mark of the first target that it misses."""
+    states = [status(float(value), aim.low, aim.high, readout.slack) for aim in aims]
+    return value_text(value, readout) + next((OUTSIDE[state] for state in states if state in OUTSIDE), "")
+
+
+def _held_rows(columns: Sequence[Outcome]) -> Iterator[Row]:
+    """Doses that are computed, at the same places."""
+    for step, (_, unit, held) in columns[0].doses.items():
+        if held:
+            values = np.concatenate([np.ravel(column.doses[step][0]) for column in columns])
+            label = f"Dose of {columns[0].stage(step).name}, {unit_text(unit)}"
+            yield [label, *(figure(value) if np.isfinite(value) else NO_VALUE for value in values)]
+
+
+# ---- side by side ------------------------------------------------------------------------------------------
+
+
+def comparison(name: str, made: Comparison, whole: Comparison) -> Markup | None:
+    """Cases side by side, only what differs; ``whole``: the same with every result, for the CSV."""
+    rows: list[Row | Group] = []
+    for section in dict.fromkeys(row.section for row in made.rows):
+        rows.append(Group(section))
+        for row in made.section(section):
+            label = f"{row.label}, {unit_text(row.unit)}" if row.unit else row.label
+            marks = [OUTSIDE.get(state, "") for state in row.statuses] or [""] * len(row.texts)
+            rows.append([label, *(text + mark for text, mark in zip(row.texts, marks, strict=True))])
+    problems = [f"no answer: {problem}" if problem else "" for problem in made.problems]
+    if any(problems):
+        rows.append(["Answer", *problems])
+    heading = ["", *([case.title, _small(case.note)] for case in made.cases)]
+    return table(name, heading, rows, full=whole.table())
+
+
+def everything(case: Case) -> Iterator[Part]:
+    """Every result of the finished water, in the groups of the registry; what is not there in one line."""
+    rows: list[Row | Group] = []
+    absent = []
+    for key in case.readouts():
+        readout, value = READOUTS[key], case.value(key)
+        if not value and readout.group in MAY_BE_ABSENT:
+            absent.append(in_sentence(readout.label))
+            continue
+        if Group(readout.group) not in rows:
+            rows.append(Group(readout.group))
+        words = f"{case.scenario.currency} {readout.unit}".strip() if key == "cost" else readout.unit
+        rows.append([readout.label, value_text(value, readout), unit_cell(words), _small(readout.source)])
+    heading = ["Result", "Value", "Unit", "How it is found"]
+    yield table("results", heading, rows, left=(0, 2, 3), look="dense")
+    if absent:
+        yield element("p", f"None in this water: {', '.join(absent)}.", class_="small")
+
+
+def doses_line(case: Case) -> str:
+    """The blend and the doses in one line."""
+    blend = ", ".join(
+        f"{figure(100 * float(part))} % {case.outcome.stage(water).name}"
+        for water, part in case.outcome.parts.items()
+    )
+    doses = ", ".join(
+        f"{case.outcome.stage(step).name} {figure(float(value))} {unit_text(unit)}"
+        for step, (value, unit, _) in case.outcome.doses.items()
+    )
+    return f"{blend}; {doses}" if doses else blend
+
+
+def season_line(case: Case) -> str:
+    """Season and temperature, which every result depends on."""
+    temperature = in_words(case.value("temperature"), READOUTS["temperature"])
+    blend = in_words(case.value("temperature", "blend"), READOUTS["temperature"])
+    after = "" if blend == temperature else f" (blend {blend})"
+    return f"Season {case.season}, finished water at {temperature}{after}"
