@@ -18,7 +18,7 @@ from explorer.app.view import View
 from explorer.app.window_drawing import Drawing, drawing
 from explorer.app.window_plot import WindowPlot
 from explorer.app.window_setting import Setting, WindowChoices, at_step
-from explorer.scenario.dials import turn
+from explorer.scenario.dials import turn_together
 from explorer.scenario.model import Scenario
 from explorer.studies.progress import Watch
 from explorer.studies.window import window
@@ -210,9 +210,11 @@ class WindowView(View):
         if setting is None:
             return
 
+        sides = ((setting.x, x), (setting.y, y))
+        values = {dial.address: at_step(dial, place) for dial, place in sides}
+
         def change(scenario: Scenario) -> None:
-            for dial, place in ((setting.x, x), (setting.y, y)):
-                turn(scenario, dial.address, at_step(dial, place))
+            turn_together(scenario, values)
 
         label = f"{setting.x.label} and {setting.y.label}"
         refused = self.session.edit(label, change, rebuild=False)

@@ -105,6 +105,29 @@ def turn(scenario: Scenario, address: str, value: float, season: str | None = No
         raise ScenarioError(address, error.message) from None
 
 
+def turn_together(scenario: Scenario, values: Mapping[str, float], season: str | None = None) -> None:
+    """Set several dials, in place. Shares turned together all become what they are given; others take the
+    rest.
+
+    Raises ScenarioError as :func:`turn`; dials set before the one that is refused stay as set.
+    """
+    given = {address.split(".")[1]: value for address, value in values.items() if is_share(address)}
+    if len(given) > 1:
+        every = dials(scenario, season)
+        for address in filter(is_share, values):
+            if address not in every:
+                raise ScenarioError("", no_dial(address, every))
+        _store_shares(scenario, given)
+    for address, value in values.items():
+        if len(given) < 2 or not is_share(address):
+            turn(scenario, address, value, season)
+
+
+def is_share(address: str) -> bool:
+    """Whether a dial is the share of a water."""
+    return address.startswith("waters.") and address.endswith(".share")
+
+
 def neat(value: float) -> float | int:
     """Whole numbers as such, so that a file does not say 60.0 where a person writes 60."""
     if isinstance(value, bool) or not isinstance(value, int | float | np.number):
@@ -293,20 +316,29 @@ def _shares(scenario: Scenario) -> Iterator[Dial]:
 
 
 def _store_share(scenario: Scenario, turned: str, value: float) -> None:
-    if fault := Water.param.share.fault(value):
-        raise ScenarioError("share", fault)
+    _store_shares(scenario, {turned: value})
+
+
+def _store_shares(scenario: Scenario, given: Mapping[str, float]) -> None:
+    for value in given.values():
+        if fault := Water.param.share.fault(value):
+            raise ScenarioError("share", fault)
     running = [water for water in scenario.waters if water.on]
     effective = shares.in_service({water.id: water.share for water in running})
-    settled, possible = shares.settle(effective, {turned: value}, scenario.balance_water)
+    settled, possible = shares.settle(effective, given, scenario.balance_water)
     if len(running) == 1 and not possible:
         raise ScenarioError("share", "the only water in service has the whole share; allowed 100 %")
     if not possible:
-        others = [
-            share for water, share in effective.items() if water not in (turned, scenario.balance_water)
-        ]
-        most = f"0 to {shares.WHOLE - sum(others):g} %"
-        raise ScenarioError("share", f"{value:g} takes more than the balance water has; allowed {most}")
+        free = effective.keys() - given.keys()
+        balance = scenario.balance_water
+        fixed = sum(effective[water] for water in free - {balance}) if balance in free else 0.0
+        total, most = sum(given.values()), shares.WHOLE - fixed
+        if len(given) > 1:
+            limits = f"at most {most:g}, and exactly that where no other water is left"
+            raise ScenarioError("share", f"{total:g} % together do not go; allowed {limits}")
+        sentence = f"{total:g} takes more than the balance water has; allowed 0 to {most:g} %"
+        raise ScenarioError("share", sentence)
     # Waters out of service keep their share for their return; the rest divides what they leave.
     left = shares.WHOLE - sum(water.share for water in scenario.waters if not water.on)
-    for water in (*(w for w in running if w.id != turned), scenario.water(turned)):
+    for water in (*(w for w in running if w.id not in given), *map(scenario.water, given)):
         water.share = neat(float(settled[water.id]) * left / shares.WHOLE)

@@ -2,7 +2,7 @@
 
 import pytest
 
-from explorer.scenario.dials import dials, get_value, turn
+from explorer.scenario.dials import dials, get_value, turn, turn_together
 from explorer.scenario.errors import ScenarioError
 from explorer.scenario.evaluate import evaluate
 
@@ -169,6 +169,29 @@ def test_shares_always_add_to_the_whole(scenario):
     for step in range(200):
         turn(scenario, f"waters.{['river', 'well', 'transfer'][step % 3]}.share", (7.3 * step) % 100)
     assert sum(shares(scenario)) == pytest.approx(100, abs=1e-9)
+
+
+def test_shares_turned_together_both_become_what_they_are_given(scenario):
+    """One after the other, the second would move the first."""
+    turn_together(scenario, {"waters.river.share": 20, "waters.well.share": 35, "train.hypo.dose": 2})
+    assert shares(scenario) == pytest.approx([20, 35, 45])
+    assert get_value(scenario, "train.hypo.dose") == 2
+
+
+@pytest.mark.parametrize(
+    ("given", "sentence"),
+    [
+        ({"river": 70, "well": 40}, "110 % together do not go; allowed at most 100"),
+        ({"river": 70, "well": 101}, "share: 101 is out of range"),
+        ({"river": 70, "brook": 10}, "is not a dial of this scenario"),
+    ],
+)
+def test_shares_that_cannot_go_together_are_refused(scenario, given, sentence):
+    """More than the whole, or a water that is not there; nothing is turned."""
+    with pytest.raises(ScenarioError) as refused:
+        turn_together(scenario, {f"waters.{water}.share": value for water, value in given.items()})
+    assert sentence in str(refused.value)
+    assert shares(scenario) == [50, 30, 20]
 
 
 def test_a_water_out_of_service_has_no_share_to_turn_but_keeps_it(scenario):
