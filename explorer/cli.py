@@ -336,8 +336,6 @@ def _swept_text(swept: "Sweep", keys: Sequence[str]) -> Iterator[str]:
     for readout in readouts:
         values = swept.outcome.readout(readout.key)
         columns.append([readout.short, readout.unit, *(format_value(value, readout) for value in values)])
-    for step, (values, unit, held) in swept.outcome.doses.items():
-        if held:
-            columns.append([swept.outcome.stage(step).name, unit, *map(entered, values)])
+    columns += [[label, unit, *map(entered, values)] for label, unit, values in swept.held()]
     columns.append(["", "", *swept.outcome.reasons().tolist()])
     yield from aligned(list(zip(*columns, strict=True)), right=range(len(columns) - 1))

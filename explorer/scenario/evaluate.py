@@ -34,8 +34,9 @@ def evaluate(
     """The plant at every combination of dial values.
 
     dials: values in the entered units by address; arrays of any shapes that broadcast together, whose common
-    shape is that of the outcome. A dial that is not given stands where the scenario has it; shares that are
-    not given follow by the share rule. season: whose analyses count, the scenario's own where None.
+    shape is that of the outcome. A dial that is not given stands where the scenario has it, or where its hold
+    puts it; shares that are not given follow by the share rule. season: whose analyses count, the scenario's
+    own where None.
 
     Raises ScenarioError for an unknown address or season, shapes that do not broadcast, and analyses that say
     too little or contradict themselves. What is impossible at single points is flagged there instead.

@@ -35,15 +35,17 @@ RELATIVE = 1e-12
 ALKALINITY_UNIT = 2e-6
 """eq/L that count as one unit of the distance from a held pH: 0.1 mg/L as CaCO3."""
 
-ENOUGH = 1e-6
-"""Distance from the goals, in units of the last digit shown, that counts as none."""
+ENOUGH = 1e-12
+"""Sum of the squared distances from the goals, in units of the last digit shown, that counts as none."""
 
 SLOPE_STEP = 1e-5
 """Part of a range over which the slopes for several dials are taken."""
 
 FIRST_DAMPING, LEAST_DAMPING, MOST_DAMPING = 1e-3, 1e-12, 1e8
+LESS_DAMPING, MORE_DAMPING = 0.5, 4.0
+"""Factors after a step that gains and one that does not."""
 
-MOST_STEPS = 60
+MOST_STEPS = 100
 
 STILL = 1e-10
 """Part of a range; a smaller step leads nowhere."""
@@ -133,7 +135,7 @@ def _alone(goal: DialGoal, measure: Distance, count: int) -> np.ndarray:
         left[points],
         right[points],
         relative=RELATIVE,
-        enough=ENOUGH,
+        enough=np.sqrt(ENOUGH),
     )
     value[points] = np.where(roots.found, roots.x, value[points])
     return value[None]
@@ -147,27 +149,44 @@ def _together(measure: Distance, holds: int, count: int) -> np.ndarray:
     grid = np.array(list(product(np.linspace(0, 1, GRID[holds]), repeat=holds))).T
     tries, each = grid.shape[1], np.arange(count)
     far = measure(np.repeat(grid, count, axis=1), np.tile(each, tries)).reshape(holds, tries, count)
-    best = np.argmin(_size(far), axis=0)
-    x, far = grid[:, best], far[:, best, each]
+    sizes = _size(far)
+    x, size = np.full((holds, count), np.nan), np.full(count, np.inf)
+    # From the best point of the grid; where that does not lead home, from the best of each of its corners.
+    corners = (grid <= 0.5)[None] == np.array(list(product((True, False), repeat=holds)))[:, :, None]
+    for part in (np.ones(tries, bool), *corners.all(axis=1)):
+        points = np.flatnonzero(size > ENOUGH)
+        if not points.size:
+            break
+        best = np.argmin(np.where(part[:, None], sizes[:, points], np.inf), axis=0)
+        found, at = _descended(measure, grid[:, best], far[:, best, points], points)
+        better = at < size[points]
+        x[:, points[better]], size[points[better]] = found[:, better], at[better]
+    return x
+
+
+def _descended(
+    measure: Distance, x: np.ndarray, far: np.ndarray, points: np.ndarray
+) -> tuple[np.ndarray, np.ndarray]:
+    """Dials (holds, N) of ``points`` after the steps from ``x`` with distances ``far``, and the sum of the
+    squares of the distances that are left."""
     size = _size(far)
-    x[:, np.isinf(size)] = np.nan
-    damping = np.full(count, FIRST_DAMPING)
+    damping = np.full(points.size, FIRST_DAMPING)
     active = np.flatnonzero(np.isfinite(size))
     for _ in range(MOST_STEPS):
-        active = active[np.abs(far[:, active]).max(axis=0, initial=0.0) > ENOUGH]
+        active = active[size[active] > ENOUGH]
         if not active.size:
             break
-        step = _step(measure, x[:, active], far[:, active], damping[active], active)
+        step = _step(measure, x[:, active], far[:, active], damping[active], points[active])
         tried = np.clip(x[:, active] + step, 0.0, 1.0)
         moved = np.abs(tried - x[:, active]).max(axis=0) > STILL
-        found = measure(tried, active)
+        found = measure(tried, points[active])
         better = _size(found) < size[active]
         won = active[better]
         x[:, won], far[:, won], size[won] = tried[:, better], found[:, better], _size(found)[better]
-        damping[won] = np.maximum(damping[won] * 0.1, LEAST_DAMPING)
-        damping[active[~better]] *= 10.0
+        damping[won] = np.maximum(damping[won] * LESS_DAMPING, LEAST_DAMPING)
+        damping[active[~better]] *= MORE_DAMPING
         active = active[moved & (damping[active] < MOST_DAMPING)]
-    return x
+    return x, size
 
 
 def _size(far: np.ndarray) -> np.ndarray:

@@ -122,6 +122,15 @@ class Sweep:
                 found.append(Gap(x, x, reason))
         return found
 
+    def held(self) -> Iterator[tuple[str, str, np.ndarray]]:
+        """Doses and other dials that are computed to meet holds: label, unit, values."""
+        for step, (values, unit, held) in self.outcome.doses.items():
+            if held:
+                yield f"Dose of {self.outcome.stage(step).name}", unit, values
+        for address, dial in self.outcome.held.items():
+            if not address.endswith(".dose"):
+                yield self.plan.dials[address].label, dial.unit, dial.value
+
     def to_dict(self, readouts: Sequence[str]) -> dict[str, Any]:
         """Plain lists by name; None where there is no answer."""
         return {
@@ -133,14 +142,12 @@ class Sweep:
         }
 
     def table(self, readouts: Sequence[str]) -> list[list[Any]]:
-        """Rows for a spreadsheet, the heading first: dial, readouts, held doses, why there is no answer."""
+        """Rows for a spreadsheet, the heading first: dial, readouts, what is held, why there is no answer."""
         columns = [[headed(self.dial.label, self.dial.unit), *self.x.tolist()]]
         for readout in (READOUTS[key] for key in readouts):
             values = listed(self.outcome.readout(readout.key))
             columns.append([headed(readout.label, readout.unit), *values])
-        for step, (values, unit, held) in self.outcome.doses.items():
-            if held:
-                columns.append([headed(f"Dose of {self.outcome.stage(step).name}", unit), *listed(values)])
+        columns += [[headed(label, unit), *listed(values)] for label, unit, values in self.held()]
         columns.append(["No answer because", *self.outcome.reasons().tolist()])
         return [list(row) for row in zip(*columns, strict=True)]
 

@@ -25,6 +25,9 @@ from explorer.studies.sweep import headed, listed, swept_dial
 FIRST_SAMPLES, USUAL_SAMPLES, MOST_SAMPLES = 64, 2048, 65_536
 """Samples of the first picture, of the last one if nothing else is asked, and at most."""
 
+MOST_CELLS = 10_000_000
+"""Outcomes that are kept of a readout: 80 MB."""
+
 GROWTH = 4
 """Factor between the numbers of samples of one picture and the next."""
 
@@ -171,6 +174,9 @@ def tolerance(
     if not 1 <= samples <= MOST_SAMPLES:
         raise ScenarioError("samples", f"{samples} is out of range; allowed 1 to {MOST_SAMPLES}")
     others = {key: np.asarray(value, float) for key, value in overrides.items() if key != swept.address}
+    if samples * (len(x) + 1) > MOST_CELLS:
+        most = f"allowed {MOST_CELLS:,} together".replace(",", " ")
+        raise ScenarioError("samples", f"{samples} of {len(x)} points are too many; {most}")
     # The operating point is the last column.
     here = np.asarray(overrides.get(swept.address, swept.value), float)
     around = others | {swept.address: np.append(x, here)}

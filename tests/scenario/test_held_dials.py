@@ -160,6 +160,24 @@ def test_two_doses_that_need_each_other(plant, readout, goal):
     assert again.readout("alkalinity") == pytest.approx(np.full(8, 120.0), abs=1e-5)
 
 
+@pytest.mark.parametrize("readouts", [("ccpp", "alkalinity"), ("ph", "ccpp"), ("si_calcite", "calcium")])
+def test_whatever_two_doses_give_is_found_again(plant, readouts):
+    """Random doses of lime and carbon dioxide; held to what they give, doses that give the same are found."""
+    random = np.random.default_rng(6)
+    doses = {f"train.{step}.dose": random.uniform(0, 120, 100) for step in ("gas", "lime")}
+    given = evaluate(plant({"permeate": 100}, lime_and_gas(plant)), doses)
+    wanted = {address: given.readout(key) for address, key in zip(doses, readouts, strict=True)}
+    holds = {
+        address: {"readout": key, "value": 0, "high": 120}
+        for address, key in zip(doses, readouts, strict=True)
+    }
+    scenario = plant({"permeate": 100}, lime_and_gas(plant), holds=holds)
+    outcome = evaluate(scenario, {f"{address}.hold.value": goal for address, goal in wanted.items()})
+    for (address, goal), key in zip(wanted.items(), readouts, strict=True):
+        assert outcome.held[address].met.all()
+        assert outcome.readout(key) == pytest.approx(goal, abs=1e-4)
+
+
 def test_three_dials_together(plant):
     """Share, lime and carbon dioxide to nitrate, alkalinity and pH."""
     holds = {

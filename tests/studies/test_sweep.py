@@ -116,6 +116,19 @@ def test_plain_data_has_none_where_there_is_no_answer(blend):
     assert any("of 3 points" in note["text"] for note in plain["notes"])
 
 
+def test_a_table_has_the_dials_that_are_held(plant):
+    """Beside held doses: what an air contact takes to keep the carbon dioxide."""
+    tower = {"id": "tower", "step": "air", "approach": 50}
+    scenario = plant(
+        {"river": 50, "well": 50}, [tower], holds={"train.tower.approach": {"readout": "co2", "value": 5}}
+    )
+    swept = sweep(scenario, SHARE, 40, 80, 3)
+    heading, *rows = swept.table(["co2"])
+    assert heading[2] == "Approach to equilibrium of Air contact [%]"
+    assert [row[1] for row in rows] == pytest.approx([5, 5, 5], abs=1e-6)
+    assert [row[2] for row in rows] == swept.outcome.held["train.tower.approach"].value.tolist()
+
+
 def test_a_table_has_units_in_its_heading_and_held_doses(plant):
     """What a spreadsheet needs: dial, readouts, the doses that were computed, why a row is empty."""
     scenario = plant(

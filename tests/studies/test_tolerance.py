@@ -186,6 +186,10 @@ def test_where_nothing_has_an_answer_there_are_no_percentiles(plant):
         ({"dial": "waters.wel.share"}, "dial: "),
         ({"readouts": ["acidity"]}, 'readouts: "acidity" is not a readout'),
         ({"samples": 0}, "samples: 0 is out of range; allowed 1 to 65536"),
+        (
+            {"samples": 65_536, "points": 201},
+            "samples: 65536 of 201 points are too many; allowed 10 000 000 together",
+        ),
         ({"season": "autumn"}, 'season: "autumn" is not one of the seasons'),
     ],
 )
