@@ -10,7 +10,7 @@ from explorer.scenario.dials import step_name
 from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import Outcome, evaluate
 from explorer.scenario.model import DoseStep, Scenario, Step
-from explorer.scenario.readouts import READOUTS
+from explorer.scenario.readouts import READOUTS, Readout, format_value, in_words
 from explorer.studies.alarms import alarms
 from explorer.studies.finding import finding
 from explorer.studies.ledger import Ledger, ledger
@@ -26,6 +26,20 @@ USUAL = (
     "larson_ratio", "chloride_sulfate_ratio", "conductivity",
 )  # fmt: skip
 """Results of most interest, after those with a target."""
+
+
+def value_text(value: float, readout: Readout) -> str:
+    """A result as the page and the command line show it, without unit; with the word for its sign."""
+    if readout.sign_words:
+        return in_words(value, readout).removesuffix(readout.unit_text)
+    return format_value(value, readout)
+
+
+def span_text(low: float, high: float, readout: Readout) -> str:
+    """Two results as a range, with the word for their sign once where both have the same."""
+    first, last = value_text(low, readout), value_text(high, readout)
+    word = first.split(" ")[0] + " " if " " in first else ""
+    return f"{first} to {last.removeprefix(word)}"
 
 
 class Case:

@@ -5,16 +5,12 @@ from dataclasses import dataclass
 from datetime import datetime
 from importlib.resources import files
 
-import numpy as np
-
 from explorer.report import basis, entered, plant, results
 from explorer.report.case import Case
 from explorer.report.markup import Markup, Part, element, joined
 from explorer.report.spread import Tolerances
-from explorer.report.svg import Points
 from explorer.scenario.embedded import embedded
 from explorer.scenario.files import dumps
-from explorer.scenario.outcome import FINISHED
 from explorer.scenario.version import method
 from explorer.scenario.words import in_sentence
 from explorer.studies.cautions import NOT_POTABLE
@@ -102,7 +98,7 @@ def _sections(case: Case, figures: Sequence[str], family: str) -> list[Section]:
     spread = Tolerances(case, figures)
     current = current_case(case.scenario)
     dial = in_sentence(case.along.name)
-    plots = results.figures(case, figures, family, spread.fans(), _points(case))
+    plots = results.figures(case, figures, family, spread)
     parts: dict[tuple[str, str], Sequence[Part]] = {
         ("targets", "Targets"): [results.targets(case)],
         ("alarms", "What to look at"): [basis.alarms(case)],
@@ -147,13 +143,3 @@ def _legend(spread: Tolerances) -> str:
         "Dotted line and ring: as it stands. Green between dashed lines: entered target; ◆ where it is"
         f" crossed.{band} ▼ ▲ below or above the entered target."
     )
-
-
-def _points(case: Case) -> dict[str, list[Points]]:
-    """Measured points of the finished water along the dial of the sweep, by readout."""
-    found: dict[str, list[Points]] = {}
-    for made in case.scenario.measured:
-        if made.titration is None and made.dial == case.swept.address and made.stage == FINISHED:
-            x, y = np.array(made.points, float).T
-            found.setdefault(made.readout, []).append(Points(x, y))
-    return found

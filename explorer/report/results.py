@@ -1,19 +1,23 @@
 """What comes out: targets, the sweep in figures and numbers, options side by side, every result."""
 
 from collections.abc import Iterator, Sequence
+from dataclasses import replace
 
 import numpy as np
 
-from explorer.report.case import Case
+from explorer.report.case import Case, value_text
 from explorer.report.markup import Markup, Part, element
-from explorer.report.svg import Fan, Points, plot
+from explorer.report.spread import Tolerances
+from explorer.report.svg import plot
 from explorer.report.tables import Group, Row, table, unit_cell
 from explorer.scenario.evaluate import Outcome
 from explorer.scenario.model import Target
+from explorer.scenario.outcome import FINISHED
 from explorer.scenario.readouts import NO_VALUE, READOUTS, Readout, format_value, in_words, status
 from explorer.scenario.words import in_sentence, range_text, unit_text
 from explorer.studies.compare import Comparison
 from explorer.studies.hand_checks import figure
+from explorer.studies.pictures import Dots, Picture
 from explorer.studies.sweep_pictures import picture_of, picture_of_species
 
 ABREAST, RESULTS = 5, 10
@@ -27,20 +31,6 @@ STATUS = {
 }
 MAY_BE_ABSENT = ("Ions", "Chlorine and ammonia", "Solids and cost")
 OUTSIDE = {"below": " ▼", "above": " ▲"}
-
-
-def value_text(value: float, readout: Readout) -> str:
-    """A result as the page and the command line show it, without unit; with the word for its sign."""
-    if readout.sign_words:
-        return in_words(value, readout).removesuffix(readout.unit_text)
-    return format_value(value, readout)
-
-
-def span_text(low: float, high: float, readout: Readout) -> str:
-    """Two results as a range, with the word for their sign once where both have the same."""
-    first, last = value_text(low, readout), value_text(high, readout)
-    word = first.split(" ")[0] + " " if " " in first else ""
-    return f"{first} to {last.removeprefix(word)}"
 
 
 def targets(case: Case) -> Markup | None:
@@ -71,34 +61,36 @@ def _small(text: str) -> Markup | None:
 # ---- the sweep ---------------------------------------------------------------------------------------------
 
 
-def figures(
-    case: Case,
-    keys: Sequence[str],
-    family: str,
-    fans: dict[str, Fan] | None = None,
-    points: dict[str, Sequence[Points]] | None = None,
-) -> Iterator[Markup]:
+def figures(case: Case, keys: Sequence[str], family: str, spread: Tolerances) -> Iterator[Markup]:
     """One figure a readout, and that of the species after the first."""
-    fans, points = fans or {}, points or {}
     here = case.swept.dial.value
     for number, key in enumerate(keys):
         picture = picture_of(case.swept, key, case.scenario.targets)
+        picture = replace(picture, fan=spread.fan(key, picture.x), dots=_dots(case, key))
         now = f"now {value_text(case.value(key), READOUTS[key])}"
-        drawn = plot(picture, case.along, here, f"plot-{key}", fans.get(key), points.get(key, ()))
-        yield _figure(picture.title, [picture.note, now], drawn, picture.gaps, case)
+        yield _figure(case, picture, plot(picture, case.along, here, f"plot-{key}"), now)
         if number == 0:
             picture = picture_of_species(case.swept, family, case.family_name(family))
-            drawn = plot(picture, case.along, here, "plot-species")
-            yield _figure(picture.title, [picture.note], drawn, picture.gaps, case)
+            yield _figure(case, picture, plot(picture, case.along, here, "plot-species"))
 
 
-def _figure(title: str, notes: Sequence[str], drawn: Markup, gaps: Sequence, case: Case) -> Markup:
-    note = " · ".join(filter(None, notes))
+def _dots(case: Case, key: str) -> tuple[Dots, ...]:
+    """Measured points of a readout of the finished water along the dial of the sweep."""
+    found = []
+    for made in case.scenario.measured:
+        if (made.titration, made.dial, made.stage) == (None, case.swept.address, FINISHED):
+            x, y = np.array(made.points, float).T
+            found += [Dots(made.name, x, y)] if made.readout == key else []
+    return tuple(found)
+
+
+def _figure(case: Case, picture: Picture, drawn: Markup, now: str = "") -> Markup:
+    note = " · ".join(filter(None, [picture.note, now]))
     missing = [
         element("small", f"No result from {case.along.at(start)} to {case.along.at(stop)}: {reason}.")
-        for start, stop, reason in gaps
+        for start, stop, reason in picture.gaps
     ]
-    caption = element("figcaption", element("strong", title), element("span", note))
+    caption = element("figcaption", element("strong", picture.title), element("span", note))
     return element("figure", caption, drawn, missing)
 
 

@@ -4,20 +4,22 @@ from collections.abc import Iterator, Sequence
 
 import numpy as np
 
-from explorer.report.case import Case
+from explorer.report.case import Case, span_text, value_text
 from explorer.report.markup import Markup, Part, element
-from explorer.report.results import span_text, value_text
-from explorer.report.svg import Fan
 from explorer.report.tables import Row, table, unit_cell
 from explorer.scenario.errors import ScenarioError
 from explorer.scenario.readouts import NO_VALUE, READOUTS, Readout
 from explorer.scenario.words import short_number, unit_text
 from explorer.studies.corners import extremes
+from explorer.studies.pictures import Layer, rising
 from explorer.studies.spread import spread_of
 from explorer.studies.tolerance import ToleranceStudy, tolerance
 
 POINTS, SAMPLES = 31, 1024
 """Points along the sweep and samples of the tolerances that the band is made of."""
+
+MOST = (2.5, 97.5)
+"""Percentiles between which 95 % of the outcomes lie."""
 
 NOTHING_ENTERED = "No tolerances are entered, so nothing can be said of how far these results may be off."
 
@@ -32,15 +34,15 @@ class Tolerances:
         if len(self.spread):
             *_, self.study = tolerance(case.scenario, points=POINTS, readouts=self.keys, samples=SAMPLES)
 
-    def fans(self) -> dict[str, Fan]:
-        """Bands that hold 95 % of the outcomes, by readout."""
-        if self.study is None:
-            return {}
-        found = {}
-        for key in self.keys:
-            low, high = self.study.fan.percentiles(key, (2.5, 97.5))
-            found[key] = Fan(self.study.x, low, high)
-        return found
+    def fan(self, key: str, x: np.ndarray) -> tuple[Layer, ...]:
+        """The band that holds most outcomes of a readout, at places of the dial, which rise."""
+        if self.study is None or key not in self.study.fan.values:
+            return ()
+        low, high = (
+            np.interp(x, rising(self.study.x, self.study.x), rising(self.study.x, row))
+            for row in self.study.fan.percentiles(key, MOST)
+        )
+        return (Layer(MOST[1] - MOST[0], low, high),)
 
     def section(self) -> list[Part]:
         """Everything there is to say of the tolerances."""
@@ -82,7 +84,7 @@ class Tolerances:
         rows: list[Row] = []
         for position, target in enumerate(study.targets):
             readout = READOUTS[target.readout]
-            low, high = study.here.percentiles(readout.key, (2.5, 97.5))[:, 0]
+            low, high = study.here.percentiles(readout.key, MOST)[:, 0]
             chance = float(study.here.chance(position)[0])
             span = span_text(float(low), float(high), readout)
             rows.append(

@@ -8,7 +8,7 @@ import numpy as np
 from explorer.report.markup import Markup, element, joined
 from explorer.scenario.words import number_text
 from explorer.studies.axes import Limits, nice_step, outward
-from explorer.studies.pictures import Axis, Mark, Picture
+from explorer.studies.pictures import Axis, Layer, Line, Mark, Picture
 
 WIDTH, HEIGHT = 372.0, 236.0
 TOP, BOTTOM, EDGE = 16.0, 36.0, 14.0
@@ -21,23 +21,6 @@ COLOURS = ("#0b6e69", "#b84f00", "#6a3f95", "#0062a0", "#a8497d", "#7a5900", "#3
 """Apart for colour-blind readers in this order; each line has a dash and a label of its own as well."""
 
 DASHES = (None, "7 3", "2 2.5", "9 3 2 3", "12 3", "5 2 1 2 1 2", "3.5 2", "1 4")
-
-
-@dataclass(frozen=True)
-class Fan:
-    """Band of outcomes along ``x``: between ``low`` and ``high``, nan where there are none."""
-
-    x: np.ndarray
-    low: np.ndarray
-    high: np.ndarray
-
-
-@dataclass(frozen=True)
-class Points:
-    """Measured points over a plot."""
-
-    x: np.ndarray
-    y: np.ndarray
 
 
 @dataclass(frozen=True)
@@ -64,24 +47,17 @@ class Frame:
         return self.bottom - part * (self.bottom - TOP)
 
 
-def plot(
-    picture: Picture,
-    along: Axis,
-    here: float | None,
-    name: str,
-    fan: Fan | None = None,
-    points: Sequence[Points] = (),
-) -> Markup:
+def plot(picture: Picture, along: Axis, here: float | None, name: str) -> Markup:
     """A picture as an ``svg`` element. ``here``: the dial at the operating point. ``name``: its own on the
     page, for what its parts refer to."""
-    picture = _with_room(picture, fan, points)
+    picture = _with_room(picture)
     frame = _frame(picture)
     if not picture.lines:
         middle = (frame.left + frame.right) / 2
         content = joined(_text(picture.empty or "no solution", middle, (TOP + frame.bottom) / 2, "middle"))
     else:
         content = joined(
-            _curves(picture, frame, name, fan, points),
+            _curves(picture, frame, name),
             _marks(picture.marks, frame),
             _here(picture, along, frame, here),
             _end_labels(picture, frame),
@@ -97,16 +73,12 @@ def plot(
     )  # fmt: skip
 
 
-def _with_room(picture: Picture, fan: Fan | None, points: Sequence[Points]) -> Picture:
-    """The picture with an axis that holds the band of outcomes and the measured points as well."""
-    extra = [fan.low, fan.high] if fan is not None else []
-    extra += [part.y for part in points]
-    values = np.concatenate([np.ravel(part) for part in extra]) if extra else np.array([])
-    values = values[np.isfinite(values)]
-    low, high = picture.limits
-    if not values.size or (values.min() >= low and values.max() <= high):
-        return picture
-    return replace(picture, limits=outward(min(low, values.min()), max(high, values.max())))
+def _with_room(picture: Picture) -> Picture:
+    """The picture with an axis that holds the fan and the measured points as well."""
+    extra = [end for layer in picture.fan for end in (layer.low, layer.high)]
+    values = np.concatenate([np.array(picture.limits), *extra, *(dots.y for dots in picture.dots)])
+    low, high = float(np.nanmin(values)), float(np.nanmax(values))
+    return picture if (low, high) == picture.limits else replace(picture, limits=outward(low, high))
 
 
 def _frame(picture: Picture) -> Frame:
@@ -175,23 +147,22 @@ def _gaps(picture: Picture, frame: Frame, name: str) -> Iterator[Markup]:
         )  # fmt: skip
 
 
-def _curves(picture: Picture, frame: Frame, name: str, fan: Fan | None, points: Sequence[Points]) -> Markup:
-    parts = [] if fan is None else [_fan(fan, frame)]
+def _curves(picture: Picture, frame: Frame, name: str) -> Markup:
+    parts = [_area(picture.x, layer, frame) for layer in picture.fan]
     for number, line in enumerate(picture.lines):
         path = _path(picture.x, line.y, frame)
-        parts.append(element("path", class_="curve", d=path, **_look(number)))
-    for part in points:
-        for x, y in zip(part.x, part.y, strict=True):
+        parts.append(element("path", class_="curve", d=path, **_look(number, line)))
+    for dots in picture.dots:
+        for x, y in zip(dots.x, dots.y, strict=True):
             if frame.x[0] <= x <= frame.x[1]:
-                at, high = frame.across(x), frame.up(y)
-                cross = f"M{at - 3:.1f} {high - 3:.1f}l6 6m-6 0l6 -6"
+                cross = f"M{frame.across(x) - 3:.1f} {frame.up(y) - 3:.1f}l6 6m-6 0l6 -6"
                 parts.append(element("path", class_="measured", d=cross))
     return element("g", parts, clip_path=f"url(#{name}-area)")
 
 
-def _fan(fan: Fan, frame: Frame) -> Markup:
-    known = np.isfinite(fan.low) & np.isfinite(fan.high)
-    x, low, high = fan.x[known], fan.low[known], fan.high[known]
+def _area(x: np.ndarray, layer: Layer, frame: Frame) -> Markup:
+    known = np.isfinite(layer.low) & np.isfinite(layer.high)
+    x, low, high = x[known], layer.low[known], layer.high[known]
     around = [*zip(x, high, strict=True), *zip(x[::-1], low[::-1], strict=True)]
     corners = " ".join(f"{frame.across(a):.1f},{frame.up(b):.1f}" for a, b in around)
     return element("polygon", class_="fan", points=corners)
@@ -208,11 +179,13 @@ def _path(x: np.ndarray, y: np.ndarray, frame: Frame) -> str:
     return "".join(words)
 
 
-def _look(number: int) -> dict[str, str | None]:
-    return {
-        "stroke": COLOURS[number % len(COLOURS)],
-        "stroke_dasharray": DASHES[number % len(DASHES)],
-    }
+def _look(number: int, line: Line) -> dict[str, str | None]:
+    dash = number if line.dash is None else line.dash
+    return {"stroke": _colour(number, line), "stroke_dasharray": DASHES[dash % len(DASHES)]}
+
+
+def _colour(number: int, line: Line) -> str:
+    return COLOURS[(number if line.colour is None else line.colour) % len(COLOURS)]
 
 
 def _marks(marks: Sequence[Mark], frame: Frame) -> Iterator[Markup]:
@@ -244,7 +217,7 @@ def _here(picture: Picture, along: Axis, frame: Frame, here: float | None) -> It
         if np.isfinite(value) and frame.y[0] <= value <= frame.y[1]:
             yield element(
                 "circle", class_="ring", cx=f"{x:.1f}", cy=f"{frame.up(value):.1f}", r=3.4,
-                stroke=COLOURS[number % len(COLOURS)],
+                stroke=_colour(number, line),
             )  # fmt: skip
 
 
@@ -255,7 +228,7 @@ def _end_labels(picture: Picture, frame: Frame) -> Iterator[Markup]:
         known = np.flatnonzero(np.isfinite(line.y))
         if line.name and known.size:
             end = float(np.clip(frame.up(line.y[known[-1]]), TOP, frame.bottom))
-            ends.append((end, number, line.name))
+            ends.append((end, _colour(number, line), line.name))
     ends.sort()
     places = [end for end, *_ in ends]
     for index in range(1, len(places)):
@@ -263,8 +236,7 @@ def _end_labels(picture: Picture, frame: Frame) -> Iterator[Markup]:
     for index in reversed(range(len(places))):
         limit = frame.bottom - 2 if index == len(places) - 1 else places[index + 1] - LINE
         places[index] = min(places[index], limit)
-    for place, (end, number, name) in zip(places, ends, strict=True):
-        colour = COLOURS[number % len(COLOURS)]
+    for place, (end, colour, name) in zip(places, ends, strict=True):
         if abs(place - end) > 2:
             yield element(
                 "line", x1=f"{frame.right:.1f}", y1=f"{end:.1f}", x2=f"{frame.right + 4:.1f}",

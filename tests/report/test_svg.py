@@ -1,10 +1,12 @@
 """Figures: readable in grey, with every gap and crossing."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
-from explorer.report.svg import Fan, Points, plot
-from explorer.studies.pictures import Quantity, axis, readout_picture, species_picture
+from explorer.report.svg import plot
+from explorer.studies.pictures import Dots, Layer, Quantity, axis, readout_picture, species_picture
 from tests.report.conftest import tree, words
 
 X = np.linspace(0.0, 100.0, 101)
@@ -97,8 +99,9 @@ def test_every_species_has_a_dash_a_colour_and_a_name_of_its_own():
 def test_the_axis_holds_the_whole_band_of_outcomes_and_the_measured_points():
     """Nothing that belongs to the figure is cut off."""
     y = 8 - X / 100
-    fan = Fan(X, y - 1.5, y + 1.5)
-    svg = tree(plot(picture(y), SHARE, 40.0, "one", fan, [Points(np.array([50.0]), np.array([10.2]))]))
+    fan = (Layer(95.0, y - 1.5, y + 1.5),)
+    dots = (Dots("bench", np.array([50.0]), np.array([10.2])),)
+    svg = tree(plot(replace(picture(y), fan=fan, dots=dots), SHARE, 40.0, "one"))
     heights = [float(pair.split(",")[1]) for pair in svg.find(".//polygon").get("points").split()]
     clip = svg.find(".//clipPath/rect")
     top, tall = float(clip.get("y")), float(clip.get("height"))
