@@ -5,7 +5,7 @@ import csv
 import json
 import sys
 from collections.abc import Callable, Iterator
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -22,6 +22,9 @@ if TYPE_CHECKING:
 COMMANDS = ("window", "tolerance", "allowed")
 
 Command = Callable[..., argparse.ArgumentParser]
+
+Ends = dict[str, tuple["Extreme", "Extreme"]]
+"""Lowest and highest of readouts by key."""
 
 
 def register(command: Command) -> None:
@@ -46,6 +49,7 @@ def register(command: Command) -> None:
     spread.add_argument(
         "--rank", metavar="K", help="readout to rank the inputs for; the least certain target"
     )
+    spread.add_argument("--anywhere", action="store_true", help="worst along the dial, in any season, too")
     spread.add_argument("--samples", type=int, default=2048, metavar="N", help="%(default)s without it")
     spread.add_argument(
         "--seed", type=int, default=20, metavar="N", help="of the random numbers; %(default)s"
@@ -90,7 +94,7 @@ def _window(options: argparse.Namespace) -> None:
 
 
 def _tolerance(options: argparse.Namespace) -> None:
-    from explorer.studies.corners import extremes
+    from explorer.studies.corners import extremes, worst
     from explorer.studies.ranking import ranking
     from explorer.studies.tolerance import tolerance
 
@@ -104,13 +108,23 @@ def _tolerance(options: argparse.Namespace) -> None:
         csv.writer(sys.stdout, lineterminator="\n").writerows(made.table())
         return
     ends = {key: extremes(scenario, key, options.season, dials) for key in made.here.values}
+    others = {dial: value for dial, value in dials.items() if dial != made.dial.address}
+    ends_of_all = {
+        key: worst(scenario, key, made.dial.address, made.x[0], made.x[-1], overrides=others)
+        for key in (made.here.values if options.anywhere else ())
+    }
     rank = ranking(scenario, (ranked or [_least_certain(made)])[0], options.season, dials, options.seed)
     if options.json:
-        found = {key: {"low": low.to_dict(), "high": high.to_dict()} for key, (low, high) in ends.items()}
-        made_dict = {**made.to_dict(), "extremes": found, "ranking": rank.to_dict()}
-        print(json.dumps(made_dict, ensure_ascii=False))
+        found = {**made.to_dict(), "extremes": _plain(ends), "ranking": rank.to_dict()}
+        if options.anywhere:
+            found["anywhere"] = _plain(ends_of_all)
+        print(json.dumps(found, ensure_ascii=False))
     else:
-        print("\n".join(_tolerance_text(scenario.title, made, ends, rank)))
+        print("\n".join(_tolerance_text(scenario.title, made, ends, ends_of_all, rank)))
+
+
+def _plain(ends: Ends) -> dict[str, Any]:
+    return {key: {"low": low.to_dict(), "high": high.to_dict()} for key, (low, high) in ends.items()}
 
 
 def _allowed(options: argparse.Namespace) -> None:
@@ -171,7 +185,7 @@ def _window_text(made: "Window") -> Iterator[str]:
 
 
 def _tolerance_text(
-    title: str, made: "ToleranceStudy", ends: dict[str, tuple["Extreme", "Extreme"]], rank: "Ranking"
+    title: str, made: "ToleranceStudy", ends: Ends, ends_of_all: Ends, rank: "Ranking"
 ) -> Iterator[str]:
     season = next(iter(ends.values()))[0].season
     inputs = f"{len(made.inputs)} input" + "s" * (len(made.inputs) != 1)
@@ -183,6 +197,16 @@ def _tolerance_text(
         shown = (made.here.nominal[key][0], *middle, low.value, high.value)
         rows.append([readout.label, readout.unit, *(format_value(value, readout) for value in shown)])
     yield from aligned(rows, right=range(2, 8))
+    if ends_of_all:
+        yield ""
+        rows = [["Anywhere along the dial, in any season", "", "Lowest", "at", "", "Highest", "at", ""]]
+        for key, both in ends_of_all.items():
+            places = [
+                [format_value(end.value, READOUTS[key]), f"{entered(end.x)} {made.dial.unit}", end.season]
+                for end in both
+            ]
+            rows.append([READOUTS[key].label, READOUTS[key].unit, *places[0], *places[1]])
+        yield from aligned(rows, right=(2, 3, 5, 6))
     if made.targets:
         yield ""
         rows = [["Chance of meeting the entered target", ""]]

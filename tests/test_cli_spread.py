@@ -104,6 +104,19 @@ def test_a_tolerance_study_as_json_can_be_repeated(run):
     assert data["ranking"]["inputs"][0]["label"] == "pH of Granite Wellfield"
 
 
+def test_the_worst_anywhere_is_printed_when_asked_for(run):
+    """With its place along the dial and its season; never less extreme than at the operating point."""
+    arguments = "--points 3 --samples 64 --anywhere"
+    lines = answered(run("tolerance", AMBER, arguments)).splitlines()
+    heading = next(place for place, line in enumerate(lines) if "Anywhere along the dial" in line)
+    assert lines[heading + 1].split()[-3:] == ["100", "%", "winter"]
+    data = json.loads(answered(run("tolerance", AMBER, f"{arguments} --json")))
+    low = data["anywhere"]["ccpp"]["low"]
+    assert low["value"] <= data["extremes"]["ccpp"]["low"]["value"]
+    assert low["season"] == "winter"
+    assert 40 < low["x"] < 47
+
+
 def test_a_fan_as_csv(run):
     """The study's own table, along the dial asked for."""
     arguments = f"--dial {WELL} --start 10 --stop 30 --points 3 --samples 64 --readouts co2 --csv"

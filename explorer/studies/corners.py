@@ -17,7 +17,7 @@ from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import follow
 from explorer.scenario.model import Scenario
 from explorer.scenario.readouts import READOUTS
-from explorer.studies.progress import UNWATCHED, Watch
+from explorer.studies.progress import UNWATCHED, Watch, batch
 from explorer.studies.spread import NOTHING_OFF, Dials, Spread, spread_of
 from explorer.studies.sweep import swept_dial
 from explorer.studies.tolerance import USUAL_SEED, chances
@@ -34,9 +34,6 @@ PROBES = 8
 
 INSIDE = 128
 """Points inside the tolerances that are tried beside the corners."""
-
-BATCH = 16_384
-"""Points calculated between two looks at whether to stop."""
 
 FIRST_STEP, STEP_FACTOR, COARSE_STEP, FINE_STEP = 0.5, 0.25, 1 / 8, 1 / 128
 """Steps of the search along the inputs, in widths: the first, what reduces it, and the last, for many columns
@@ -214,7 +211,7 @@ class Question:
 
     def everywhere(self, places: np.ndarray, watch: Watch) -> np.ndarray:
         """Values (places, columns) for places (inputs, places): each at every column."""
-        rows = max(1, BATCH // self.columns)
+        rows = max(1, batch(self.spread.plan) // self.columns)
         found = np.empty((places.shape[1], self.columns))
         for first in range(0, len(found), rows):
             watch.done(first / len(found))
@@ -224,10 +221,10 @@ class Question:
 
     def at(self, places: np.ndarray, column: np.ndarray, watch: Watch) -> np.ndarray:
         """Values (N,) for places (inputs, N), each at its own column."""
-        found = np.empty(column.size)
-        for first in range(0, column.size, BATCH):
+        found, most = np.empty(column.size), batch(self.spread.plan)
+        for first in range(0, column.size, most):
             watch.done(first / column.size)
-            some = slice(first, first + BATCH)
+            some = slice(first, first + most)
             here = {
                 address: value[column[some]] if np.size(value) > 1 else value
                 for address, value in self.around.items()

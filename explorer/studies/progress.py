@@ -3,6 +3,16 @@
 from collections.abc import Callable
 from dataclasses import dataclass
 
+from explorer.scenario.compile import Plan
+
+BATCH, HELD_BATCH = 16_384, 2_048
+"""Points calculated between two looks at whether to stop: some tenths of a second."""
+
+
+def batch(plan: Plan) -> int:
+    """Points to calculate between two looks; fewer where dials are held, which takes many tries a point."""
+    return HELD_BATCH if plan.holds else BATCH
+
 
 class Stopped(Exception):
     """A calculation was asked to stop; what it handed over before stands."""

@@ -18,7 +18,7 @@ from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import Outcome, follow
 from explorer.scenario.model import Scenario, Target
 from explorer.scenario.readouts import READOUTS
-from explorer.studies.progress import UNWATCHED, Watch
+from explorer.studies.progress import UNWATCHED, Watch, batch
 from explorer.studies.spread import NOTHING_OFF, Input, spread_of
 from explorer.studies.sweep import headed, listed, swept_dial
 
@@ -32,9 +32,6 @@ GROWTH = 4
 """Factor between the numbers of samples of one picture and the next."""
 
 USUAL_SEED = 20
-
-BATCH = 16_384
-"""Points calculated between two looks at whether to stop."""
 
 PERCENTS = (2.5, 25.0, 50.0, 75.0, 97.5)
 """Percentiles of a fan: the middle half and 95 % of all outcomes."""
@@ -185,17 +182,17 @@ def tolerance(
         parts = chances(len(spread), samples, seed)
         columns = len(x) + 1
         nominal = _kept(follow(spread.plan, around), keys, (columns,))
-        batches: list[Results] = []
+        parts_done: list[Results] = []
         done, wanted = 0, min(FIRST_SAMPLES, parts.shape[1])
         while True:
             while done < wanted:
                 watch.done(done / parts.shape[1])
-                some = parts[:, done : min(wanted, done + max(1, BATCH // columns)), None]
+                some = parts[:, done : min(wanted, done + max(1, batch(spread.plan) // columns)), None]
                 outcome = follow(spread.plan, spread.sampled(some, around))
-                batches.append(_kept(outcome, keys, (some.shape[1], columns)))
+                parts_done.append(_kept(outcome, keys, (some.shape[1], columns)))
                 done += some.shape[1]
-            values = {key: np.concatenate([batch.values[key] for batch in batches]) for key in keys}
-            met = np.concatenate([batch.met for batch in batches], axis=1)
+            values = {key: np.concatenate([part.values[key] for part in parts_done]) for key in keys}
+            met = np.concatenate([part.met for part in parts_done], axis=1)
             fan, at_point = (
                 Results(
                     {key: rows[:, part] for key, rows in values.items()},

@@ -15,13 +15,10 @@ from explorer.scenario.evaluate import Outcome, follow
 from explorer.scenario.model import Scenario, Target
 from explorer.scenario.outcome import FINISHED
 from explorer.scenario.readouts import READOUTS
-from explorer.studies.progress import UNWATCHED, Watch
+from explorer.studies.progress import UNWATCHED, Watch, batch
 from explorer.studies.sweep import headed, listed, swept_range
 
 COARSE_POINTS, USUAL_POINTS, MOST_POINTS = 33, 129, 401
-
-BAND = 8_192
-"""Points calculated between two looks at whether to stop."""
 
 HALVINGS = 7
 """Of the edge of a cell on which a border is looked for: to 1/128 of it."""
@@ -168,7 +165,7 @@ def _mapped(
         return follow(plan, {**overrides, addresses[0]: at_x, addresses[1]: at_y})
 
     bands = []
-    rows = max(1, BAND // len(x.values))
+    rows = max(1, batch(plan) // len(x.values))
     for first in range(0, len(y.values), rows):
         watch.done(0.9 * first / len(y.values))
         bands.append(_surveyed(at(x.values, y.values[first : first + rows, None]), plan.targets, keys))
