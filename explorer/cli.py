@@ -11,7 +11,6 @@ import json
 import os
 import sys
 from collections.abc import Iterator, Sequence
-from importlib.util import find_spec
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, NoReturn
 
@@ -116,6 +115,7 @@ def _parser() -> argparse.ArgumentParser:
 
     report = command("report", _report, "Write a report as one self-contained HTML file.")
     report.add_argument("file", metavar="FILE")
+    report.add_argument("--season", help="season whose analyses count; the scenario's own without it")
     report.add_argument("-o", "--output", required=True, metavar="OUT", help="HTML file to write")
     return parser
 
@@ -194,11 +194,12 @@ def _check(options: argparse.Namespace) -> None:
 
 
 def _report(options: argparse.Namespace) -> None:
-    if find_spec("explorer.report") is None:
-        raise UsageError("the report is not available in this version")
     from explorer.report import write_report
 
-    write_report(open_scenario(options.file), Path(options.output))
+    scenario, output = open_scenario(options.file), Path(options.output)
+    if output.exists() and output.samefile(options.file):
+        raise UsageError(f"{options.output} is the scenario itself; allowed another file for the report")
+    write_report(scenario, output, season=options.season)
 
 
 # ---- what is printed ---------------------------------------------------------------------------------------

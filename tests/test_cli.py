@@ -186,6 +186,24 @@ def test_check_says_whether_analyses_balance_and_what_is_assumed(run, written, r
     assert "sulfate" in out
 
 
+def test_report_writes_a_page_that_opens_like_the_scenario(run, written, raw, plant, tmp_path):
+    """Silently; the page solves to the same digits, in the season it was made for."""
+    raw["seasons"] = ["winter", "summer"]
+    for water in raw["waters"]:
+        water["analyses"]["summer"] = plant.sheet(water["id"], temperature=19)
+    path, page = written(raw), tmp_path / "report.html"
+    assert run("report", path, "-o", str(page), "--season", "summer") == (0, "", "")
+    assert page.read_text(encoding="utf-8").startswith("<!DOCTYPE html>")
+    assert run("solve", str(page), "--json") == run("solve", path, "--season", "summer", "--json")
+
+
+def test_a_report_does_not_take_the_place_of_its_scenario(run, written, raw):
+    """The file stays as it was."""
+    path = written(raw)
+    assert "is the scenario itself" in refused(run("report", path, "-o", path))
+    assert run("check", path)[0] == 0
+
+
 def test_without_a_command_the_file_is_served(run, written, raw, monkeypatch):
     """A file that cannot be opened is refused before the page is even imported."""
     assert "page" in refused(run("no-such-page.json"))
@@ -317,6 +335,8 @@ def test_missing_files_and_folders_are_refused(run, tmp_path):
         (["sweep", "FILE", "--set", "waters.well.share=5", "--dial", "waters.well.share"], "swept and set"),
         (["serve", "FILE", "--port", "99999"], "allowed 0 to 65535"),
         (["report", "FILE"], "-o"),
+        (["report", "FILE", "-o", "no/such/folder/x.html"], "cannot be saved: there is no such file"),
+        (["report", "FILE", "-o", "x.html", "--season", "autumn"], "season: "),
     ],
 )
 def test_a_faulty_command_is_answered_in_one_sentence(run, written, raw, arguments, words):

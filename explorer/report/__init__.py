@@ -7,7 +7,6 @@ its scenario: opened like a scenario file, it is one. Nothing in it runs and not
 import os
 from collections.abc import Sequence
 from datetime import datetime
-from pathlib import Path
 
 from explorer.report.case import Case
 from explorer.report.page import page
@@ -49,6 +48,6 @@ def report_html(
     return page(Case(scenario), figures, family, written)
 
 
-def write_report(scenario: Scenario, path: str | os.PathLike[str]) -> None:
-    """Write the report to a file, whole or not at all. Raises ScenarioError."""
-    write_text(report_html(scenario), Path(path))
+def write_report(scenario: Scenario, path: str | os.PathLike[str], *, season: str | None = None) -> None:
+    """Write the report to a file, whole or not at all. Raises ScenarioError as :func:`report_html`."""
+    write_text(report_html(scenario, season=season), path)
