@@ -39,6 +39,8 @@ FIRST_STEP, STEP_FACTOR, COARSE_STEP, FINE_STEP = 0.5, 0.25, 1 / 8, 1 / 128
 """Steps of the search along the inputs, in widths: the first, what reduces it, and the last, for many columns
 at once and for a single place."""
 
+NOWHERE = "there is no answer anywhere within the tolerances; allowed where there is one"
+
 GAIN = 1e-9
 """Relative gain below which a step counts as none."""
 
@@ -60,7 +62,7 @@ class Envelope:
 
 @dataclass(frozen=True)
 class Extreme:
-    """One extreme: its value, where on the sweep and in which season, how far each input is off (by label, in
+    """One extreme: its value, where on the sweep and in which season, how far each input is off (by name, in
     widths), the dials there, and whether every input that matters stands at one of its ends."""
 
     value: float
@@ -96,7 +98,8 @@ def extremes(
     spread = _asked(scenario, readout, season)
     around = {address: np.atleast_1d(np.asarray(value, float)) for address, value in overrides.items()}
     found = envelope(spread, readout, around, watch)
-    _lowest(found.low)
+    if np.isnan(found.low).all():
+        raise ScenarioError("", NOWHERE)
     return (
         _extreme(spread, around, found.low, found.low_places, found.inputs, 0),
         _extreme(spread, around, found.high, found.high_places, found.inputs, 0),
@@ -126,40 +129,36 @@ def worst(
         spread = _asked(scenario, readout, season)
         swept, x = swept_dial(scenario, dial, start, stop, points, season)
         part = watch.within(position / len(seasons), (position + 1) / len(seasons))
-        found.append(_worst(spread, readout, swept.address, x, overrides, part))
+        found += _worst(spread, readout, swept.address, x, overrides, part)
+    if not found:
+        raise ScenarioError("", NOWHERE)
     lows, highs = zip(*found, strict=True)
     return min(lows, key=lambda extreme: extreme.value), max(highs, key=lambda extreme: extreme.value)
 
 
 def _worst(
     spread: Spread, readout: str, dial: str, x: np.ndarray, overrides: Mapping[str, ArrayLike], watch: Watch
-) -> tuple[Extreme, Extreme]:
+) -> list[tuple[Extreme, Extreme]]:
+    """Both extremes in one season; none where nothing has an answer."""
     others = {address: np.asarray(value, float) for address, value in overrides.items()}
     coarse = envelope(spread, readout, others | {dial: x}, watch.within(0.0, 0.9))
+    if np.isnan(coarse.low).all():
+        return []
     ends = []
     for sign, values, places in (
         (1.0, coarse.low, coarse.low_places),
         (-1.0, coarse.high, coarse.high_places),
     ):
-        best = _lowest(sign * values)
+        best = int(np.nanargmin(sign * values))
         near = np.linspace(x[max(best - 1, 0)], x[min(best + 1, len(x) - 1)], ZOOM)
         around = others | {dial: near}
         starts = np.repeat(places[:, best : best + 1], ZOOM, axis=1)
         question = Question(spread, readout, around)
         values, places = _searched(question, starts, sign, FINE_STEP, watch.silent)
-        best = _lowest(sign * values)
+        best = int(np.nanargmin(sign * values))
         ends.append(_extreme(spread, around, values, places, coarse.inputs, best, near[best]))
     watch.done(1.0)
-    return ends[0], ends[1]
-
-
-def _lowest(values: np.ndarray) -> int:
-    """Position of the lowest value. Raises ScenarioError where there is none."""
-    if np.isnan(values).all():
-        raise ScenarioError(
-            "", "there is no answer anywhere within the tolerances; allowed where there is one"
-        )
-    return int(np.nanargmin(values))
+    return [(ends[0], ends[1])]
 
 
 def _asked(scenario: Scenario, readout: str, season: str | None) -> Spread:
@@ -187,7 +186,7 @@ def _extreme(
         float(values[column]),
         None if x is None else float(x),
         spread.plan.season,
-        {part.label: float(place) for part, place in zip(spread.inputs, here, strict=True)},
+        {part.name: float(place) for part, place in zip(spread.inputs, here, strict=True)},
         {address: float(np.squeeze(value)) for address, value in turned.items()},
         bool((np.abs(here[list(inputs)]) == 1).all()),
     )

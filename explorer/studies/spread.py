@@ -19,6 +19,7 @@ that are off together. What one error does follows from what it is:
 Values that a dial cannot take stay at its limit.
 """
 
+from collections import Counter
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
@@ -79,7 +80,8 @@ class Move:
 
 @dataclass(frozen=True)
 class Input:
-    """One independent cause of error: ``moves`` says which dials it moves."""
+    """One independent cause of error: ``moves`` says which dials it moves. Names and labels are each its
+    own: the name is an address or the word of a shared error."""
 
     name: str
     label: str
@@ -257,7 +259,11 @@ def _inputs(plan: Plan, widths: Mapping[str, Tolerance], pumps: Sequence[Pump]) 
             name = label = tolerance.shared
         moves.setdefault(name, []).extend(_move(moved, tolerance) for moved in together)
         labels.setdefault(name, label)
-    return [Input(name, labels[name], tuple(parts)) for name, parts in moves.items()]
+    counts = Counter(labels.values())
+    return [
+        Input(name, label if counts[label] == 1 else f"{label} ({name})", tuple(moves[name]))
+        for name, label in labels.items()
+    ]
 
 
 def _move(address: str, tolerance: Tolerance) -> Move:

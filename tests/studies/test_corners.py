@@ -63,7 +63,10 @@ def test_in_proportion_the_widths_add(plant):
     low, high = extremes(plant({"river": 60, "well": 40}, tolerances=tolerances), "chloride")
     assert low.value == pytest.approx(0.6 * (15 - 2) + 0.4 * (38 - 4))
     assert high.value == pytest.approx(0.6 * (15 + 2) + 0.4 * (38 + 1))
-    assert low.places == {"Chloride of River": -1, "Chloride of Well": -1}
+    assert low.places == {
+        "waters.river.analysis.chloride": -1,
+        "waters.well.analysis.chloride": -1,
+    }
     assert high.dials == {"waters.river.analysis.chloride": 17, "waters.well.analysis.chloride": 39}
     assert low.corner
     assert high.corner
@@ -93,7 +96,7 @@ def test_one_at_a_time_misses_what_the_corners_find(amber):
     one_at_a_time = float(evaluate(scenario, lowest).readout("ccpp"))
     low, _ = extremes(scenario, "ccpp")
     assert low.value < one_at_a_time - 0.02
-    assert low.places["Alkalinity of Granite Wellfield"] == 1
+    assert low.places["waters.well.analysis.alkalinity"] == 1
 
 
 def test_with_many_inputs_nothing_random_is_more_extreme(amber):
@@ -181,6 +184,19 @@ def test_the_worst_place_of_one_season(amber):
     """Asked for the summer, only the summer counts."""
     low, _ = worst(some_of(amber, EIGHT[3:5]), "ccpp", WELL, points=11, seasons=["summer"])
     assert low.season == "summer"
+
+
+def test_a_season_without_an_answer_is_passed_by(plant):
+    """In winter the alum leaves no alkalinity at all; the worst is looked for in summer."""
+    raw = plant.dict(
+        {"moor": 100},
+        [plant.dosed("alum", "aluminium_sulfate", 30, "mg/L")],
+        seasons=["winter", "summer"],
+        tolerances={"train.alum.dose": {"plus_minus": 2, "unit": "%"}},
+    )
+    raw["waters"][0]["analyses"]["summer"] = plant.sheet("moor", alkalinity=60, ph=7.5)
+    low, high = worst(plant.read(raw), "ph", "waters.moor.analysis.calcium", 3, 4, 3)
+    assert low.season == high.season == "summer"
 
 
 # ---- asking ------------------------------------------------------------------------------------------------

@@ -372,6 +372,16 @@ def test_dials_with_the_same_word_are_off_together(plant):
     assert turned["waters.well.analysis.alkalinity"] == pytest.approx([258.4, 265.2, 285.6])
 
 
+def test_inputs_with_the_same_label_are_told_apart(plant):
+    """Two pumps of one chemical: the label says which."""
+    tolerances = {f"train.{step}.dose": {"plus_minus": 3, "unit": "%"} for step in ("first", "last")}
+    labels = [part.label for part in spread_of(caustic_twice(plant, tolerances)).inputs]
+    assert labels == [
+        "Dose of Sodium hydroxide (train.first.dose)",
+        "Dose of Sodium hydroxide (train.last.dose)",
+    ]
+
+
 def test_distribution_and_shared_are_kept_in_the_file(plant):
     """What a tolerance says comes back word for word; an unknown distribution is refused."""
     tolerance = {"plus_minus": 0.1, "distribution": "normal", "shared": "meter 3"}
