@@ -8,9 +8,9 @@ export function render({ model }) {
 
   const picker = document.createElement("input")
   picker.type = "file"
-  picker.accept = ".json,application/json"
+  picker.accept = ".json,application/json,.html,text/html"
   picker.hidden = true
-  picker.setAttribute("aria-label", "Scenario file")
+  picker.setAttribute("aria-label", "Scenario file or report")
 
   function button(text, title, act) {
     const made = document.createElement("button")
@@ -23,7 +23,7 @@ export function render({ model }) {
   }
   const save = () => model.send_msg({ act: "save" })
   bar.append(
-    button("Open", "Open a scenario file", () => picker.click()),
+    button("Open", "Open a scenario file, or a report with its scenario", () => picker.click()),
     button("Save", "Save as a scenario file (Ctrl+S)", save),
     picker,
   )
