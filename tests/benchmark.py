@@ -154,6 +154,10 @@ def redraw(scenario: Scenario) -> None:
     swept.outcome.reasons()
 
 
+def shipped_scenario(name: str) -> Scenario:
+    return open_scenario(ROOT / "scenarios" / f"{name}.json")
+
+
 def first_and_last(pictures: Callable[[], Iterator[Any]]) -> tuple[float, float]:
     """Median seconds to the first and to the last picture of a study."""
     times = []
@@ -231,6 +235,10 @@ def main() -> None:
         (
             "slider: 3 waters, 6 doses, 101 points, tiles, plots",
             f"{1e3 * timed(lambda: redraw(scenario)):.1f} ms",
+        ),
+        *(
+            (f"slider: {name}", f"{1e3 * timed(lambda s=shipped_scenario(name): redraw(s)):.1f} ms")
+            for name in ("dune", "quartz", "juniper")
         ),
         ("evaluate alone, one point", f"{1e3 * timed(lambda: evaluate(scenario)):.2f} ms"),
         ("blendwright solve, cold start", f"{cold_start():.2f} s"),
