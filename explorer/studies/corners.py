@@ -154,7 +154,7 @@ def _worst(
         around = others | {dial: near}
         starts = np.repeat(places[:, best : best + 1], ZOOM, axis=1)
         question = Question(spread, readout, around)
-        values, places = _searched(question, starts, sign, FINE_STEP, watch.silent)
+        values, places = _searched(question, starts, sign, coarse.inputs, FINE_STEP, watch.silent)
         best = int(np.nanargmin(sign * values))
         ends.append(_extreme(spread, around, values, places, coarse.inputs, best, near[best]))
     watch.done(1.0)
@@ -258,8 +258,10 @@ def envelope(spread: Spread, readout: str, around: Dials, watch: Watch = UNWATCH
         start = tried[:, np.argmin(np.where(np.isnan(values), np.inf, sign * values), axis=0)]
         # What was not combined starts at the end that helps on average.
         start[rest] = -sign * np.sign(effects[rest].mean(axis=1))
-        last_step = FINE_STEP if question.columns == 1 else COARSE_STEP
-        ends.append(_searched(question, start, sign, last_step, part.silent))
+        moving, last_step = (
+            (combined, COARSE_STEP) if question.columns > 1 else (range(len(spread)), FINE_STEP)
+        )
+        ends.append(_searched(question, start, sign, moving, last_step, part.silent))
         part.done(1.0)
     (low, low_places), (high, high_places) = ends
     return Envelope(low, high, low_places, high_places, tuple(combined.tolist()))
@@ -286,20 +288,25 @@ def _effects(question: Question, watch: Watch) -> np.ndarray:
 
 
 def _searched(
-    question: Question, starts: np.ndarray, sign: float, last_step: float, watch: Watch
+    question: Question,
+    starts: np.ndarray,
+    sign: float,
+    moving: Sequence[int] | np.ndarray,
+    last_step: float,
+    watch: Watch,
 ) -> tuple[np.ndarray, np.ndarray]:
     """Values (columns,) of the readout where ``sign`` times it is lowest near ``starts`` (inputs, columns),
     and their places.
 
-    In every pass each column moves the one input that gains most, by a step or to one of its ends; where none
-    gains, the step is reduced.
+    In every pass each column moves the one of the inputs ``moving`` that gains most, by a step or to one of
+    its ends; where none gains, the step is reduced.
     """
     inputs, columns = starts.shape
     places, steps = starts.copy(), np.full(columns, FIRST_STEP)
     values = question.at(places, np.arange(columns), watch)
     active = np.flatnonzero(np.isfinite(values))
     while active.size:
-        tried = _neighbours(places[:, active], steps[active])
+        tried = _neighbours(places[:, active], steps[active], np.asarray(moving))
         asked = question.at(tried.reshape(inputs, -1), np.tile(active, tried.shape[1]), watch)
         asked = asked.reshape(tried.shape[1:])
         best = np.argmin(np.where(np.isnan(asked), np.inf, sign * asked), axis=0)
@@ -314,10 +321,10 @@ def _searched(
     return values, places
 
 
-def _neighbours(places: np.ndarray, steps: np.ndarray) -> np.ndarray:
-    """Places (inputs, 4 × inputs, columns) of which each has one input moved: to an end, or by a step."""
-    inputs = len(places)
-    moved = [np.full_like(places, -1.0), np.ones_like(places), places - steps, places + steps]
-    tried = np.repeat(places[:, None, None, :], 4, axis=1).repeat(inputs, axis=2)
-    tried[np.arange(inputs), :, np.arange(inputs)] = np.clip(moved, -1.0, 1.0).transpose(1, 0, 2)
-    return tried.reshape(inputs, 4 * inputs, -1)
+def _neighbours(places: np.ndarray, steps: np.ndarray, moving: np.ndarray) -> np.ndarray:
+    """Places (inputs, 4 × moving, columns) of which each has one input moved: to an end, or by a step."""
+    here = places[moving]
+    moved = [np.full_like(here, -1.0), np.ones_like(here), here - steps, here + steps]
+    tried = np.tile(places[:, None, None, :], (1, 4, len(moving), 1))
+    tried[moving, :, np.arange(len(moving))] = np.clip(moved, -1.0, 1.0).transpose(1, 0, 2)
+    return tried.reshape(len(places), 4 * len(moving), -1)
