@@ -9,7 +9,7 @@ from explorer.chemistry.components import FAMILIES
 from explorer.scenario.dials import step_name
 from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import Outcome, evaluate
-from explorer.scenario.model import DoseStep, Scenario, Step
+from explorer.scenario.model import Scenario, SideStreamStep, Step
 from explorer.scenario.readouts import READOUTS, Readout, format_value, in_words
 from explorer.studies.alarms import alarms
 from explorer.studies.finding import finding
@@ -18,7 +18,6 @@ from explorer.studies.pictures import Axis
 from explorer.studies.sweep import Sweep, sweep
 from explorer.studies.sweep_pictures import swept_axis
 from explorer.studies.verdict import Verdict
-from explorer.treatment.chemicals import Chemical
 from explorer.treatment.notes import Note
 
 USUAL = (
@@ -85,45 +84,17 @@ class Case:
         """A readout at the operating point."""
         return float(self.outcome.readout(key, stage))
 
-    def places(self) -> Iterator[tuple[str, Sequence[Step]]]:
-        """Every train with the words for where it stands, in the order of flow; empty ones left out."""
-        for water in self.scenario.waters:
-            yield from self._trains(f"{water.title}, before the blend", water.train)
-        yield from self._trains("After the blend", self.scenario.train)
-
-    def _trains(self, place: str, train: Sequence[Step]) -> Iterator[tuple[str, Sequence[Step]]]:
-        if train:
-            yield place, train
-        for step in train:
-            yield from self._trains(f"{step.title}, on the side", getattr(step, "train", ()))
+    def places(self) -> Iterator[tuple[str, list[tuple[int, Step]]]]:
+        """Every train with the words for where it stands, in the order of flow; empty ones left out. A step
+        on a side stream follows the one it belongs to, with the number of side streams it is in."""
+        places = [(f"{water.title}, before the blend", water.train) for water in self.scenario.waters]
+        for place, train in [*places, ("After the blend", self.scenario.train)]:
+            if train:
+                yield place, list(_with_sides(train, 0))
 
     def name(self, step: Step) -> str:
         """Name of a step."""
         return step_name(self.scenario, step)
-
-    @cached_property
-    def chemicals(self) -> dict[str, tuple[Chemical, list[str]]]:
-        """Chemicals dosed, by key, each with the names of the steps in service that dose it."""
-        found: dict[str, tuple[Chemical, list[str]]] = {}
-        for _, step in self.scenario.steps():
-            if isinstance(step, DoseStep) and step.id in self.outcome.dosing:
-                chemical = self.outcome.dosing[step.id].chemical
-                found.setdefault(step.chemical, (chemical, []))[1].append(self.name(step))
-        return found
-
-    def adds(self, *components: str) -> bool:
-        """Whether any dose brings one of some components."""
-        return any(
-            chemical.totals.get(key, 0) for chemical, _ in self.chemicals.values() for key in components
-        )
-
-    def present(self, *components: str) -> bool:
-        """Whether any of some components is in the water anywhere."""
-        return any(
-            np.nanmax(stage.total(key), initial=0.0) > 0
-            for stage in self.outcome.stages
-            for key in components
-        )
 
     def place_of(self, where: str) -> str:
         """Name of what a note or address is about; "" where it has none."""
@@ -141,3 +112,10 @@ class Case:
     def readouts(self) -> list[str]:
         """Readouts that the finished water has."""
         return [key for key in READOUTS if np.isfinite(self.value(key))]
+
+
+def _with_sides(train: Sequence[Step], depth: int) -> Iterator[tuple[int, Step]]:
+    for step in train:
+        yield depth, step
+        if isinstance(step, SideStreamStep):
+            yield from _with_sides(step.train, depth + 1)

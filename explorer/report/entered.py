@@ -103,16 +103,19 @@ def _remarks(case: Case) -> Iterator[str]:
 
 
 def train(case: Case) -> Markup | None:
-    """Every step in the order of flow, its settings as entered."""
+    """Every step in the order of flow, its settings as entered; › marks those on a side stream."""
     rows: list[Row | Group] = []
     for place, steps in case.places():
-        rows += [Group(place), *(_step_row(case, step) for step in steps)]
+        rows += [Group(place), *(_step_row(case, depth, step) for depth, step in steps)]
     heading = ["Step", "As entered", "mmol/L", "Product", "pH after"]
     return table("train", heading, rows, left=(0, 1, 3))
 
 
-def _step_row(case: Case, step: Step) -> Row:
-    name: Part = [case.name(step), element("small", step.note, class_="under") if step.note else None]
+def _step_row(case: Case, depth: int, step: Step) -> Row:
+    name: Part = [
+        "› " * depth + case.name(step),
+        element("small", step.note, class_="under") if step.note else None,
+    ]
     if not step.on:
         return [name, "out of service", "", "", ""]
     after = format_value(case.value("ph", step.id), READOUTS["ph"])

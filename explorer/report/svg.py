@@ -58,6 +58,7 @@ def plot(picture: Picture, along: Axis, here: float | None, name: str) -> Markup
     else:
         content = joined(
             _curves(picture, frame, name),
+            _bounds(picture, frame),
             _marks(picture.marks, frame),
             _here(picture, along, frame, here),
             _end_labels(picture, frame),
@@ -119,7 +120,12 @@ def _target(picture: Picture, frame: Frame) -> Iterator[Markup]:
     top, bottom = frame.up(min(ends[1], high)), frame.up(max(ends[0], low))
     if top < bottom:
         yield element("rect", class_="target", **_box(frame.left, top, frame.right, bottom))
-    for bound in picture.band:
+
+
+def _bounds(picture: Picture, frame: Frame) -> Iterator[Markup]:
+    """Edges of the target, above the fan so that they stay visible."""
+    low, high = frame.y
+    for bound in picture.band or ():
         if bound is not None and low <= bound <= high:
             yield _rule(frame.left, frame.up(bound), frame.right, frame.up(bound), "bound")
 

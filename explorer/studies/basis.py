@@ -104,8 +104,9 @@ def _of_analyses(scenario: Scenario, outcome: Outcome) -> Iterator[Assumption]:
         yield from _of_reading(source.name, entries)
         missing = examine(entries, plan.system).missing
         if missing:
-            names = ", ".join(in_sentence(_label(scenario, key)) for key in missing)
-            yield Assumption(f"Ions of {source.name}", "0", "mg/L", f"not in the analysis: {names}", ASSUMED)
+            first, *others = (_label(scenario, key) for key in missing)
+            what = f"{', '.join([first, *map(in_sentence, others)])} of {source.name}"
+            yield Assumption(what, "0", "mg/L", "not in the analysis", ASSUMED)
         if source.close_with != "none":
             basis = f"{source.close_with} adjusted until the charges balance"
             yield Assumption(f"Charge of {source.name}", "0", "meq/L", basis, "as entered")

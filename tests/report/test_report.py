@@ -139,10 +139,16 @@ def test_what_was_entered_is_echoed_with_its_basis(shipped_report):
     assert waters["pH"] == ["5.9 at 24 °C", "7.35 at 22 °C"]
     assert waters["Boron, mg/L"][0] == "0.75 (0.0694)"
     assert waters["Nitrate, mg/L as NO₃"] == ["—", "18 (0.29)"]
-    train = {row[0]: row[1:] for row in rows(page, "entered", 1)}
-    assert train["Sodium hydroxide"][0] == "15.05 mg/L as NaOH"
-    assert train["Sodium hypochlorite"][0] == "0.8 mg/L as Cl₂"
-    assert ["Limestone contactor", "Fraction 50 %"] in [row[:2] for row in rows(page, "entered", 1)]
+    train = [row[:2] for row in rows(page, "entered", 1)]
+    assert train[1:] == [
+        ["Dune permeate, before the blend"],
+        ["Limestone contactor", "Fraction 50 %"],
+        ["› Carbon dioxide", "90.5 mg/L as CO₂"],
+        ["› Limestone contactor", "Approach to saturation 90 %, Solid calcite"],
+        ["Sodium hydroxide", "15.05 mg/L as NaOH"],
+        ["After the blend"],
+        ["Sodium hypochlorite", "0.8 mg/L as Cl₂"],
+    ]
 
 
 def test_a_computed_dose_says_what_it_holds(shipped_report):

@@ -39,7 +39,7 @@ def test_a_non_detect_counts_as_half_its_limit(plant):
 def test_ions_that_are_not_in_the_analysis_count_as_none(plant):
     """They are listed, not passed over."""
     found = register(with_entries(plant, sulfate=None, nitrate=None))
-    assert found["Ions of River"] == ("0", "mg/L", "not in the analysis: sulfate, nitrate", ASSUMED)
+    assert found["Sulfate, nitrate of River"] == ("0", "mg/L", "not in the analysis", ASSUMED)
 
 
 def test_a_reading_temperature_that_nobody_stated(plant):
