@@ -164,7 +164,7 @@ def add_step(desk: Desk, prefix: str) -> list[Node]:
     kinds = [
         Choice(f"{kind}:", step.kind_title, "", (step.__doc__ or "").lower())
         for kind, step in STEP_KINDS.items()
-        if step is not DoseStep
+        if step is not DoseStep and not (prefix and step.after_joining)
     ]
     doses = [replace(choice, key=f"dose:{choice.key}") for choice in chemical_choices(desk.scenario)]
     groups = {"Dose a chemical": doses, "Other steps": kinds}

@@ -52,7 +52,7 @@ def complete(
     totals[:, ~possible] = np.where(
         np.isin(np.arange(len(totals)), rows)[:, None], np.nan, totals[:, ~possible]
     )
-    return totals.reshape(-1, *shape), possible.reshape(shape)
+    return totals.reshape(len(system.keys), *shape), possible.reshape(shape)
 
 
 def _alkalinity_and_dic(

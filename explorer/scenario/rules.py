@@ -18,7 +18,7 @@ from explorer.scenario.observed_rule import measured_points
 from explorer.scenario.quantity import Quantity
 from explorer.scenario.readouts import READOUTS
 from explorer.scenario.shares import TOLERANCE, WHOLE
-from explorer.scenario.steps import ConcentrateStep, DoseStep, SettleStep, SideStreamStep, Step
+from explorer.scenario.steps import DoseStep, SettleStep, SideStreamStep, Step
 from explorer.scenario.water import Analysis, Water
 from explorer.treatment.analysis import ANALYSIS_KEYS, CARBONATE_KEYS
 from explorer.treatment.catalogue import SETTINGS
@@ -164,9 +164,8 @@ def _steps(scenario: Scenario) -> Faults:
         depth = path.count(".train") + isinstance(step, SideStreamStep) - path.startswith("waters")
         if depth > SIDE_STREAM_DEPTH:
             yield path, f"side streams stand too deep in each other; allowed {SIDE_STREAM_DEPTH} levels"
-        # Where waters join they do so by their shares, which a loss of water on the way would change.
-        if isinstance(step, ConcentrateStep) and path.count(".") > 0:
-            yield f"{path}.step", "concentrating before waters join; allowed in the common train only"
+        if step.after_joining and "." in path:
+            yield f"{path}.step", f"{step.kind} stands before waters join; allowed in the common train only"
         rules = (rule for kind, rule in _STEP_RULES.items() if isinstance(step, kind))
         for where, message in (fault for rule in rules for fault in rule(step, chemicals)):
             yield f"{path}.{where}", message

@@ -41,6 +41,8 @@ class Step(Entity):
     kind_title: ClassVar[str] = ""
     either: ClassVar[tuple[str, ...]] = ()
     """Fields of which exactly one is given."""
+    after_joining: ClassVar[bool] = False
+    """Whether it stands in the common train only: a loss of water before would change the shares of joining."""
 
     id = Id(None, required=True, label="Id", doc="Handle used in addresses.")
     named = OPTIONAL
@@ -214,6 +216,7 @@ class ConcentrateStep(Step):
     """Pure water leaves (evaporation): everything dissolved stays in less water."""
 
     kind, kind_title = "concentrate", "Concentrate"
+    after_joining = True
 
     cycles = Number(
         None,

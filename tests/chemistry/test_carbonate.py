@@ -62,3 +62,10 @@ def test_one_quantity_is_not_enough(system):
     """The message names what was given."""
     with pytest.raises(ValueError, match="got ph"):
         complete(system, system.zeros(), 20.0, ph=7.0)
+
+
+def test_no_waters_at_all_are_completed_too(system):
+    """An empty batch gives an empty answer."""
+    found, possible = complete(system, system.zeros(0), 20.0, ph=7.0, alkalinity=1e-3)
+    assert found.shape == (len(system.keys), 0)
+    assert possible.shape == (0,)
