@@ -42,7 +42,7 @@ class Step(Entity):
     either: ClassVar[tuple[str, ...]] = ()
     """Fields of which exactly one is given."""
     after_joining: ClassVar[bool] = False
-    """Whether it stands in the common train only: a loss of water before would change the shares of joining."""
+    """Whether it stands in the common train only: losing water before would change the shares of joining."""
 
     id = Id(None, required=True, label="Id", doc="Handle used in addresses.")
     named = OPTIONAL
