@@ -1,19 +1,17 @@
-"""The top bar: title, season, undo and redo, shipped scenarios."""
+"""The top bar: title, season, options, undo and redo, shipped scenarios."""
 
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from typing import Any
 
+from explorer.app.bar_parts import OptionChips, SeasonChips
 from explorer.app.entry import Entries
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
 from explorer.app.state import Session
 from explorer.app.text import plain
 from explorer.scenario.model import Scenario
-
-MOST_CHIPS = 4
-"""More seasons than this are chosen from a list instead of chips."""
 
 
 class Bar(LiveView):
@@ -35,8 +33,11 @@ class Bar(LiveView):
         self.examples = examples
         self.open_example = open_example
         self.entries = Entries()
+        self.seasons = SeasonChips(session, self.entries, self.refresh)
+        self.options = OptionChips(session, self.entries, self.refresh)
         super().__init__(sizing_mode="stretch_width", **settings)
-        session.param.watch(self._changed, ["structure", "values", "unsaved", "can_undo", "can_redo"])
+        watched = ["structure", "values", "unsaved", "can_undo", "can_redo", "choices"]
+        session.param.watch(self._changed, watched)
         self.refresh()
 
     def describe(self) -> Node:
@@ -51,28 +52,12 @@ class Bar(LiveView):
             node("span", "unsaved", text="● not saved" if session.unsaved else "",
                  title="Changed since it was opened or saved"),
             node("div", "grow"),
-            *self._seasons(),
+            self.seasons.nodes(),
+            self.options.nodes(),
             _icon("undo", "Undo", session.undo_label, session.can_undo, session.undo),
             _icon("redo", "Redo", session.redo_label, session.can_redo, session.redo),
             *self._examples(),
         )  # fmt: skip
-
-    def _seasons(self) -> list[Node | None]:
-        scenario = self.session.scenario
-        if len(scenario.seasons) < 2:
-            return []
-        label = node("span", "name", text="Season")
-        if len(scenario.seasons) > MOST_CHIPS:
-            names = {name: plain(name, 30) for name in scenario.seasons}
-            return [label, self.entries.choice("season", "Season", names, scenario.season, self._season)]
-        return [
-            label,
-            *(
-                node("button", "chip", text=plain(name, 20), key=f"season:{index}", type="button",
-                     aria_pressed=str(name == scenario.season).lower(), on=self._chip(name))
-                for index, name in enumerate(scenario.seasons)
-            ),
-        ]  # fmt: skip
 
     def _examples(self) -> list[Node]:
         if not self.examples:
@@ -96,15 +81,8 @@ class Bar(LiveView):
                  popover="auto", aria_label="Shipped scenarios"),
         ]  # fmt: skip
 
-    def _chip(self, name: str) -> Callable[[Any], None]:
-        return lambda value: self._season(name)
-
     def _example(self, name: str) -> Callable[[Any], None]:
         return lambda value: self.open_example(name)
-
-    def _season(self, name: str) -> None:
-        if name != self.session.season:
-            self.session.choose_season(name)
 
     def _rename_scenario(self, text: str) -> str:
         wanted = plain(text, 200)

@@ -134,14 +134,20 @@ class Entries:
         take: Callable[[str], str],
         *,
         look: str = "words",
+        cancel: Callable[[], object] | None = None,
         **properties: Any,
     ) -> tuple[Node, Node]:
         """A field for a text and the place for its message.
 
-        take: returns "" or a refusal; a ValueError it raises is a refusal too.
+        take: returns "" or a refusal; a ValueError it raises is a refusal too. cancel: for a field that asks
+        a question, what Escape does; Enter then also takes what stands in the field from the start.
         """
 
         def commit(value: Any) -> None:
+            if value is None and cancel is not None:
+                self.refuse(key)
+                cancel()
+                return
             typed = str(value)
             try:
                 refusal = take(typed)
@@ -166,6 +172,7 @@ class Entries:
             aria_label=label,
             aria_invalid="true" if refusal else None,
             title=shown if len(shown) > 12 else None,
+            data_asks=cancel is not None,
             **properties,
         )
         return box, message(refusal)

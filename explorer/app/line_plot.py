@@ -27,6 +27,7 @@ from explorer.app.look import (
     LIGHT,
     LINE_WIDTH,
     POINT_MARKER,
+    THIN_LINE_WIDTH,
     Palette,
 )
 from explorer.app.plot_parts import in_page, lettered, pointer_line, put, ticks
@@ -51,6 +52,7 @@ class LinePlot:
                 for key in ("xs", "ys", "colour", "dash", "label", "digits", "figures", "signed", "unit")
             }
         )
+        self.others = ColumnDataSource(data={key: [] for key in ("xs", "ys", "colour", "dash", "label")})
         self.fan = ColumnDataSource(data={"xs": [], "ys": [], "alpha": []})
         self.ends = in_page(x=[], y=[], text=[], colour=[])
         self.crossings = ColumnDataSource(data={key: [] for key in ("x", "y", "text", "dx", "dy", "align")})
@@ -115,6 +117,15 @@ class LinePlot:
             line_color="colour",
             line_dash="dash",
             line_width=LINE_WIDTH,
+            line_join="round",
+        )
+        self.other = fig.multi_line(
+            xs="xs",
+            ys="ys",
+            source=self.others,
+            line_color="colour",
+            line_dash="dash",
+            line_width=THIN_LINE_WIDTH,
             line_join="round",
         )
         self.dot = fig.scatter(
@@ -238,6 +249,7 @@ class LinePlot:
             "signed": [picture.signed] * count,
             "unit": [picture.unit] * count,
         }
+        put(self.others, other_columns(picture, palette))
         put(self.fan, fan_columns(picture.x, picture.fan))
         put(self.dots, dot_columns(picture.dots, palette))
         put(self.crossings, self._crossing_labels(picture))
@@ -290,6 +302,18 @@ def dot_columns(sets: Sequence[Dots], palette: Palette) -> dict[str, list[Any]]:
         columns["marker"] += [_chosen(DOT_MARKERS, None, place)] * len(part.x)
         columns["colour"] += [_chosen(palette.series, None, place + 1)] * len(part.x)
     return columns
+
+
+def other_columns(picture: Picture, palette: Palette) -> dict[str, list[Any]]:
+    """Curves of kept options."""
+    others = picture.others
+    return {
+        "xs": [picture.x.tolist()] * len(others),
+        "ys": [line.y.tolist() for line in others],
+        "colour": [_chosen(palette.series, line.colour, place) for place, line in enumerate(others)],
+        "dash": [_chosen(DASHES, line.dash, place) for place, line in enumerate(others)],
+        "label": [line.name for line in others],
+    }
 
 
 def fan_columns(x: np.ndarray, fan: Sequence[Layer]) -> dict[str, list[Any]]:

@@ -193,6 +193,9 @@ export function render({ model, el }) {
       element.value = element._known
       element.select()
     }
+    // A field that asks for a name: Enter takes what stands there already, Escape takes back the question.
+    if (element.hasAttribute("data-asks") && (event.key === "Escape" || (event.key === "Enter" && element.value === element._known)))
+      tell(element, event.key === "Enter" ? element.value : null)
     if (element.getAttribute("role") === "tab") {
       const tabs = [...element.parentElement.querySelectorAll("[role=tab]")], at = tabs.indexOf(element)
       const to = { ArrowRight: (at + 1) % tabs.length, ArrowLeft: at - 1, Home: 0, End: -1 }[event.key]

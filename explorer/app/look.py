@@ -111,8 +111,13 @@ DASHES: tuple[list[int], ...] = (
 """Dash of the n-th line of a plot, in pixels on and off; [] is solid."""
 
 LINE_WIDTH = 2.2
+THIN_LINE_WIDTH = 1.2
+"""Of curves beside the main ones."""
+
 FAN_ALPHA = 0.15
 """Of each layer of a fan; where layers overlap they add up."""
+
+BAR_ALPHA = 0.45
 
 POINTER = "#7f8f93"
 """Line under the pointer, in both palettes."""
@@ -188,10 +193,31 @@ PLOT_GRID_CSS = """
 }
 """
 
+TITRATION_GRID_CSS = """
+:host { display: grid !important; grid-template-columns: repeat(2, minmax(0, 1fr)); min-height: 0; gap: 10px;
+  /* the lower row carries the axis label */
+  grid-template-rows: calc(50% - 15px) calc(50% + 5px); margin-top: 9px !important; }
+:host > .diagram { grid-area: 1 / 2 / 3 / 3; }
+@media (max-width: 759px) {
+  :host { grid-template-columns: minmax(0, 1fr);
+    grid-template-rows: repeat(2, minmax(0, 1fr)) minmax(0, 1.6fr); }
+  :host > .diagram { grid-area: auto; }
+}
+"""
+
 MAP_GRID_CSS = """
-:host { display: grid !important; grid-template: minmax(0, 100%) / minmax(0, 1fr) 232px; gap: 12px; min-height: 0;
-  margin-top: 9px !important; }
+:host { display: grid !important; grid-template: minmax(0, 100%) / minmax(0, 1fr) 232px; gap: 12px;
+  min-height: 0; margin-top: 9px !important; }
 @media (max-width: 759px) { :host { grid-template: 420px auto / minmax(0, 1fr); } }
+"""
+
+SPREAD_GRID_CSS = """
+:host { display: grid !important; grid-template-columns: minmax(0, 1.35fr) minmax(0, 1fr); gap: 10px;
+  grid-template-rows: minmax(230px, 46%) minmax(250px, 1fr); margin-top: 9px !important; min-height: 0;
+  overflow-y: auto; scrollbar-width: thin; }
+@media (max-width: 759px) {
+  :host { grid-template-columns: minmax(0, 1fr); grid-template-rows: 260px 240px auto auto; }
+}
 """
 
 PLOT_CARD_CSS = """

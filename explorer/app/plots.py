@@ -63,6 +63,7 @@ class LinkedPlots:
         parts = [
             {
                 "lines": plot.lines,
+                "others": plot.others,
                 "rings": plot.rings,
                 "labels": plot.labels,
                 "ends": plot.ends,
@@ -78,6 +79,7 @@ class LinkedPlots:
             for event in (MouseMove, MouseLeave, *moving):
                 plot.figure.js_on_event(event, react)
             plot.lines.js_on_change("data", react)
+            plot.others.js_on_change("data", react)
             plot.figure.js_on_change("inner_height", react)
         self.point.js_on_change("location", react)
         self.x_range.js_on_change("end", react)

@@ -10,7 +10,9 @@ from panel.theme.native import Native
 from explorer.app.bar import Bar
 from explorer.app.files import FileDesk, example_titles
 from explorer.app.look import FOLDER, THEMES, Palette, page_css
+from explorer.app.options import Options
 from explorer.app.rail import Rail
+from explorer.app.runner import Conflate
 from explorer.app.state import Session
 from explorer.app.summary import Foot, Message, Summary
 from explorer.app.theme import ThemeSwitch
@@ -29,6 +31,7 @@ class Shell:
     def __init__(self, session: Session, tab: str = "") -> None:
         self.session = session
         self.theme = ThemeSwitch()
+        self.options = Options(session, Conflate(pn.state.curdoc))
         self.files = FileDesk(session, tab=tab)
         self.bar = Bar(session, example_titles(), self.files.open_example)
         self.rail = Rail(session)

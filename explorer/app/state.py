@@ -13,6 +13,7 @@ parameter       when it changes
 ``swept``       the sweep has been solved (``Sweep``), always together with ``point``
 ``message``     one sentence the user has to read, "" when there is none
 ``stale``       True while the results on screen belong to inputs that could not be solved
+``kept``        results of the kept options are there (by ``options``), in the order of their letters
 ``offered``     a file is there for the user to save (``Offer``); ``files`` hands it to the browser
 ==============  =====================================================================================
 """
@@ -70,6 +71,7 @@ class Session(param.Parameterized):
     message = param.String("", doc="sentence for the message line")
     stale = param.Boolean(False, doc="results on screen belong to earlier inputs")
     choices = param.Dict({}, doc="what views show (tiles, plots); not part of the scenario file")
+    kept = param.Parameter((), doc="tuple of Kept, the options with their results")
     offered = param.Parameter(doc="Offer, the last file made for the user to save; None at first")
     unsaved = param.Boolean(False)
     can_undo = param.Boolean(False)
@@ -146,7 +148,9 @@ class Session(param.Parameterized):
         self.calculate(keeps_curve)
         return ""
 
-    def edit(self, label: str, change: Change, key: str = "", rebuild: bool = True) -> str:
+    def edit(
+        self, label: str, change: Change, key: str = "", rebuild: bool = True, together: bool = False
+    ) -> str:
         """Apply a structural change to a copy, validate it and take it over.
 
         Parameters
@@ -159,21 +163,37 @@ class Session(param.Parameterized):
             Edits with the same non-empty key that follow each other quickly merge into one undo step.
         rebuild
             False when nothing drawn from the structure changes (``structure`` is then not bumped).
+        together
+            Edits with the same key merge however long they take: the fields of one form.
 
         Returns
         -------
         str
             "" when taken over, else one sentence; the old state stays.
         """
-        before = self.scenario.to_dict()
-        try:
-            draft = self.scenario.copy()
+
+        def changed(draft: Scenario) -> Scenario:
             change(draft)
             tidy(draft)
-            draft = Scenario.from_dict(draft.to_dict())
+            return draft
+
+        return self.adopt(label, changed, key, rebuild, together)
+
+    def adopt(
+        self,
+        label: str,
+        make: Callable[[Scenario], Scenario],
+        key: str = "",
+        rebuild: bool = True,
+        together: bool = False,
+    ) -> str:
+        """Go on with what ``make`` returns for a copy of the scenario; otherwise as :meth:`edit`."""
+        before = self.scenario.to_dict()
+        try:
+            draft = Scenario.from_dict(make(self.scenario.copy()).to_dict())
         except ValueError as error:
             return str(error)
-        if key and self._merges(key):
+        if key and self._merges(key, math.inf if together else MERGE_SECONDS):
             self.work.past[-1].at = self._clock()
             self.work.future.clear()
         else:
@@ -249,7 +269,7 @@ class Session(param.Parameterized):
     def solve_now(self) -> None:
         """Solve before anything else happens; for the first page, which should come with results."""
         snapshot, questions = self.scenario.copy(), self._questions.values()
-        self._apply(solve(snapshot, self._all_wanted(), questions, curve=self._curve))
+        self._apply(solve(snapshot, self.wanted, questions, curve=self._curve))
 
     def calculate(self, keeps_curve: bool = False) -> None:
         """Solve the scenario as it stands; results arrive in ``point`` and ``swept``.
@@ -259,7 +279,7 @@ class Session(param.Parameterized):
         if not keeps_curve:
             self._curve += 1
         snapshot, curve = self.scenario.copy(), self._curve
-        wanted, questions = self._all_wanted(), tuple(self._questions.values())
+        wanted, questions = self.wanted, tuple(self._questions.values())
         swept = self.swept if curve == self._shown_curve else None
         self.runner.submit(lambda: solve(snapshot, wanted, questions, swept, curve), self._apply)
 
@@ -274,7 +294,9 @@ class Session(param.Parameterized):
         high = math.inf if dial.high is None else dial.high
         return all(dial.low < number < high for number in (dial.value, value))
 
-    def _all_wanted(self) -> set[str]:
+    @property
+    def wanted(self) -> set[str]:
+        """Readouts that some view will ask for."""
         return {key for keys in self._wanted.values() for key in keys}
 
     def _apply(self, results: Results) -> None:
@@ -286,9 +308,9 @@ class Session(param.Parameterized):
 
     # ---- history -------------------------------------------------------------------------------------
 
-    def _merges(self, key: str) -> bool:
+    def _merges(self, key: str, within: float = MERGE_SECONDS) -> bool:
         past = self.work.past
-        return bool(past) and past[-1].key == key and self._clock() - past[-1].at < MERGE_SECONDS
+        return bool(past) and past[-1].key == key and self._clock() - past[-1].at < within
 
     def _remember(self, step: Step) -> None:
         self.work.past.append(step)

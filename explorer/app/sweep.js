@@ -62,6 +62,16 @@ function draw() {
       while (last >= 0 && !Number.isFinite(ys[i][last])) last--
       if (label[i] && last >= 0) ends.push({ y: ys[i][last], text: label[i], colour: colour[i] })
     }
+    const { data } = part.others
+    data.xs.forEach((line, i) => {
+      const value = at(line, data.ys[i], where)
+      if (hovering && Number.isFinite(value))
+        labels.push({ y: value, colour: data.colour[i], text: data.label[i] + " " + number(value, digits[0], figures[0], signed[0]) })
+      let last = data.ys[i].length - 1
+      while (last >= 0 && !Number.isFinite(data.ys[i][last])) last--
+      if (last >= 0) ends.push({ y: data.ys[i][last], text: data.label[i], colour: data.colour[i] })
+    })
+    const several = xs.length > 1 || (hovering && data.xs.length > 0)
     if (hovering) labels.push({
       y: low, colour: part.axis.major_label_text_color,
       text: number(where, place_digits, 0, false) + (place_unit ? " " + place_unit : ""),
@@ -73,7 +83,7 @@ function draw() {
       x: labels.map(() => where), y: column(labels, "at"), text: column(labels, "text"), colour: column(labels, "colour"),
       dx: labels.map(() => left ? -9 : 9),
       // A single value stands clear of its curve: above it, or below where there is no room.
-      dy: labels.map((item) => xs.length > 1 || item.y === low ? 0 : item.y > low + 0.88 * span ? 14 : -14),
+      dy: labels.map((item) => several || item.y === low ? 0 : item.y > low + 0.88 * span ? 14 : -14),
       align: labels.map(() => left ? "right" : "left"),
     }
     part.ends.data = {

@@ -5,6 +5,7 @@ from __future__ import annotations
 import panel as pn
 
 from explorer.app.look import PLOT_CARD_CSS, PLOT_GRID_CSS, VIEW_HOST_CSS, Palette
+from explorer.app.options import option_curves
 from explorer.app.plot_heads import (
     Head,
     ReadoutHead,
@@ -18,7 +19,7 @@ from explorer.app.state import Session
 from explorer.app.sweep_controls import SweepControls
 from explorer.app.view import View
 from explorer.studies.pictures import Axis, Memory, Picture
-from explorer.studies.sweep_pictures import picture_of, picture_of_species, swept_axis
+from explorer.studies.sweep_pictures import picture_of, picture_of_species, swept_axis, with_options
 
 PLOTS = ("ph", "species", "buffer", "chosen")
 """Plots in reading order; the second column carries the labels of the species at its right."""
@@ -27,7 +28,7 @@ PLOTS = ("ph", "species", "buffer", "chosen")
 class SweepView(View):
     """Control row and plots."""
 
-    watched = ("swept", "point", "choices", "structure")
+    watched = ("swept", "point", "choices", "structure", "kept")
 
     def __init__(self, session: Session) -> None:
         super().__init__(session)
@@ -60,8 +61,8 @@ class SweepView(View):
     def show(self) -> None:
         """Bring the plots to the session's sweep."""
         swept = self.session.swept
-        if swept is None:
-            return
+        if swept is None or swept.address not in self.session.dials:
+            return  # another scenario: its sweep is on the way
         pictures, along = self.pictures()
         self.plots.set_axis(along)
         self.plots.show(pictures, along)
@@ -81,7 +82,11 @@ class SweepView(View):
 
     def _readout(self, key: str) -> Picture:
         targets, previous = self.session.scenario.targets, self._memory.limits.get(key)
-        return self._memory.keep(key, picture_of(self.session.swept, key, targets, previous))
+        picture = picture_of(self.session.swept, key, targets, previous)
+        curves = option_curves(self.session)
+        if curves:
+            picture = with_options(picture, key, curves, previous)
+        return self._memory.keep(key, picture)
 
     def _species(self) -> Picture:
         family, logarithmic = family_choice(self.session), bool(self.session.choices.get("log"))
@@ -110,7 +115,7 @@ class SweepView(View):
         self._want()
         if "structure" in changed:
             self._memory.limits.clear()
-        if changed & {"swept", "point", "choices"}:
+        if changed & {"swept", "point", "choices", "kept"}:
             self.show()
         if changed & {"structure", "choices"}:
             for head in self.heads.values():

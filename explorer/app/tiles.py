@@ -10,6 +10,7 @@ import numpy as np
 
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
+from explorer.app.options import difference, selected
 from explorer.app.state import Session
 from explorer.app.text import compact, plain, unit_text
 from explorer.scenario.model import Target
@@ -84,7 +85,7 @@ class Tiles(LiveView):
         self._list: list[Node] = []
         super().__init__(sizing_mode="stretch_width", **settings)
         self._want()
-        session.param.watch(self._changed, ["point", "stale", "structure", "choices"])
+        session.param.watch(self._changed, ["point", "stale", "structure", "choices", "kept"])
         self.refresh()
 
     @property
@@ -163,11 +164,23 @@ class Tiles(LiveView):
             node("div", "value", text=f"{text} %" if percent and np.isfinite(value) else text),
             node("div", "unit", text="" if percent else unit),
             self._gauge(key, value, band, readout),
-            node("div", f"state {look}", text=state),
+            node("div", "foot-line", node("span", f"state {look}", text=state), self._change(readout, value)),
             _tip(readout, targets, at_right),
             key=f"tile:{key}", tabindex="0", role="group",
             aria_label=f"{readout.label}: {text} {unit}, {state}",
         )  # fmt: skip
+
+    def _change(self, readout: Readout, value: float) -> Node | None:
+        """How far the value is from that of the option it is compared with."""
+        kept = selected(self.session)
+        if kept is None or kept.point is None:
+            return None
+        change = difference(value, float(kept.point.readout(readout.key)), readout)
+        if not change:
+            return None
+        hint = f"Against option {kept.letter}, {plain(kept.name, 80)}"
+        against = node("span", "long", text=f" vs {kept.letter}")
+        return node("span", "change", node("span", text=change), against, title=hint)
 
     def _state(self, value: float, band: Band | None, aimed: bool, readout: Readout) -> tuple[str, str]:
         if not np.isfinite(value):

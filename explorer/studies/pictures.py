@@ -91,6 +91,8 @@ class Picture:
     empty: str = ""
     fan: tuple[Layer, ...] = ()
     dots: tuple[Dots, ...] = ()
+    others: tuple[Line, ...] = ()
+    """The same quantity of kept options, drawn thinner."""
 
 
 @dataclass(frozen=True)

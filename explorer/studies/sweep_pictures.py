@@ -1,13 +1,17 @@
 """Pictures of a sweep: any readout, any family of species, in the words of page and report."""
 
 from collections.abc import Sequence
+from dataclasses import replace
+
+import numpy as np
 
 from explorer.scenario.model import Target
 from explorer.scenario.readouts import READOUTS, Readout
 from explorer.scenario.words import compact, plain, unit_text
-from explorer.studies.axes import Limits
+from explorer.studies.axes import Limits, steady_limits
 from explorer.studies.pictures import (
     Axis,
+    Line,
     Missing,
     Picture,
     Quantity,
@@ -48,6 +52,19 @@ def picture_of(swept: Sweep, key: str, targets: Sequence[Target], previous: Limi
         previous,
         readout.slack,
     )
+
+
+def with_options(
+    picture: Picture, key: str, curves: Sequence[tuple[Line, Sweep]], previous: Limits | None
+) -> Picture:
+    """A picture of a readout with the curves of kept options beside its own, all of them inside its limits.
+
+    curves: name, colour and dash of each option (its ``y`` is not looked at), with its sweep.
+    """
+    others = tuple(replace(line, y=rising(swept.x, swept.outcome.readout(key))) for line, swept in curves)
+    everything = np.concatenate([np.array(picture.limits), *(line.y for line in others)])
+    limits = steady_limits(everything, previous, picture.limits[1] - picture.limits[0])
+    return replace(picture, others=others, limits=limits)
 
 
 def picture_of_species(
