@@ -164,7 +164,9 @@ def sweep(
     """The plant along one dial.
 
     What is not given comes from the scenario's own sweep where that is of the same dial, else from the bounds
-    of the dial (without upper bound: from its lower one to twice its value). ``overrides``: other dials.
+    of the dial (without upper bound: from its lower one to twice its value). Where nobody says a dial, or the
+    scenario's own is out of service, the first share, dose or temperature is taken. ``overrides``: other
+    dials.
 
     Raises ScenarioError for an unknown dial, a range without length and a number of points outside 2 to 2001.
     """
@@ -187,7 +189,9 @@ def swept_dial(
     every = dials(scenario, season)
     setting = scenario.sweep
     if dial is None:
-        dial = setting.dial if setting is not None else _first(every)
+        useful = _useful(scenario, every)
+        # A dial out of service is gone until its water or step comes back.
+        dial = setting.dial if setting is not None and setting.dial in useful else useful[0]
     if dial not in every:
         raise ScenarioError("dial", no_dial(dial, every))
     start, stop = swept_range(every[dial], setting, start, stop)
@@ -198,11 +202,20 @@ def swept_dial(
     return every[dial], np.linspace(start, stop, points)
 
 
-def _first(every: Mapping[str, Dial]) -> str:
-    """The dial to sweep where nobody has said: a share of several, else a dose, else a temperature."""
-    several = sum(address.endswith(".share") for address in every) > 1
-    kinds = (*([".share"] if several else []), ".dose", ".analysis.temperature", "")
-    return next(address for kind in kinds for address in every if address.endswith(kind))
+def _useful(scenario: Scenario, every: Mapping[str, Dial]) -> list[str]:
+    """Dials to sweep where nobody has said, the likeliest first: shares, doses, temperatures, the others.
+
+    Waters and steps out of service, and the share of an only water, have nothing to turn.
+    """
+    idle = [f"waters.{water.id}." for water in scenario.waters if not water.on]
+    idle += [f"train.{step.id}." for _, step in scenario.steps() if not step.on]
+    shares = [address for address in every if address.endswith(".share")]
+    alone = shares if len(shares) == 1 else []
+    kinds = (".share", ".dose", ".analysis.temperature", "")
+    found = dict.fromkeys(address for kind in kinds for address in every if address.endswith(kind))
+    return [
+        address for address in found if address not in alone and not any(part in address for part in idle)
+    ]
 
 
 def swept_range(

@@ -43,6 +43,18 @@ def test_a_single_water_is_swept_along_a_dose_or_its_temperature(plant):
     assert sweep(plant({"river": 100})).address == "waters.river.analysis.temperature"
 
 
+def test_a_swept_dial_out_of_service_gives_way_to_another(blend):
+    """Until its water comes back; naming it is refused."""
+    blend.water("well").on = False
+    assert sweep(blend).address == "waters.river.analysis.temperature"
+    with pytest.raises(ScenarioError, match="dial"):
+        sweep(blend, SHARE)
+    blend.water("well").on, blend.water("river").on = True, False
+    assert sweep(blend).address == "waters.well.analysis.temperature"
+    blend.water("river").on = True
+    assert sweep(blend).address == SHARE
+
+
 def test_overrides_hold_other_dials(blend):
     """The sweep at a warmer river is the sweep of a warmer river."""
     warm = {"waters.river.analysis.temperature": 15.0}
