@@ -174,6 +174,8 @@ def buffer_intensity(system: "System", answer: Equilibrium) -> NDArray:
     """d(alkalinity)/d(pH) at constant totals and temperature, eq/L per pH; (N,)."""
     result = np.full(len(answer.strength), np.nan)
     solved = np.flatnonzero(answer.reason == SOLVED)
+    if not solved.size:
+        return result
     present = (answer.x[:, solved] > ABSENT / 2).any(axis=1)
     kernel = system.kernel(tuple(present.tolist()), ())
     for points in _chunks(solved):

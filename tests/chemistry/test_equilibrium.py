@@ -124,6 +124,13 @@ def test_ph_falls_with_acid_and_rises_with_base(system):
     assert (np.diff(ph, axis=1) > 0.0).all()
 
 
+def test_waters_none_of_which_is_solved_have_no_buffer_intensity(system):
+    """As every other quantity then: nan, whatever the number of points."""
+    water = system.solve(np.full((len(system.keys), 3), np.nan), 15.0)
+    assert np.isnan(water.ph).all()
+    assert np.isnan(water.buffer_intensity).all() and water.buffer_intensity.shape == (3,)
+
+
 def test_the_buffer_intensity_is_the_slope_of_the_titration(system):
     """The analytic derivative agrees with a central difference to 1e-6."""
     totals, temperature = ordinary_waters(system, 200, seed=6)
