@@ -69,10 +69,8 @@ class Case:
     @cached_property
     def ledger(self) -> Ledger | None:
         """What everything brings and takes; None where there is no answer."""
-        try:
-            return ledger(self.scenario, self.outcome)
-        except ScenarioError:
-            return None
+        unanswered = str(self.outcome.reasons())
+        return None if unanswered else ledger(self.scenario, self.outcome)
 
     def results(self, most: int) -> list[str]:
         """Readouts worth a row: those with targets, then the usual ones that have a value."""

@@ -104,7 +104,7 @@ def _sections(case: Case, figures: Sequence[str], family: str) -> list[Section]:
         ("alarms", "What to look at"): [basis.alarms(case)],
         ("sweep", f"Along the {dial}"): [
             element("div", plots, class_="figures"),
-            element("p", _legend(spread), class_="small"),
+            element("p", _legend(case, spread), class_="small"),
             results.along_table(case),
         ],
         ("options", "Options, what differs"): _compared(case, [current, *option_cases(case.scenario)]),
@@ -137,9 +137,13 @@ def _compared(case: Case, cases: Sequence[Compared]) -> list[Part]:
     return [results.comparison(cases[1].kind, made, whole)]
 
 
-def _legend(spread: Tolerances) -> str:
-    band = " Grey band: 95 % of the outcomes within the entered tolerances." if spread.study else ""
-    return (
-        "Dotted line and ring: as it stands. Green between dashed lines: entered target; ◆ where it is"
-        f" crossed.{band} ▼ ▲ below or above the entered target."
-    )
+def _legend(case: Case, spread: Tolerances) -> str:
+    said = [
+        "Dotted line and ring: as it stands.",
+        "Green between dashed lines: entered target; ◆ where it is crossed.",
+        "Grey band: 95 % of the outcomes within the entered tolerances." if spread.study else "",
+        "Thin lines: options, by their letters." if case.scenario.options else "",
+        "× measured." if case.scenario.measured else "",
+        "▼ ▲ below or above the entered target.",
+    ]
+    return " ".join(filter(None, said))

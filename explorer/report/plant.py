@@ -8,6 +8,7 @@ from explorer.report.case import Case
 from explorer.report.entered import dose_text
 from explorer.report.markup import Markup, Part, element
 from explorer.report.tables import Row, table
+from explorer.scenario.errors import ScenarioError
 from explorer.scenario.readouts import MINUS, NO_VALUE, READOUTS, format_value
 from explorer.scenario.words import number_text, unit_text
 from explorer.studies.hand_checks import figure, hand_checks
@@ -100,7 +101,11 @@ def checks(case: Case) -> Markup | None:
 
 def amounts(case: Case) -> Iterator[Markup | None]:
     """Chemicals, pumps, solids and money."""
-    made = quantities(case.scenario)
+    try:
+        made = quantities(case.scenario)
+    except ScenarioError as error:
+        yield element("p", f"There are no quantities; {error}.")
+        return
     money = any(np.isfinite(dose.cost_per_ml) for dose in made.doses)
     currency = made.currency or "cost"
     heading = ["Chemical", "Dose", "Active, kg/d", "Product, kg/d", "t/year", "Pump, L/h", "Range, L/h"]

@@ -15,10 +15,14 @@ from explorer.scenario.model import Target
 from explorer.scenario.outcome import FINISHED
 from explorer.scenario.readouts import NO_VALUE, READOUTS, Readout, format_value, in_words, status
 from explorer.scenario.words import in_sentence, range_text, unit_text
-from explorer.studies.compare import Comparison
+from explorer.studies.compare import Comparison, current_case, option_cases, overlay
 from explorer.studies.hand_checks import figure
-from explorer.studies.pictures import Dots, Picture
-from explorer.studies.sweep_pictures import picture_of, picture_of_species
+from explorer.studies.pictures import Dots, Line, Picture
+from explorer.studies.sweep import Sweep
+from explorer.studies.sweep_pictures import picture_of, picture_of_species, with_options
+
+MOST_CURVES = 4
+"""Options drawn beside the scenario as it stands."""
 
 ABREAST, RESULTS = 5, 10
 """Places along the sweep that the table shows, and results at each."""
@@ -64,14 +68,26 @@ def _small(text: str) -> Markup | None:
 def figures(case: Case, keys: Sequence[str], family: str, spread: Tolerances) -> Iterator[Markup]:
     """One figure a readout, and that of the species after the first."""
     here = case.swept.dial.value
+    options = _options(case)
     for number, key in enumerate(keys):
         picture = picture_of(case.swept, key, case.scenario.targets)
+        picture = with_options(picture, key, options, None) if options else picture
         picture = replace(picture, fan=spread.fan(key, picture.x), dots=_dots(case, key))
         now = f"now {value_text(case.value(key), READOUTS[key])}"
         yield _figure(case, picture, plot(picture, case.along, here, f"plot-{key}"), now)
         if number == 0:
             picture = picture_of_species(case.swept, family, case.family_name(family))
             yield _figure(case, picture, plot(picture, case.along, here, "plot-species"))
+
+
+def _options(case: Case) -> list[tuple[Line, Sweep]]:
+    """The sweeps of the first kept options along the same dial, with the look of their curves."""
+    cases = [current_case(case.scenario), *option_cases(case.scenario)[:MOST_CURVES]]
+    return [
+        (Line(option.letter, np.array([]), place, place), swept)
+        for place, (option, swept) in enumerate(overlay(cases))
+        if option.letter
+    ]
 
 
 def _dots(case: Case, key: str) -> tuple[Dots, ...]:

@@ -85,7 +85,7 @@ def _with_room(picture: Picture) -> Picture:
 def _frame(picture: Picture) -> Frame:
     labels = [text for _, text in _ticks(picture.limits, 4)]
     left = 10 + LETTER * max(map(len, labels))
-    names = [len(line.name) for line in picture.lines]
+    names = [len(line.name) for line in (*picture.lines, *picture.others)]
     right = WIDTH - EDGE - LETTER * max(names, default=0)
     return Frame((float(picture.x[0]), float(picture.x[-1])), picture.limits, left, right)
 
@@ -155,9 +155,10 @@ def _gaps(picture: Picture, frame: Frame, name: str) -> Iterator[Markup]:
 
 def _curves(picture: Picture, frame: Frame, name: str) -> Markup:
     parts = [_area(picture.x, layer, frame) for layer in picture.fan]
-    for number, line in enumerate(picture.lines):
-        path = _path(picture.x, line.y, frame)
-        parts.append(element("path", class_="curve", d=path, **_look(number, line)))
+    for look, lines in (("option", picture.others), ("curve", picture.lines)):
+        for number, line in enumerate(lines):
+            path = _path(picture.x, line.y, frame)
+            parts.append(element("path", class_=look, d=path, **_look(number, line)))
     for dots in picture.dots:
         for x, y in zip(dots.x, dots.y, strict=True):
             if frame.x[0] <= x <= frame.x[1]:
@@ -230,7 +231,7 @@ def _here(picture: Picture, along: Axis, frame: Frame, here: float | None) -> It
 def _end_labels(picture: Picture, frame: Frame) -> Iterator[Markup]:
     """The names of the curves at their right ends, moved apart where they would meet."""
     ends = []
-    for number, line in enumerate(picture.lines):
+    for number, line in [*enumerate(picture.lines), *enumerate(picture.others)]:
         known = np.flatnonzero(np.isfinite(line.y))
         if line.name and known.size:
             end = float(np.clip(frame.up(line.y[known[-1]]), TOP, frame.bottom))

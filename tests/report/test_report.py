@@ -131,6 +131,16 @@ def test_figures_may_be_chosen(plant):
         report_html(plant({"river": 60, "well": 40}), family="iodine")
 
 
+def test_options_are_drawn_beside_the_scenario(shipped_report):
+    """In every figure of a readout, with a legend."""
+    page = tree(shipped_report("juniper"))
+    figures = [figure for figure in page.iter("figure") if "species" not in words(figure.find("figcaption"))]
+    for figure in figures:
+        assert [part.get("class") for part in figure.iter("path")].count("option") == 1
+        assert "A" in [words(part) for part in figure.iter("text")]
+    assert "Thin lines: options" in words(page.find(".//section[@id='sweep']"))
+
+
 def test_what_was_entered_is_echoed_with_its_basis(shipped_report):
     """Values and units as entered, the same in moles beside them; doses with what they are counted as."""
     page = tree(shipped_report("dune"))
@@ -239,13 +249,15 @@ def test_constants_name_their_sources_and_what_was_left_out(shipped_report):
 
 
 def test_a_point_without_an_answer_still_has_a_report(plant):
-    """The reason stands where results would be, and there is no number instead."""
-    scenario = plant({"river": 50, "well": 50})
-    scenario.water("river").share = scenario.water("well").share = 0
-    scenario.water("river").share = 100
-    page = tree(report_html(scenario))
-    assert sections(page)
-    silent = plant({"permeate": 100}, [plant.dosed("acid", "hydrochloric_acid", 1e6, "mg/L")])
-    page = tree(report_html(silent))
-    if str(evaluate(silent).reasons()):
-        assert "No result at this setting" in visible(page)
+    """The reason stands where the finding would be, and no result is a number."""
+    raw = plant.dict({"river": 60, "well": 40}, targets=[{"readout": "ph", "low": 7}])
+    del raw["flow"]
+    for water in raw["waters"]:
+        del water["share"]
+        water["flow"] = {"value": 0, "unit": "m³/h"}
+    page = tree(report_html(plant.read(raw)))
+    assert "No result at this setting: no water flows." in visible(page)
+    assert rows(page, "targets")[1][1] == "—" and rows(page, "targets")[1][-1] == "no value"
+    assert "There is no answer here, so there is no ledger." in visible(page)
+    assert {"stages", "tests", "method"} <= set(sections(page))
+    assert "results" not in sections(page)

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from explorer.report.svg import plot
-from explorer.studies.pictures import Dots, Layer, Quantity, axis, readout_picture, species_picture
+from explorer.studies.pictures import Dots, Layer, Line, Quantity, axis, readout_picture, species_picture
 from tests.report.conftest import tree, words
 
 X = np.linspace(0.0, 100.0, 101)
@@ -108,6 +108,17 @@ def test_the_axis_holds_the_whole_band_of_outcomes_and_the_measured_points():
     assert top <= min(heights) and max(heights) <= top + tall
     (cross,) = drawn(svg, "measured")
     assert top <= numbers(cross.get("d").split("l")[0])[1] + 3 <= top + tall
+
+
+def test_options_are_thinner_lines_with_their_letters():
+    """Each with a dash of its own, below the curve of the scenario as it stands."""
+    y = 8 - X / 100
+    others = (Line("A", y + 0.2, 1, 1), Line("B", y - 0.2, 2, 2))
+    svg = tree(plot(replace(picture(y), others=others), SHARE, 40.0, "one"))
+    looks = [part.get("class") for part in svg.iter("path") if part.get("class") in ("option", "curve")]
+    assert looks == ["option", "option", "curve"]
+    assert len({part.get("stroke-dasharray") for part in drawn(svg, "option")}) == 2
+    assert {"A", "B"} <= set(texts(svg))
 
 
 @pytest.mark.parametrize("y", [np.full(101, np.nan), np.where(X == 50, 8.0, np.nan)])
