@@ -262,7 +262,7 @@ export function render({ model, el }) {
     const below = window.innerHeight - from.bottom - 2 * GAP, above = from.top - 2 * GAP
     const wanted = Math.min(size.height, TALLEST)
     const up = wanted > below && above > below
-    const height = Math.min(wanted, Math.max(120, up ? above : below))
+    const height = Math.min(TALLEST, Math.max(120, up ? above : below))   // it may get longer while it is open
     sheet.style.maxHeight = `${height}px`
     // Held at the side of its button, so that a list that gets shorter stays there.
     sheet.style.top = up ? "auto" : `${from.bottom + GAP}px`

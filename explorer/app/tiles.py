@@ -8,10 +8,12 @@ from typing import Any
 
 import numpy as np
 
+from explorer.app.entry import Entries
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
 from explorer.app.options import difference, selected
 from explorer.app.state import Session
+from explorer.app.target_editor import TargetEditor, sheet_key
 from explorer.app.text import compact, plain, unit_text
 from explorer.scenario.model import Target
 from explorer.scenario.readouts import MINUS, READOUTS, Readout, format_value, status
@@ -80,6 +82,8 @@ class Tiles(LiveView):
 
     def __init__(self, session: Session, **settings: Any) -> None:
         self.session = session
+        self.entries = Entries()
+        self.editor = TargetEditor(session, self.entries, self._stay)
         self._limits: dict[str, Limits] = {}
         self._listed: list[str] = []
         self._list: list[Node] = []
@@ -126,7 +130,7 @@ class Tiles(LiveView):
         for name, lines in groups.items():
             columns[filled >= half].append(node("div", "", node("h3", text=name), *lines))
             filled += len(lines) + 1
-        hint = f"Choose {FEWEST} to {MOST} readouts"
+        hint = f"Choose {FEWEST} to {MOST} readouts; press a tile to enter its target"
         button = node(
             "button", "choose", text="⋮", key="choose-button", type="button", popovertarget="choose",
             title=hint, aria_label=hint, aria_haspopup="dialog", aria_expanded="false",
@@ -165,9 +169,18 @@ class Tiles(LiveView):
             node("div", "unit", text="" if percent else unit),
             self._gauge(key, value, band, readout),
             node("div", "foot-line", node("span", f"state {look}", text=state), self._change(readout, value)),
+            self._edit(readout, f"{readout.label}: {text} {unit}, {state}"),
             _tip(readout, targets, at_right),
-            key=f"tile:{key}", tabindex="0", role="group",
-            aria_label=f"{readout.label}: {text} {unit}, {state}",
+            self.editor.sheet(readout),
+            key=f"tile:{key}", role="group", aria_label=f"{readout.label}: {text} {unit}, {state}",
+        )  # fmt: skip
+
+    def _edit(self, readout: Readout, said: str) -> Node:
+        """The tile as a button that opens its target."""
+        return node(
+            "button", "edit", key=f"edit:{readout.key}", type="button", popovertarget=sheet_key(readout),
+            on=self.editor.opened, aria_label=f"{said}. Edit the target", aria_haspopup="dialog",
+            aria_expanded="false",
         )  # fmt: skip
 
     def _change(self, readout: Readout, value: float) -> Node | None:
@@ -208,6 +221,11 @@ class Tiles(LiveView):
         needle.properties["--at"] = f"{places.at or 0.0:.1f}%"
         return node("div", "gauge", target, needle, aria_hidden="true")
 
+    def _stay(self) -> None:
+        """Make the default choice, which follows the targets, the user's own."""
+        if not self.session.choices.get("tiles"):
+            self.session.choose(tiles=self.chosen)
+
     def _want(self) -> None:
         self.session.want("tiles", self.chosen)
 
@@ -215,6 +233,7 @@ class Tiles(LiveView):
         names = {event.name for event in events}
         if "structure" in names:
             self._limits.clear()
+            self.entries.forget(standing=self)
         if names & {"structure", "choices"}:
             self._want()
         self.refresh()
