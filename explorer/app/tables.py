@@ -76,7 +76,11 @@ def _cell(tag: str, part: Cell, side: str, **properties: Any) -> Node:
 
 
 def csv_button(
-    session: Session, what: str, rows: Callable[[], Iterable[Sequence[Any]]], key: str = "csv"
+    session: Session,
+    what: str,
+    rows: Callable[[], Iterable[Sequence[Any]]],
+    key: str = "csv",
+    text: str = "Save as CSV",
 ) -> Node:
     """The button that lets a table be saved; ``what`` names it, ``rows`` are its lines, the heading first."""
 
@@ -87,6 +91,4 @@ def csv_button(
         session.offer(file_name(f"{session.scenario.title} {what}", "csv"), csv_text(rows()))
 
     hint = f"Save the {what} as CSV, for a spreadsheet"
-    return node(
-        "button", "button", text="Save as CSV", key=key, type="button", title=hint, aria_label=hint, on=save
-    )
+    return node("button", "button", text=text, key=key, type="button", title=hint, aria_label=hint, on=save)

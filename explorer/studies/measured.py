@@ -175,6 +175,16 @@ class Comparison:
     def _known(self) -> np.ndarray:
         return self.difference[np.isfinite(self.difference)]
 
+    def brief(self) -> str:
+        """Number of points, bias and scatter in a few words."""
+        count = f"{self.x.size} measured"
+        if not self.count:
+            return f"{count}, no answer of the model"
+        readout = READOUTS[self.readout]
+        side = "above" if self.bias > 0 else "below"
+        spread = "" if self.count < 2 else f", scatter {format_value(self.scatter, readout)}"
+        return f"{count}, model {format_value(abs(self.bias), readout)} {side}{spread}"
+
     def sentence(self) -> str:
         """The comparison in one sentence."""
         readout = READOUTS[self.readout]
