@@ -29,7 +29,8 @@ def waters(case: Case) -> Iterator[Markup | None]:
     every = case.scenario.waters
     for first in range(0, len(every), ABREAST):
         some = every[first : first + ABREAST]
-        yield table("source-waters", ["", *(water.title for water in some)], _water_rows(case, some))
+        heading = ["", *(water.title for water in some)]
+        yield table("source-waters", heading, _water_rows(case, some), look="named")
     marks = "In brackets: the same in mmol/L, alkalinity in meq/L. † assumed, not measured."
     yield element("p", marks, class_="small")
     remarks = list(_remarks(case))

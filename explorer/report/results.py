@@ -158,7 +158,7 @@ def comparison(name: str, made: Comparison, whole: Comparison) -> Markup | None:
     if any(problems):
         rows.append(["Answer", *problems])
     heading = ["", *([case.title, _small(case.note)] for case in made.cases)]
-    return table(name, heading, rows, full=whole.table())
+    return table(name, heading, rows, look="named", full=whole.table())
 
 
 def everything(case: Case) -> Iterator[Part]:

@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from explorer.report.markup import Markup, element, joined
-from explorer.scenario.words import number_text
+from explorer.scenario.words import number_text, plain
 from explorer.studies.axes import Limits, nice_step, outward
 from explorer.studies.pictures import Axis, Layer, Line, Mark, Picture
 
@@ -16,6 +16,9 @@ TOP, BOTTOM, EDGE = 16.0, 36.0, 14.0
 
 LETTER, LINE = 5.7, 11.5
 """Usual width of a letter and height of a line of the 10.5 px type."""
+
+LONGEST = 44
+"""Letters of the name of the dial below the axis."""
 
 COLOURS = ("#0b6e69", "#b84f00", "#6a3f95", "#0062a0", "#a8497d", "#7a5900", "#3a3f44", "#6b5d4f")
 """Apart for colour-blind readers in this order; each line has a dash and a label of its own as well."""
@@ -139,7 +142,7 @@ def _axes(picture: Picture, along: Axis, frame: Frame) -> Iterator[Markup]:
         yield _rule(frame.across(value), frame.bottom, frame.across(value), frame.bottom + 3, "axis")
         yield _text(text, frame.across(value), frame.bottom + 14, "middle")
     yield _rule(frame.left, frame.bottom, frame.right, frame.bottom, "axis")
-    label = f"{along.name}, {along.unit}" if along.unit else along.name
+    label = plain(along.name, LONGEST) + (f", {along.unit}" if along.unit else "")
     yield _text(label, (frame.left + frame.right) / 2, HEIGHT - 7, "middle")
 
 
@@ -207,7 +210,7 @@ def _marks(marks: Sequence[Mark], frame: Frame) -> Iterator[Markup]:
 
 def _inside(x: float, text: str, frame: Frame) -> float:
     """A place for the middle of a text that keeps it within the plot."""
-    half = LETTER * len(text) / 2
+    half = 0.62 * LETTER * len(text)
     return float(np.clip(x, frame.left + half, max(frame.left + half, WIDTH - half)))
 
 
