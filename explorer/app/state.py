@@ -148,6 +148,18 @@ class Session(param.Parameterized):
         self.calculate(keeps_curve)
         return ""
 
+    def turn_along(self, x: float) -> None:
+        """The operating point was moved to ``x`` of a plot over the swept dial: turn the dial to the nearest
+        step within its bounds."""
+        if self.swept is None:
+            return
+        dial = self.swept.dial
+        value = round(round(x / dial.step) * dial.step, 10)
+        value = max(value, dial.low) if dial.high is None else min(max(value, dial.low), dial.high)
+        refused = self.turn(dial.address, value)
+        if refused:
+            self.message = refused
+
     def edit(
         self, label: str, change: Change, key: str = "", rebuild: bool = True, together: bool = False
     ) -> str:

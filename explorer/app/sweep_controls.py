@@ -8,9 +8,15 @@ from explorer.app.choosers import default_range, dial_picker, range_fields
 from explorer.app.entry import Entries, show_number
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
+from explorer.app.measured_panel import MeasuredPanel
+from explorer.app.meeting import in_meeting
+from explorer.app.pickers import segments
+from explorer.app.plot_heads import readout_choice
 from explorer.app.state import Session
 from explorer.app.text import plain, unit_text
 from explorer.scenario.dials import Dial
+from explorer.scenario.readouts import READOUTS
+from explorer.scenario.words import brief_label
 from explorer.studies.sweep import Sweep
 
 
@@ -33,17 +39,27 @@ def _range_of(swept: Sweep | None) -> tuple[str, float, float]:
     return ("", 0.0, 0.0) if swept is None else (swept.address, float(swept.x[0]), float(swept.x[-1]))
 
 
+PLOTS = ("ph", "species", "buffer", "chosen")
+"""Plots in reading order; the second column carries the labels of the species at its right."""
+
+
+def large_plot(session: Session) -> str:
+    """The plot that the meeting view shows."""
+    chosen = session.choices.get("large")
+    return chosen if chosen in PLOTS else PLOTS[0]
+
+
 class SweepControls(LiveView):
-    """Changes the sweep of the scenario."""
+    """Changes the sweep of the scenario, and the points measured along it."""
 
-    css = VIEW_STYLES
+    css = (*VIEW_STYLES, "measured.css")
 
-    def __init__(self, session: Session, **settings: Any) -> None:
-        self.session = session
+    def __init__(self, session: Session, measured: MeasuredPanel, **settings: Any) -> None:
+        self.session, self.measured = session, measured
         self.entries = Entries()
         self._shown = (gap_words(session.swept), *_range_of(session.swept))
         super().__init__(sizing_mode="stretch_width", **settings)
-        session.param.watch(self._changed, ["structure", "scenario", "swept"])
+        session.param.watch(self._changed, ["structure", "scenario", "swept", "choices"])
         self.refresh()
 
     def describe(self) -> Node:
@@ -51,12 +67,31 @@ class SweepControls(LiveView):
             self.session, "dial", self._swept_dial(), self._choose_dial, "The dial along the x axis"
         )
         return node(
-            "div", "controls",
+            "div", "controls", *self._plots(),
             node("div", "group", node("span", text="Sweep"), *dial),
             *self._range(),
             node("span", text=self._rule()),
             node("span", "gap", text=self._shown[0], role="status"),
+            node("span", "push"), *self.measured.nodes(),
         )  # fmt: skip
+
+    def _plots(self) -> list[Node]:
+        """Which plot is shown, where it is only one."""
+        session = self.session
+        if not in_meeting(session):
+            return []
+        names = {
+            "ph": "pH",
+            "species": "Species",
+            "buffer": "Buffer",
+            "chosen": brief_label(READOUTS[readout_choice(session)]),
+        }
+        words = {name: (names[name], f"Show the plot of {names[name]}") for name in PLOTS}
+        return [
+            segments(
+                "large", "Plot shown", words, large_plot(session), lambda name: session.choose(large=name)
+            )
+        ]
 
     # ---- the dial on x and its range -----------------------------------------------------------------
 

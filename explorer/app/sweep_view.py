@@ -2,9 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+
+import numpy as np
 import panel as pn
 
-from explorer.app.look import PLOT_CARD_CSS, PLOT_GRID_CSS, VIEW_HOST_CSS, Palette
+from explorer.app.look import MEETING_SCALE, PLOT_CARD_CSS, PLOT_GRID_CSS, VIEW_HOST_CSS, Palette
+from explorer.app.measured_panel import Against, Comparisons, MeasuredPanel
+from explorer.app.meeting import in_meeting
 from explorer.app.options import option_curves
 from explorer.app.plot_heads import (
     Head,
@@ -16,13 +21,13 @@ from explorer.app.plot_heads import (
 )
 from explorer.app.plots import LinkedPlots
 from explorer.app.state import Session
-from explorer.app.sweep_controls import SweepControls
+from explorer.app.sweep_controls import PLOTS, SweepControls, large_plot
 from explorer.app.view import View
+from explorer.scenario.model import MeasuredPoints
+from explorer.scenario.outcome import FINISHED
+from explorer.scenario.words import in_sentence
 from explorer.studies.pictures import Axis, Memory, Picture
 from explorer.studies.sweep_pictures import picture_of, picture_of_species, swept_axis, with_options
-
-PLOTS = ("ph", "species", "buffer", "chosen")
-"""Plots in reading order; the second column carries the labels of the species at its right."""
 
 
 class SweepView(View):
@@ -32,20 +37,24 @@ class SweepView(View):
 
     def __init__(self, session: Session) -> None:
         super().__init__(session)
-        self.controls = SweepControls(session)
-        self.plots = LinkedPlots(list(PLOTS), self._turned)
+        self.comparisons = Comparisons(session, self._compared)
+        measured = MeasuredPanel(session, self.comparisons, self._against, self._sets)
+        self.controls = SweepControls(session, measured)
+        self.plots = LinkedPlots(list(PLOTS), session.turn_along)
         kinds = {"species": SpeciesHead, "chosen": ReadoutHead}
         self.heads: dict[str, Head] = {name: kinds.get(name, Head)(session) for name in PLOTS}
         self._memory = Memory()
-        cards = [
-            pn.Column(
+        self.cards = {
+            name: pn.Column(
                 self.heads[name],
                 pn.pane.Bokeh(plot.figure, sizing_mode="stretch_both", margin=0),
                 sizing_mode="stretch_both", margin=0, css_classes=["plot"], stylesheets=[PLOT_CARD_CSS],
             )
             for name, plot in self.plots.plots.items()
-        ]  # fmt: skip
-        grid = pn.Column(*cards, sizing_mode="stretch_both", margin=0, stylesheets=[PLOT_GRID_CSS])
+        }  # fmt: skip
+        grid = pn.Column(
+            *self.cards.values(), sizing_mode="stretch_both", margin=0, stylesheets=[PLOT_GRID_CSS]
+        )
         self.view = pn.Column(
             self.controls, grid, sizing_mode="stretch_both", margin=0, stylesheets=[VIEW_HOST_CSS]
         )
@@ -82,7 +91,8 @@ class SweepView(View):
 
     def _readout(self, key: str) -> Picture:
         targets, previous = self.session.scenario.targets, self._memory.limits.get(key)
-        picture = picture_of(self.session.swept, key, targets, previous)
+        dots = self.comparisons.dots(self._placed(), key)
+        picture = picture_of(self.session.swept, key, targets, previous, dots)
         curves = option_curves(self.session)
         if curves:
             picture = with_options(picture, key, curves, previous)
@@ -96,27 +106,52 @@ class SweepView(View):
         picture = picture_of_species(self.session.swept, family, name, logarithmic, previous)
         return self._memory.keep(slot, picture)
 
+    def _arrange(self) -> None:
+        """All plots, or in the meeting view the chosen one, large."""
+        large = large_plot(self.session) if in_meeting(self.session) else ""
+        for name, card in self.cards.items():
+            card.visible = large in ("", name)
+        self.plots.enlarge(MEETING_SCALE if large else 1.0)
+
     def _want(self) -> None:
         self.session.want("sweep", ["ph", "buffer_intensity", readout_choice(self.session)])
-
-    def _turned(self, x: float) -> None:
-        """The operating point was moved to ``x``: turn the dial to its nearest step within its bounds."""
-        swept = self.session.swept
-        if swept is None:
-            return
-        dial = swept.dial
-        value = round(round(x / dial.step) * dial.step, 10)
-        value = max(value, dial.low) if dial.high is None else min(max(value, dial.low), dial.high)
-        refused = self.session.turn(swept.address, value)
-        if refused:
-            self.session.message = refused
 
     def follow(self, changed: set[str]) -> None:
         self._want()
         if "structure" in changed:
             self._memory.limits.clear()
+        if "choices" in changed:
+            self._arrange()
         if changed & {"swept", "point", "choices", "kept"}:
             self.show()
+        if "point" in changed:
+            self.comparisons.follow()
         if changed & {"structure", "choices"}:
             for head in self.heads.values():
                 head.refresh()
+
+    # ---- measured points -----------------------------------------------------------------------------
+
+    def _placed(self) -> Iterator[tuple[MeasuredPoints, np.ndarray]]:
+        """Sets of measured points that belong to the sweep, with their dial values."""
+        session = self.session
+        ends = {FINISHED, session.point.stages[-1].id}
+        for part in session.solved.measured:
+            if part.dial == session.swept.address and part.stage in ends:
+                yield part, np.array([pair[0] for pair in part.points], float)
+
+    def _sets(self) -> list[MeasuredPoints]:
+        return [part for part, _ in self._placed()] if self.session.swept is not None else []
+
+    def _against(self) -> Against | None:
+        swept = self.session.swept
+        if swept is None:
+            return None
+        along = swept_axis(swept)
+        unit = f", {along.unit}" if along.unit else ""
+        return Against({"dial": swept.address}, f"{in_sentence(along.name)}{unit}")
+
+    def _compared(self) -> None:
+        self.controls.refresh()
+        if self.is_open:
+            self.show()

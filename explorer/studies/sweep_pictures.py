@@ -11,6 +11,7 @@ from explorer.scenario.words import compact, plain, unit_text
 from explorer.studies.axes import Limits, steady_limits
 from explorer.studies.pictures import (
     Axis,
+    Dots,
     Line,
     Missing,
     Picture,
@@ -39,8 +40,15 @@ def quantity_of(readout: Readout) -> Quantity:
     )
 
 
-def picture_of(swept: Sweep, key: str, targets: Sequence[Target], previous: Limits | None = None) -> Picture:
-    """A readout along a sweep, with those of the ``targets`` that are of it. ``previous``: limits in use."""
+def picture_of(
+    swept: Sweep,
+    key: str,
+    targets: Sequence[Target],
+    previous: Limits | None = None,
+    dots: Sequence[Dots] = (),
+) -> Picture:
+    """A readout along a sweep, with those of the ``targets`` that are of it, and the measured ``dots``.
+    ``previous``: limits in use."""
     readout = READOUTS[key]
     return readout_picture(
         quantity_of(readout),
@@ -51,6 +59,7 @@ def picture_of(swept: Sweep, key: str, targets: Sequence[Target], previous: Limi
         missing(swept, key),
         previous,
         readout.slack,
+        dots,
     )
 
 
