@@ -34,15 +34,20 @@ def default_range(dial: Dial) -> tuple[float, float]:
 
 
 def dial_picker(
-    session: Session, key: str, chosen: Dial | None, choose: Callable[[str], object], title: str
+    session: Session,
+    key: str,
+    chosen: Dial | None,
+    choose: Callable[[str], object],
+    title: str,
+    label: str = "Choose a dial ▾",
 ) -> list[Node]:
-    """A button with the chosen dial on it, and the searchable list of all dials."""
+    """A button with the chosen dial on it, else the ``label``, and the searchable list of all dials."""
     groups: dict[str, list[Choice]] = {}
     for dial in session.dials.values():
         line = Choice(dial.address, plain(dial.label, 90), unit_text(dial.unit), dial.address)
         groups.setdefault(plain(dial.group, 60), []).append(line)
-    label = plain(chosen.label, 60) if chosen else "Choose a dial"
-    return picker(key, f"{label} ▾", groups, choose, look="button", hint="Search dials", title=title)
+    shown = f"{plain(chosen.label, 60)} ▾" if chosen else label
+    return picker(key, shown, groups, choose, look="button", hint="Search dials", title=title)
 
 
 def readout_picker(

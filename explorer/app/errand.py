@@ -169,7 +169,7 @@ def progress(errand: Errand, again: Callable[[], None], what: str) -> Node:
         stop = _button("stop", "Stop", errand.stop)
         return node("span", "errand", bar, stop)
     if errand.stopped:
-        words = node("span", text="Stopped: coarse.", role="status")
+        words = node("span", text="Stopped.", role="status")
         return node("span", "errand", words, _button("again", "Go on", again))
     if errand.refusal:
         return node("span", "errand", node("span", "message", text=errand.refusal, role="alert"))

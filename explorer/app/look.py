@@ -213,10 +213,10 @@ MAP_GRID_CSS = """
 
 SPREAD_GRID_CSS = """
 :host { display: grid !important; grid-template-columns: minmax(0, 1.35fr) minmax(0, 1fr); gap: 10px;
-  grid-template-rows: minmax(230px, 46%) minmax(250px, 1fr); margin-top: 9px !important; min-height: 0;
+  grid-template-rows: minmax(230px, 46%) max-content; margin-top: 9px !important; min-height: 0;
   overflow-y: auto; scrollbar-width: thin; }
 @media (max-width: 759px) {
-  :host { grid-template-columns: minmax(0, 1fr); grid-template-rows: 260px 240px auto auto; }
+  :host { grid-template-columns: minmax(0, 1fr); grid-template-rows: 260px 240px max-content max-content; }
 }
 """
 

@@ -32,6 +32,8 @@ class Kind:
 KINDS = (
     Kind("sweep", "Sweep", "sweep_view", "SweepView"),
     Kind("window", "Window", "window_view", "WindowView"),
+    Kind("tolerance", "Tolerance", "tolerance_view", "ToleranceView"),
+    Kind("titration", "Titration", "titration_view", "TitrationView"),
     Kind("ledger", "Ledger", "ledger_view", "LedgerView"),
 )  # fmt: skip
 """Views in the order of their tabs; the first is open at first."""

@@ -134,10 +134,3 @@ class WindowChoices:
             dial for dial in self.session.dials.values() if other is None or dial.address != other.address
         ]
         return min(rest, key=rank, default=None)
-
-
-def at_step(dial: Dial, value: float) -> float:
-    """The nearest step of a dial to a place that was pointed at, within the limits of the dial."""
-    value = round(round(value / dial.step) * dial.step, 10)
-    value = max(value, dial.low) if dial.bounded else value
-    return value if dial.high is None else min(value, dial.high)

@@ -7,17 +7,19 @@ from typing import Any
 
 import panel as pn
 
-from explorer.app.choosers import dial_picker, range_fields, readout_picker
+from explorer.app.choosers import dial_picker, range_fields
 from explorer.app.entry import Entries
-from explorer.app.errand import REST, Errand, progress
+from explorer.app.errand import REST, Errand
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import MAP_GRID_CSS, PLOT_CARD_CSS, STUDY_STYLES, VIEW_HOST_CSS, Palette
+from explorer.app.pointing import at_step
 from explorer.app.state import Session
+from explorer.app.study_head import StudyHead
 from explorer.app.text import plain
 from explorer.app.view import View
 from explorer.app.window_drawing import Drawing, drawing
 from explorer.app.window_plot import WindowPlot
-from explorer.app.window_setting import Setting, WindowChoices, at_step
+from explorer.app.window_setting import DEFAULT_READOUT, Setting, WindowChoices
 from explorer.scenario.dials import turn_together
 from explorer.scenario.model import Scenario
 from explorer.studies.progress import Watch
@@ -65,35 +67,6 @@ class WindowControls(LiveView):
             self.choices.choose(**side)
         else:
             self.choices.swap()
-
-
-class MapHead(LiveView):
-    """Above the map: what the contours are of, how much of the map meets all targets, how far a map is."""
-
-    css = STUDY_STYLES
-
-    def __init__(self, view: WindowView, **settings: Any) -> None:
-        self.owner = view
-        super().__init__(sizing_mode="stretch_width", **settings)
-
-    def describe(self) -> Node:
-        setting, drawn = self.owner.choices.setting(), self.owner.drawn
-        if setting is None:
-            return node("div", "head")
-        pick = readout_picker(
-            "readout", setting.readout, lambda key: self.owner.choices.choose(readout=key),
-            "Choose what the contours are of", look="pick",
-        )  # fmt: skip
-        words = ""
-        if drawn is not None:
-            unit = drawn.picture.quantity.unit
-            words = f"contours{f', {unit}' if unit else ''}"
-            if drawn.found.targets:
-                words += f" · all targets met on {percent_text(drawn.picture.met.part)} of the map"
-        return node(
-            "div", "head", *pick, node("span", "note", text=words, title=words),
-            progress(self.owner.errand, self.owner.again, "Progress of the map"),
-        )  # fmt: skip
 
 
 class MapLegend(LiveView):
@@ -146,7 +119,7 @@ class MapLegend(LiveView):
         )  # fmt: skip
 
 
-NO_TARGETS = "No targets are entered, so nothing on the map can miss one."
+NO_TARGETS = "No targets are entered, so nothing on the map can miss one. Press a readout tile above to enter its target."
 
 
 class WindowView(View):
@@ -162,7 +135,11 @@ class WindowView(View):
         self._asked = ""
         self.controls = WindowControls(session, self.choices)
         self.plot = WindowPlot(self.set_dials)
-        self.head, self.legend = MapHead(self), MapLegend(self)
+        self.legend = MapLegend(self)
+        self.head = StudyHead(
+            self.errand, self._readout, lambda key: self.choices.choose(readout=key), self._note, self.again,
+            "Choose what the contours are of",
+        )  # fmt: skip
         self.card = pn.Column(
             self.head,
             pn.pane.Bokeh(self.plot.figure, sizing_mode="stretch_both", margin=0),
@@ -174,7 +151,7 @@ class WindowView(View):
         self.view = pn.Column(
             self.controls, grid, sizing_mode="stretch_both", margin=0, stylesheets=[VIEW_HOST_CSS]
         )
-        self.errand.param.watch(self._told, ["busy", "part", "stopped", "refusal"])
+        self.errand.param.watch(lambda *events: self._dim(), ["busy", "refusal"])
 
     def restyle(self, palette: Palette) -> None:
         super().restyle(palette)
@@ -249,9 +226,18 @@ class WindowView(View):
         self.head.refresh()
         self._dim()
 
-    def _told(self, *events: Any) -> None:
-        self.head.refresh()
-        self._dim()
+    def _readout(self) -> str:
+        setting = self.choices.setting()
+        return DEFAULT_READOUT if setting is None else setting.readout
+
+    def _note(self) -> str:
+        if self.drawn is None:
+            return ""
+        picture = self.drawn.picture
+        words = f"contours, {picture.quantity.unit}" if picture.quantity.unit else "contours"
+        if self.drawn.found.targets:
+            words += f" · all targets met on {percent_text(picture.met.part)} of the map"
+        return words
 
     def _dim(self) -> None:
         """A map that is not of what the session shows is dimmed."""
