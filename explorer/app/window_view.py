@@ -119,7 +119,7 @@ class MapLegend(LiveView):
         )  # fmt: skip
 
 
-NO_TARGETS = "No targets are entered, so nothing on the map can miss one. Press a readout tile above to enter its target."
+NO_TARGETS = "Nothing on the map can miss a target: none is entered. Press a tile above to enter one."
 
 
 class WindowView(View):
