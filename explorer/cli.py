@@ -5,8 +5,6 @@ report are imported only by the commands that need them, so that ``solve`` start
 """
 
 import argparse
-import csv
-import io
 import json
 import os
 import sys
@@ -18,6 +16,7 @@ import numpy as np
 
 from explorer import cli_spread, cli_studies
 from explorer.cli_parts import UsageError, aligned, entered, number, opened, scenario_arguments
+from explorer.scenario.csv_text import csv_text
 from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import Outcome, Stage, evaluate
 from explorer.scenario.files import open_scenario
@@ -165,12 +164,11 @@ def _sweep(options: argparse.Namespace) -> None:
     if options.csv is None:
         print("\n".join(_swept_text(swept, readouts)))
         return
-    text = io.StringIO()
-    csv.writer(text, lineterminator="\n").writerows(swept.table(readouts))
+    text = csv_text(swept.table(readouts))
     if options.csv == "-":
-        sys.stdout.write(text.getvalue())
+        sys.stdout.write(text)
     else:
-        Path(options.csv).write_text(text.getvalue(), encoding="utf-8")
+        Path(options.csv).write_text(text, encoding="utf-8")
 
 
 def _check(options: argparse.Namespace) -> None:

@@ -1,7 +1,6 @@
 """Commands of the studies of two dials and of tolerances: window, tolerance, allowed."""
 
 import argparse
-import csv
 import json
 import sys
 from collections.abc import Callable, Iterator
@@ -10,6 +9,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from explorer.cli_parts import aligned, entered, number, opened, scenario_arguments
+from explorer.scenario.csv_text import csv_text
 from explorer.scenario.model import Target
 from explorer.scenario.readouts import MINUS, READOUTS, format_value
 
@@ -88,7 +88,7 @@ def _window(options: argparse.Namespace) -> None:
     if options.json:
         print(json.dumps(made.to_dict(), ensure_ascii=False))
     elif options.csv:
-        csv.writer(sys.stdout, lineterminator="\n").writerows(made.table())
+        sys.stdout.write(csv_text(made.table()))
     else:
         print("\n".join(_window_text(made)))
 
@@ -105,7 +105,7 @@ def _tolerance(options: argparse.Namespace) -> None:
         [*_keys(options.readouts), *ranked], options.season, dials, options.samples, options.seed,
     )  # fmt: skip
     if options.csv:
-        csv.writer(sys.stdout, lineterminator="\n").writerows(made.table())
+        sys.stdout.write(csv_text(made.table()))
         return
     ends = {key: extremes(scenario, key, options.season, dials) for key in made.here.values}
     others = {dial: value for dial, value in dials.items() if dial != made.dial.address}

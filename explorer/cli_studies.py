@@ -1,7 +1,6 @@
 """Commands of the studies: ledger, titrate, compare, quantities."""
 
 import argparse
-import csv
 import json
 import sys
 from collections.abc import Callable, Iterator, Sequence
@@ -10,6 +9,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from explorer.cli_parts import UsageError, aligned, entered, number, opened, pair, scenario_arguments
+from explorer.scenario.csv_text import csv_text
 from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import evaluate
 from explorer.scenario.readouts import MINUS, NO_VALUE, READOUTS, format_value
@@ -85,7 +85,7 @@ def _print(options: argparse.Namespace, made: Any, text: Iterator[str]) -> None:
     if options.json:
         print(json.dumps(made.to_dict(), ensure_ascii=False, indent=2))
     elif getattr(options, "csv", False):
-        csv.writer(sys.stdout, lineterminator="\n").writerows(made.table())
+        sys.stdout.write(csv_text(made.table()))
     else:
         print("\n".join(text))
 

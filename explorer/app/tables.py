@@ -86,9 +86,9 @@ def csv_button(
 
     def save(value: Any) -> None:
         # Imported late: a page that saves nothing needs no report.
-        from explorer.report.tables import csv_text
+        from explorer.scenario.csv_text import BYTE_ORDER_MARK, csv_text
 
-        session.offer(file_name(f"{session.scenario.title} {what}", "csv"), csv_text(rows()))
+        session.offer(file_name(f"{session.scenario.title} {what}", "csv"), BYTE_ORDER_MARK + csv_text(rows()))
 
     hint = f"Save the {what} as CSV, for a spreadsheet"
     return node("button", "button", text=text, key=key, type="button", title=hint, aria_label=hint, on=save)

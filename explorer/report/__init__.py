@@ -10,14 +10,13 @@ from datetime import datetime
 
 from explorer.report.case import Case
 from explorer.report.page import page
-from explorer.report.tables import csv_text
 from explorer.scenario.embedded import read_embedded
 from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.files import write_text
 from explorer.scenario.model import Scenario
 from explorer.scenario.readouts import READOUTS
 
-__all__ = ["csv_text", "read_embedded", "report_html", "write_report"]
+__all__ = ["read_embedded", "report_html", "write_report"]
 
 
 def report_html(

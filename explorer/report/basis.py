@@ -10,24 +10,13 @@ from explorer.report.markup import Markup, Part, element
 from explorer.report.tables import Group, Row, table, unit_cell
 from explorer.scenario.readouts import NO_VALUE, READOUTS, format_value
 from explorer.scenario.version import method
-from explorer.scenario.words import formula_text, number_text, short_number
+from explorer.scenario.words import number_text, short_number
 from explorer.studies.basis import assumptions, provenance
 from explorer.studies.cautions import EXCLUDED, hazards, next_tests, standing_cautions
+from explorer.studies.methods import METHOD, VALIDITY, reaction_text
 from explorer.treatment.analysis import Balance
 
 LEVELS = {"error": "✕", "caution": "▲", "info": "i"}
-
-PROSE = (
-    "Mixing and dosing conserve alkalinity, inorganic carbon, every element and heat; these totals are"
-    " carried through the plant. Wherever a result is asked for, they are brought to equilibrium: a damped"
-    " Newton iteration over all components with ion pairs, activity coefficients by Davies, and constants at"
-    " the temperature of the water. pH is minus log10 of the activity of H+.",
-    "Solids and air take part only in steps that say so. The precipitation potential is the way to calcite"
-    " equilibrium in closed water. Chlorine and ammonia react to the end of their stoichiometry. A rest of"
-    " charge in an analysis stays as it is and does not touch the pH.",
-    "Valid for 0 to 60 °C, pH 4 to 11.5 and ionic strength to about 0.1 mol/L, a guide to 0.5; not for"
-    " seawater and not for boilers.",
-)
 
 
 def alarms(case: Case) -> Markup | None:
@@ -128,7 +117,7 @@ def _balance(balance: Balance) -> str:
 
 def method_text(case: Case) -> Iterator[Markup]:
     """How it was calculated, within which limits."""
-    for paragraph in PROSE:
+    for paragraph in (*METHOD, VALIDITY):
         yield element("p", paragraph)
     strengths = [float(stage.readout("ionic_strength")) for stage in case.outcome.stages]
     known = [strength for strength in strengths if np.isfinite(strength)]
@@ -150,7 +139,7 @@ def constants(case: Case) -> Markup | None:
     if left:
         rows += [
             Group("Left out"),
-            *([_reaction(one), NO_VALUE, NO_VALUE, one.note or one.source] for one in left),
+            *([reaction_text(one), NO_VALUE, NO_VALUE, one.note or one.source] for one in left),
         ]
     heading = ["Reaction", *(_at(celsius) for celsius in (25.0, temperature)), "Source"]
     return table("constants", heading, rows, left=(0, 3), look="dense")
@@ -181,7 +170,7 @@ def _constant(constant: Constant, temperature: float) -> Row:
     at = float(log_k([constant], temperature)[0])
     memory = "" if constant.confidence == "verified" else " (from memory)"
     return [
-        _reaction(constant),
+        reaction_text(constant),
         number_text(constant.log_k25, 3),
         number_text(at, 3),
         [
@@ -189,7 +178,3 @@ def _constant(constant: Constant, temperature: float) -> Row:
             element("small", constant.note, class_="under") if constant.note else None,
         ],
     ]
-
-
-def _reaction(constant: Constant) -> str:
-    return " ".join(formula_text(word) if len(word) > 1 else word for word in constant.text.split(" "))

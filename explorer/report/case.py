@@ -11,7 +11,7 @@ from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import Outcome, evaluate
 from explorer.scenario.model import Scenario, SideStreamStep, Step
 from explorer.scenario.readouts import READOUTS, Readout, format_value, in_words
-from explorer.studies.alarms import alarms
+from explorer.studies.alarms import alarms, place_of
 from explorer.studies.finding import finding
 from explorer.studies.ledger import Ledger, ledger
 from explorer.studies.pictures import Axis
@@ -96,9 +96,7 @@ class Case:
 
     def place_of(self, where: str) -> str:
         """Name of what a note or address is about; "" where it has none."""
-        names = {stage.id: stage.name for stage in self.outcome.stages}
-        names |= {"finished": "Finished water", "blend": "Blend"}
-        return next((names[part] for part in where.split(".") if part in names), "")
+        return place_of(self.outcome, where)
 
     def family_name(self, family: str) -> str:
         """Printed name of a family of species. Raises ScenarioError for one that is not known."""

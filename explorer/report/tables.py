@@ -1,22 +1,18 @@
 """Tables of the report, and the same as CSV."""
 
-import csv
 import html
-import io
 import re
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from urllib.parse import quote
 
 from explorer.report.markup import Markup, Part, element, joined
-from explorer.scenario.readouts import MINUS
+from explorer.scenario.csv_text import BYTE_ORDER_MARK, csv_text
 from explorer.scenario.words import unit_text
 
 Row = Sequence[Part]
 
-_NUMBER = re.compile(rf"[-+{MINUS}]?(\d+\.?\d*|\.\d+)([eE][-+]?\d+)?")
 _TAGS = re.compile(r"<[^<>]*>")
-_FORMULA = ("=", "+", "-", "@", "\t", "\r")
 
 
 @dataclass(frozen=True)
@@ -85,26 +81,7 @@ def _bare(part: Part) -> str:
 
 
 def _download(name: str, rows: Sequence[Sequence[object]]) -> Markup:
-    link = f"data:text/csv;charset=utf-8,{quote(csv_text(rows))}"
+    link = f"data:text/csv;charset=utf-8,{quote(BYTE_ORDER_MARK + csv_text(rows))}"
     return element(
         "a", "CSV", href=link, download=f"{name}.csv", class_="csv", title="This table for a spreadsheet"
     )
-
-
-def csv_text(rows: Iterable[Sequence[object]]) -> str:
-    """Rows as CSV (RFC 4180, with a byte order mark for spreadsheets).
-
-    None is an empty cell. A text that a spreadsheet would take for a formula gets an apostrophe before it;
-    numbers stay numbers, with a plain minus.
-    """
-    text = io.StringIO()
-    csv.writer(text, lineterminator="\r\n").writerows([_cell(value) for value in row] for row in rows)
-    return "\ufeff" + text.getvalue()
-
-
-def _cell(value: object) -> object:
-    if not isinstance(value, str):
-        return value
-    if _NUMBER.fullmatch(value.strip()):
-        return value.strip().replace(MINUS, "-")
-    return f"'{value}" if value.startswith(_FORMULA) else value
