@@ -168,7 +168,7 @@ def _sweep(options: argparse.Namespace) -> None:
     if options.csv == "-":
         sys.stdout.write(text)
     else:
-        Path(options.csv).write_text(text, encoding="utf-8")
+        Path(options.csv).write_text(text, encoding="utf-8", newline="")
 
 
 def _check(options: argparse.Namespace) -> None:

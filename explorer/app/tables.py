@@ -9,6 +9,7 @@ from typing import Any
 from explorer.app.files import file_name
 from explorer.app.live_view import Node, node
 from explorer.app.state import Session
+from explorer.scenario.csv_text import BYTE_ORDER_MARK, csv_text
 
 Cell = str | Node | None
 """What stands in a cell: a text, a node of its own, or nothing."""
@@ -85,10 +86,8 @@ def csv_button(
     """The button that lets a table be saved; ``what`` names it, ``rows`` are its lines, the heading first."""
 
     def save(value: Any) -> None:
-        # Imported late: a page that saves nothing needs no report.
-        from explorer.scenario.csv_text import BYTE_ORDER_MARK, csv_text
-
-        session.offer(file_name(f"{session.scenario.title} {what}", "csv"), BYTE_ORDER_MARK + csv_text(rows()))
+        name = file_name(f"{session.scenario.title} {what}", "csv")
+        session.offer(name, BYTE_ORDER_MARK + csv_text(rows()))
 
     hint = f"Save the {what} as CSV, for a spreadsheet"
     return node("button", "button", text=text, key=key, type="button", title=hint, aria_label=hint, on=save)

@@ -15,13 +15,13 @@ _FORMULA = ("=", "+", "-", "@", "\t", "\r")
 
 
 def csv_text(rows: Iterable[Sequence[object]]) -> str:
-    """Rows as CSV (RFC 4180, but for line feeds at the ends of lines).
+    """Rows as CSV (RFC 4180).
 
     None is an empty cell. A text that a spreadsheet would take for a formula gets an apostrophe before it;
     numbers stay numbers, with a plain minus.
     """
     text = io.StringIO()
-    csv.writer(text, lineterminator="\n").writerows([_cell(value) for value in row] for row in rows)
+    csv.writer(text, lineterminator="\r\n").writerows([_cell(value) for value in row] for row in rows)
     return text.getvalue()
 
 
