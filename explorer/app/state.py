@@ -153,10 +153,7 @@ class Session(param.Parameterized):
         step within its bounds."""
         if self.swept is None:
             return
-        dial = self.swept.dial
-        value = round(round(x / dial.step) * dial.step, 10)
-        value = max(value, dial.low) if dial.high is None else min(max(value, dial.low), dial.high)
-        refused = self.turn(dial.address, value)
+        refused = self.turn(self.swept.address, self.swept.dial.nearest(x))
         if refused:
             self.message = refused
 

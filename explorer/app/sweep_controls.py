@@ -7,12 +7,13 @@ from typing import Any
 from explorer.app.choosers import default_range, dial_picker, range_fields
 from explorer.app.entry import Entries, show_number
 from explorer.app.live_view import LiveView, Node, node
-from explorer.app.look import VIEW_STYLES
+from explorer.app.look import STUDY_STYLES
 from explorer.app.measured_panel import MeasuredPanel
 from explorer.app.meeting import in_meeting
 from explorer.app.pickers import segments
 from explorer.app.plot_heads import readout_choice
 from explorer.app.state import Session
+from explorer.app.sweep_band import SweepBand
 from explorer.app.text import plain, unit_text
 from explorer.scenario.dials import Dial
 from explorer.scenario.readouts import READOUTS
@@ -52,34 +53,35 @@ def large_plot(session: Session) -> str:
 class SweepControls(LiveView):
     """Changes the sweep of the scenario, and the points measured along it."""
 
-    css = (*VIEW_STYLES, "measured.css")
+    css = (*STUDY_STYLES, "measured.css")
 
-    def __init__(self, session: Session, measured: MeasuredPanel, **settings: Any) -> None:
-        self.session, self.measured = session, measured
+    def __init__(self, session: Session, measured: MeasuredPanel, band: SweepBand, **settings: Any) -> None:
+        self.session, self.measured, self.band = session, measured, band
         self.entries = Entries()
         self._shown = (gap_words(session.swept), *_range_of(session.swept))
         super().__init__(sizing_mode="stretch_width", **settings)
-        session.param.watch(self._changed, ["structure", "scenario", "swept", "choices"])
         self.refresh()
 
     def describe(self) -> Node:
         dial = dial_picker(
             self.session, "dial", self._swept_dial(), self._choose_dial, "The dial along the x axis"
         )
+        if in_meeting(self.session):
+            return node(
+                "div", "controls", self._plots(), node("span", "gap", text=self._shown[0], role="status")
+            )
         return node(
-            "div", "controls", *self._plots(),
+            "div", "controls",
             node("div", "group", node("span", text="Sweep"), *dial),
             *self._range(),
             node("span", text=self._rule()),
             node("span", "gap", text=self._shown[0], role="status"),
-            node("span", "push"), *self.measured.nodes(),
+            node("span", "push"), *self.band.nodes(self.entries), *self.measured.nodes(),
         )  # fmt: skip
 
-    def _plots(self) -> list[Node]:
+    def _plots(self) -> Node:
         """Which plot is shown, where it is only one."""
         session = self.session
-        if not in_meeting(session):
-            return []
         names = {
             "ph": "pH",
             "species": "Species",
@@ -87,11 +89,9 @@ class SweepControls(LiveView):
             "chosen": brief_label(READOUTS[readout_choice(session)]),
         }
         words = {name: (names[name], f"Show the plot of {names[name]}") for name in PLOTS}
-        return [
-            segments(
-                "large", "Plot shown", words, large_plot(session), lambda name: session.choose(large=name)
-            )
-        ]
+        return segments(
+            "large", "Plot shown", words, large_plot(session), lambda name: session.choose(large=name)
+        )
 
     # ---- the dial on x and its range -----------------------------------------------------------------
 
@@ -131,12 +131,12 @@ class SweepControls(LiveView):
             else "· the other water takes the rest"
         )
 
-    def _changed(self, *events: Any) -> None:
-        names = {event.name for event in events}
-        if "structure" in names:
+    def follow(self, changed: set[str]) -> None:
+        """Show the session as it is now; ``changed``: its parameters that have changed."""
+        if "structure" in changed:
             self.entries.forget()
         shown = (gap_words(self.session.swept), *_range_of(self.session.swept))
         # The list of dials is long: a sweep that only has other results must not build it again.
-        if shown != self._shown or names != {"swept"}:
+        if shown != self._shown or changed & {"structure", "scenario", "choices"}:
             self._shown = shown
             self.refresh()

@@ -21,6 +21,7 @@ from explorer.app.plot_heads import (
 )
 from explorer.app.plots import LinkedPlots
 from explorer.app.state import Session
+from explorer.app.sweep_band import SweepBand
 from explorer.app.sweep_controls import PLOTS, SweepControls, large_plot
 from explorer.app.view import View
 from explorer.scenario.model import MeasuredPoints
@@ -33,13 +34,14 @@ from explorer.studies.sweep_pictures import picture_of, picture_of_species, swep
 class SweepView(View):
     """Control row and plots."""
 
-    watched = ("swept", "point", "choices", "structure", "kept")
+    watched = ("swept", "point", "choices", "structure", "scenario", "kept")
 
     def __init__(self, session: Session) -> None:
         super().__init__(session)
-        self.comparisons = Comparisons(session, self._compared)
+        self.comparisons = Comparisons(session, self._added)
         measured = MeasuredPanel(session, self.comparisons, self._against, self._sets)
-        self.controls = SweepControls(session, measured)
+        self.band = SweepBand(session, self._added)
+        self.controls = SweepControls(session, measured, self.band)
         self.plots = LinkedPlots(list(PLOTS), session.turn_along)
         kinds = {"species": SpeciesHead, "chosen": ReadoutHead}
         self.heads: dict[str, Head] = {name: kinds.get(name, Head)(session) for name in PLOTS}
@@ -66,6 +68,7 @@ class SweepView(View):
     def closed(self) -> None:
         super().closed()
         self.session.want("sweep", ())
+        self.band.rest()
 
     def show(self) -> None:
         """Bring the plots to the session's sweep."""
@@ -93,6 +96,7 @@ class SweepView(View):
         targets, previous = self.session.scenario.targets, self._memory.limits.get(key)
         dots = self.comparisons.dots(self._placed(), key)
         picture = picture_of(self.session.swept, key, targets, previous, dots)
+        picture = self.band.drawn(picture, key, previous)
         curves = option_curves(self.session)
         if curves:
             picture = with_options(picture, key, curves, previous)
@@ -113,11 +117,13 @@ class SweepView(View):
             card.visible = large in ("", name)
         self.plots.enlarge(MEETING_SCALE if large else 1.0)
 
-    def _want(self) -> None:
-        self.session.want("sweep", ["ph", "buffer_intensity", readout_choice(self.session)])
+    def _drawn(self) -> tuple[str, ...]:
+        """Readouts that are drawn."""
+        return "ph", "buffer_intensity", readout_choice(self.session)
 
     def follow(self, changed: set[str]) -> None:
-        self._want()
+        self.session.want("sweep", self._drawn())
+        self.band.follow(self._drawn())
         if "structure" in changed:
             self._memory.limits.clear()
         if "choices" in changed:
@@ -126,6 +132,7 @@ class SweepView(View):
             self.show()
         if "point" in changed:
             self.comparisons.follow()
+        self.controls.follow(changed)
         if changed & {"structure", "choices"}:
             for head in self.heads.values():
                 head.refresh()
@@ -151,7 +158,8 @@ class SweepView(View):
         unit = f", {along.unit}" if along.unit else ""
         return Against({"dial": swept.address}, f"{in_sentence(along.name)}{unit}")
 
-    def _compared(self) -> None:
+    def _added(self) -> None:
+        """There are measured points or bands to be drawn with the curves."""
         self.controls.refresh()
         if self.is_open:
             self.show()

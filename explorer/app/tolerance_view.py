@@ -15,7 +15,6 @@ from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import PLOT_CARD_CSS, SPREAD_GRID_CSS, STUDY_STYLES, VIEW_HOST_CSS, Palette
 from explorer.app.pickers import segments
 from explorer.app.plots import LinkedPlots
-from explorer.app.pointing import turn_swept
 from explorer.app.state import Session
 from explorer.app.study_head import StudyHead
 from explorer.app.tolerance_results import Figures, RankingBars
@@ -124,7 +123,7 @@ class ToleranceView(View):
         self._asked = ""
         self._memory = Memory()
         self._limits: dict[str, Limits] = {}
-        self.plots = LinkedPlots((FAN,), lambda x: turn_swept(session, x), columns=1)
+        self.plots = LinkedPlots((FAN,), session.turn_along, columns=1)
         self.histogram = DistributionPlot()
         self.controls = ToleranceControls(self)
         self.head = StudyHead(

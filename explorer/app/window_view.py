@@ -12,7 +12,6 @@ from explorer.app.entry import Entries
 from explorer.app.errand import REST, Errand
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import MAP_GRID_CSS, PLOT_CARD_CSS, STUDY_STYLES, VIEW_HOST_CSS, Palette
-from explorer.app.pointing import at_step
 from explorer.app.state import Session
 from explorer.app.study_head import StudyHead
 from explorer.app.text import plain
@@ -188,7 +187,7 @@ class WindowView(View):
             return
 
         sides = ((setting.x, x), (setting.y, y))
-        values = {dial.address: at_step(dial, place) for dial, place in sides}
+        values = {dial.address: dial.nearest(place) for dial, place in sides}
 
         def change(scenario: Scenario) -> None:
             turn_together(scenario, values)

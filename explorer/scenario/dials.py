@@ -67,6 +67,13 @@ class Dial:
         return within & (values >= self.low) if self.bounded else within
 
 
+    def nearest(self, value: float) -> float:
+        """The step within the limits that is nearest to a place that was pointed at."""
+        value = round(round(value / self.step) * self.step, 10)
+        value = max(value, self.low) if self.bounded else value
+        return value if self.high is None else min(value, self.high)
+
+
 def dials(scenario: Scenario, season: str | None = None) -> dict[str, Dial]:
     """Every dial by address. ``season`` chooses the analyses; the scenario's own where it is None."""
     every = {dial.address: dial for dial in _walk(scenario, scenario.season if season is None else season)}

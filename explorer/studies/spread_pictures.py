@@ -46,12 +46,9 @@ def with_fan(picture: Picture, layers: Sequence[Layer], previous: Limits | None 
     """A picture of a readout with a fan, all of it inside its limits. ``previous``: limits in use."""
     if not layers:
         return picture
-    everything = np.concatenate([line.y for line in picture.lines] + [layer.low for layer in layers]
-                                + [layer.high for layer in layers])  # fmt: skip
-    bounds = [bound for bound in picture.band or () if bound is not None]
-    finite = np.abs(everything[np.isfinite(everything)])
-    least = least_span(picture.digits, float(finite.max()) if finite.size else 1.0)
-    limits = steady_limits(everything, previous, least, bounds)
+    ends = [end for layer in layers for end in (layer.low, layer.high)]
+    everything = np.concatenate([np.array(picture.limits), *ends])
+    limits = steady_limits(everything, previous, picture.limits[1] - picture.limits[0])
     widest = layers[0]
     words = f"{picture.words} {widest.percent:g} % of the outcomes lie within a band around it."
     return replace(picture, fan=tuple(layers), limits=limits, words=words)
