@@ -11,7 +11,7 @@ import numpy as np
 from explorer.app.live_view import Node, node
 from explorer.app.pickers import segments
 from explorer.app.sheet import SheetView
-from explorer.app.tables import Group, Row, csv_button, table
+from explorer.app.tables import Group, Row, csv_button, over, table
 from explorer.app.text import plain, unit_text
 from explorer.scenario.errors import ScenarioError
 from explorer.scenario.words import number_text
@@ -113,7 +113,7 @@ class LedgerView(SheetView):
 def _heading(column: Column, per: str) -> Node:
     unit = unit_text(column.unit)
     unit = unit.replace("mg/L", "kg/d") if per == DAY else unit
-    return node("span", "", node("span", text=plain(column.label, 40)), node("small", text=unit))
+    return over(plain(column.label, 40), unit)
 
 
 def _manner(line: Line) -> tuple[bool, str]:

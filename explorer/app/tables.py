@@ -76,6 +76,11 @@ def _cell(tag: str, part: Cell, side: str, **properties: Any) -> Node:
     return node(tag, side, text=part or "", **properties)
 
 
+def over(title: str, unit: str) -> Node:
+    """A heading with the unit of its column below it."""
+    return node("span", "", node("span", text=title), node("small", text=unit))
+
+
 def csv_button(
     session: Session,
     what: str,

@@ -35,6 +35,7 @@ KINDS = (
     Kind("tolerance", "Tolerance", "tolerance_view", "ToleranceView"),
     Kind("titration", "Titration", "titration_view", "TitrationView"),
     Kind("ledger", "Ledger", "ledger_view", "LedgerView"),
+    Kind("basis", "Basis", "basis_view", "BasisView"),
 )  # fmt: skip
 """Views in the order of their tabs; the first is open at first."""
 

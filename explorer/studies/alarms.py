@@ -9,7 +9,7 @@ from explorer.scenario.alarms.finding import COMMON_PRACTICE
 from explorer.scenario.alarms.water import NEAR_SATURATION
 from explorer.scenario.evaluate import Outcome
 from explorer.scenario.model import Scenario
-from explorer.scenario.outcome import FINISHED
+from explorer.scenario.outcome import BLEND, FINISHED
 from explorer.scenario.readouts import READOUTS, format_value, in_words
 from explorer.studies.sweep import Sweep
 from explorer.treatment.notes import Note
@@ -80,3 +80,9 @@ def _at(sweep: Sweep, x: float) -> str:
     if label[1:2].islower():
         label = label[0].lower() + label[1:]
     return f"{label} {x:.3g} {sweep.dial.unit}".rstrip()
+
+
+def place_of(outcome: Outcome, where: str) -> str:
+    """Name of the stage that a note or an address is about; "" where it is about none."""
+    names = {stage.id: stage.name for stage in outcome.stages} | {FINISHED: "Finished water", BLEND: "Blend"}
+    return next((names[part] for part in where.split(".") if part in names), "")
