@@ -7,6 +7,7 @@ from collections.abc import Sequence
 from typing import Any
 
 import numpy as np
+from bokeh.core.properties import value
 from bokeh.models import (
     BasicTicker,
     BoxAnnotation,
@@ -33,6 +34,9 @@ from explorer.app.look import (
 from explorer.app.plot_parts import in_page, lettered, pointer_line, put, ticks
 from explorer.studies.pictures import Axis, Band, Dots, Layer, Picture
 
+SMALL, USUAL = 11, 12
+"""Texts of a plot, pixels: at axes and marks; names and values of curves."""
+
 
 class LinePlot:
     """One figure, built once; :meth:`show` changes columns and ranges only."""
@@ -46,6 +50,7 @@ class LinePlot:
         self._band: Band | None = None
         self.y_range = Range1d(0, 1)
         self.has_x_label = x_label
+        self._right = 74 if labels_right else 28
         self.lines = ColumnDataSource(
             data={
                 key: []
@@ -73,7 +78,7 @@ class LinePlot:
             min_height=120,
             min_border_left=54,
             min_border_top=6,
-            min_border_right=74 if labels_right else 28,
+            min_border_right=self._right,
             min_border_bottom=26,
             output_backend="canvas",
             html_attributes={"role": "img", "aria-label": self.name},
@@ -159,7 +164,7 @@ class LinePlot:
         self.end = lettered(
             fig,
             self.ends,
-            size=12,
+            size=USUAL,
             text_color="colour",
             x_offset=7,
             text_baseline="middle",
@@ -179,7 +184,7 @@ class LinePlot:
         self.label = lettered(
             fig,
             self.labels,
-            size=12,
+            size=USUAL,
             text_color="colour",
             text_font_style="bold",
             x_offset="dx",
@@ -215,6 +220,29 @@ class LinePlot:
             if getattr(self.figure.xaxis[0].axis_label, "text", None) != label:
                 self.figure.xaxis[0].axis_label = PlainText(label)
         self.figure.html_attributes = {"role": "img", "aria-label": picture.words}
+
+    def enlarge(self, scale: float, x_label: bool) -> None:
+        """Texts, lines and marks so many times their usual size, with or without the label of the x axis."""
+        for text, size in (
+            (self.gap_text, SMALL),
+            (self.crossing_text, SMALL),
+            (self.end, USUAL),
+            (self.label, USUAL),
+        ):
+            text.glyph.text_font_size = value(f"{size * scale:g}px")
+        for axis in (*self.figure.xaxis, *self.figure.yaxis):
+            axis.major_label_text_font_size = f"{SMALL * scale:g}px"
+            axis.axis_label_text_font_size = f"{11.5 * scale:g}px"
+        self.curve.glyph.line_width = LINE_WIDTH * scale
+        self.other.glyph.line_width = THIN_LINE_WIDTH * scale
+        self.ring.glyph.update(size=9 * scale, line_width=LINE_WIDTH * scale)
+        self.figure.update(
+            min_border_left=round(54 * scale), min_border_right=round(self._right * scale),
+            min_border_bottom=round(26 * scale),
+        )  # fmt: skip
+        self.has_x_label = x_label
+        if not x_label:
+            self.figure.xaxis[0].axis_label = None
 
     def restyle(self, palette: Palette) -> None:
         """Take the colours of another palette."""

@@ -111,6 +111,9 @@ DASHES: tuple[list[int], ...] = (
 """Dash of the n-th line of a plot, in pixels on and off; [] is solid."""
 
 LINE_WIDTH = 2.2
+MEETING_SCALE = 1.5
+"""Texts and lines of plots in the meeting view."""
+
 THIN_LINE_WIDTH = 1.2
 """Of curves beside the main ones."""
 
@@ -184,12 +187,13 @@ VIEW_HOST_CSS = ":host { min-height: 0 !important; height: 100%; }"
 """For a view that fills the place under the verdict and shrinks with it."""
 
 PLOT_GRID_CSS = """
-:host { display: grid !important; grid-template-columns: repeat(2, minmax(0, 1fr));
+:host { display: grid !important; grid-template-columns: var(--plot-columns, repeat(2, minmax(0, 1fr)));
   /* the lower row carries the axis label */
-  grid-template-rows: calc(50% - 15px) calc(50% + 5px); gap: 10px; margin-top: 9px !important;
-  min-height: 0; }
+  grid-template-rows: var(--plot-rows, calc(50% - 15px) calc(50% + 5px)); gap: 10px;
+  margin-top: 9px !important; min-height: 0; }
 @media (max-width: 759px) {
-  :host { grid-template-columns: minmax(0, 1fr); grid-template-rows: repeat(4, minmax(0, 1fr)); }
+  :host { grid-template-columns: minmax(0, 1fr);
+    grid-template-rows: var(--plot-rows, repeat(4, minmax(0, 1fr))); }
 }
 """
 

@@ -20,6 +20,8 @@ from explorer.studies.pictures import Axis, Picture
 
 _SCRIPT = script("numbers.js", "sweep.js")
 
+POINT_WIDTH = 1.6
+
 
 class LinkedPlots:
     """Several :class:`LinePlot` over one x axis, crosshair and operating point, in reading order.
@@ -43,7 +45,7 @@ class LinkedPlots:
             dimension="height",
             location=0,
             editable=turned is not None,
-            line_width=1.6,
+            line_width=POINT_WIDTH,
             line_dash=[2, 3],
             level="annotation",
         )
@@ -55,6 +57,8 @@ class LinkedPlots:
             )
             for index, name in enumerate(names)
         }  # fmt: skip
+        self.scale = 1.0
+        self._lowest = names[-columns:]
         self._quiet = False
         self.point.on_change("location", self._moved)
         self._wire()
@@ -96,12 +100,21 @@ class LinkedPlots:
     def set_axis(self, along: Axis) -> None:
         """Decimals and unit of the places the page prints; short units stand behind every tick, too."""
         unit = along.unit
-        if self.point.tags != [along.digits, unit]:
-            self.point.tags = [along.digits, unit]
+        if self.point.tags != [along.digits, unit, self.scale]:
+            self.point.tags = [along.digits, unit, self.scale]
         after = f" {unit}" if unit in {"%", "°C", "°F"} else ""
         for plot in self.plots.values():
             if plot.figure.xaxis[0].formatter.args["after"] != after:
                 plot.figure.xaxis[0].formatter = ticks(after)
+
+    def enlarge(self, scale: float) -> None:
+        """Texts and lines so many times their usual size; enlarged plots all carry the axis label."""
+        if scale == self.scale:
+            return
+        self.scale = scale
+        self.point.line_width = POINT_WIDTH * scale
+        for name, plot in self.plots.items():
+            plot.enlarge(scale, name in self._lowest or scale > 1)
 
     def set_point(self, x: float, step: float) -> None:
         """Move the operating point unless it is there already, to within half a step of the dial."""

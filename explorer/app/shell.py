@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from typing import Any
 
 import panel as pn
 from panel.theme.native import Native
@@ -10,6 +11,7 @@ from panel.theme.native import Native
 from explorer.app.bar import Bar
 from explorer.app.files import FileDesk, example_titles
 from explorer.app.look import FOLDER, THEMES, Palette, page_css
+from explorer.app.meeting import MeetingSwitch, Strip, in_meeting
 from explorer.app.options import Options
 from explorer.app.rail import Rail
 from explorer.app.runner import Conflate
@@ -40,6 +42,10 @@ class Shell:
         self.message = Message(session)
         self.views = ViewTabs(session)
         self.foot = Foot(session)
+        self.meeting = MeetingSwitch(session)
+        self.strip = Strip(session)
+        session.param.watch(self._meet, "choices")
+        self._meet()
         self.template = self._page()
 
     @property
@@ -49,6 +55,8 @@ class Shell:
             "bar": self.bar,
             "files": self.files,
             "theme": self.theme,
+            "meeting": self.meeting,
+            "strip": self.strip,
             "rail": self.rail.view,
             "message": self.message,
             "tiles": self.tiles,
@@ -56,6 +64,13 @@ class Shell:
             "views": self.views.view,
             "foot": self.foot,
         }
+
+    def _meet(self, *events: Any) -> None:
+        """In the meeting view the sweep is open, and its plots are large."""
+        meeting = in_meeting(self.session)
+        if meeting and self.views.shown != "sweep":
+            self.views.open("sweep")
+        self.views.bar.visible = not meeting
 
     def _page(self) -> pn.Template:
         markup = (FOLDER / "page.html").read_text(encoding="utf-8")

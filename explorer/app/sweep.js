@@ -37,7 +37,7 @@ function settle(labels, gap, low, high) {
   }
   return labels
 }
-const [place_digits, place_unit] = point.tags.length ? point.tags : [0, ""]
+const [place_digits, place_unit, scale] = point.tags.length ? point.tags : [0, "", 1]
 const column = (items, key) => items.map((item) => item[key])
 
 function draw() {
@@ -76,14 +76,14 @@ function draw() {
       y: low, colour: part.axis.major_label_text_color,
       text: number(where, place_digits, 0, false) + (place_unit ? " " + place_unit : ""),
     })
-    settle(labels, 19 * pixel, low + 9 * pixel, low + span - 9 * pixel)
-    settle(ends, 15 * pixel, low, low + span)
+    settle(labels, 19 * scale * pixel, low + 9 * scale * pixel, low + span - 9 * scale * pixel)
+    settle(ends, 15 * scale * pixel, low, low + span)
     part.rings.data = { x: column(rings, "x"), y: column(rings, "y"), colour: column(rings, "colour") }
     part.labels.data = {
       x: labels.map(() => where), y: column(labels, "at"), text: column(labels, "text"), colour: column(labels, "colour"),
       dx: labels.map(() => left ? -9 : 9),
       // A single value stands clear of its curve: above it, or below where there is no room.
-      dy: labels.map((item) => several || item.y === low ? 0 : item.y > low + 0.88 * span ? 14 : -14),
+      dy: labels.map((item) => several || item.y === low ? 0 : item.y > low + 0.88 * span ? 14 * scale : -14 * scale),
       align: labels.map(() => left ? "right" : "left"),
     }
     part.ends.data = {
