@@ -237,6 +237,7 @@ class LinePlot:
         self.other.glyph.line_width = THIN_LINE_WIDTH * scale
         self.ring.glyph.update(size=9 * scale, line_width=LINE_WIDTH * scale)
         self.figure.update(
+            min_border_top=round(6 * scale),
             min_border_left=round(54 * scale), min_border_right=round(self._right * scale),
             min_border_bottom=round(26 * scale),
         )  # fmt: skip

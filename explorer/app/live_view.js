@@ -263,12 +263,13 @@ export function render({ model, el }) {
     const wanted = Math.min(size.height, TALLEST)
     const up = wanted > below && above > below
     const height = Math.min(TALLEST, Math.max(120, up ? above : below))   // it may get longer while it is open
-    sheet.style.maxHeight = `${height}px`
+    const pixels = (length) => `${length / (sheet.currentCSSZoom ?? 1)}px`   // measured on the screen, set inside of the zoom
+    sheet.style.maxHeight = pixels(height)
     // Held at the side of its button, so that a list that gets shorter stays there.
-    sheet.style.top = up ? "auto" : `${from.bottom + GAP}px`
-    sheet.style.bottom = up ? `${window.innerHeight - from.top + GAP}px` : "auto"
+    sheet.style.top = up ? "auto" : pixels(from.bottom + GAP)
+    sheet.style.bottom = up ? pixels(window.innerHeight - from.top + GAP) : "auto"
     const left = sheet.dataset.side === "left" ? from.left : from.right - size.width
-    sheet.style.left = `${Math.min(Math.max(GAP, left), window.innerWidth - size.width - GAP)}px`
+    sheet.style.left = pixels(Math.min(Math.max(GAP, left), window.innerWidth - size.width - GAP))
     sheet.dataset.placed = ""
     // A search field takes the focus by itself when its sheet opens, before this: typing may have begun.
     if (!sheet.querySelector("[data-filter]")) sheet.querySelector("button")?.focus()
