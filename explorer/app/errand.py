@@ -14,7 +14,7 @@ import panel as pn
 import param
 
 from explorer.app.live_view import Node, node
-from explorer.app.runner import on_page
+from explorer.app.runner import on_page, page_is_there
 from explorer.studies.progress import Stopped, Watch
 
 logger = logging.getLogger(__name__)
@@ -117,6 +117,8 @@ class Errand(param.Parameterized):
         self._finish(order, refusal)
 
     async def _run(self, order: _Order, rest: float) -> None:
+        if not await page_is_there(self._document):
+            return
         await asyncio.sleep(rest)
         order.began = time.monotonic()
         refusal = ""

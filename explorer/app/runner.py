@@ -14,12 +14,14 @@ from typing import Any
 
 from bokeh.document import Document
 from panel.io.document import hold
-from panel.io.state import set_curdoc
+from panel.io.state import set_curdoc, state
 
 logger = logging.getLogger(__name__)
 
 POOL = ThreadPoolExecutor(max_workers=2, thread_name_prefix="solve")
 """Shared by all tabs of the server; NumPy lets two calculations overlap."""
+
+LOADING_SECONDS = 60.0
 
 
 @contextmanager
@@ -31,6 +33,23 @@ def on_page(document: Document | None) -> Iterator[None]:
     """
     with set_curdoc(document), hold(document):
         yield
+
+
+async def page_is_there(document: Document | None) -> bool:
+    """Wait until the browser has the page: what changes while it is under way never arrives there.
+
+    False when nobody has come for it.
+    """
+    if document is None:
+        return True
+    there = asyncio.Event()
+    with set_curdoc(document):
+        state.onload(there.set)
+    try:
+        await asyncio.wait_for(there.wait(), LOADING_SECONDS)
+    except TimeoutError:
+        return False
+    return True
 
 
 class Conflate:
@@ -65,6 +84,8 @@ class Conflate:
             (compute, apply), self._next = self._next, None
             try:
                 result = await asyncio.get_running_loop().run_in_executor(self._pool, compute)
+                if not await page_is_there(self._document):
+                    return
                 with on_page(self._document):
                     apply(result)
             except Exception:
