@@ -21,6 +21,9 @@ from explorer.studies.finding import swept_name
 MOST_CHIPS = 4
 """More seasons or options than this are chosen from a list instead of chips."""
 
+_RENAME = "rename:"
+"""Begins the question for the name of an option."""
+
 
 class Chips:
     """One group of chips. ``asking`` is the question that stands in their place, "" for none; ``changed`` is
@@ -160,17 +163,34 @@ class OptionChips(Chips):
     def nodes(self) -> Node:
         """The group as it stands now."""
         if self.asking == "keep":
-            return self.group(*self.name_field("option:new", "Name of the option", self._wish(), self._keep))
-        if self.asking == "rename" and self.chosen is not None:
-            return self.group(
-                *self.name_field("option:name", "Name of the option", self.chosen.name, self._rename)
-            )
-        keep = node(
+            return self.group(*self.keeping())
+        if self.renamed is not None:
+            return self.group(*self.renaming())
+        chosen = self.chosen
+        more = [] if chosen is None else self.more(chosen)
+        return self.group(*self._choices(), *more, *self.keeping())
+
+    def keeping(self) -> list[Node]:
+        """The button that keeps an option, or the field that asks for its name."""
+        if self.asking == "keep":
+            return self.name_field("option:new", "Name of the option", self._wish(), self._keep)
+        return [node(
             "button", "chip keep", node("span", text="+ Keep"), node("span", "long", text="as option"),
             key="option:keep", type="button", on=lambda value: self.ask("keep"), aria_label="Keep as option",
             title="Keep everything as it stands, to compare with and to come back to",
-        )  # fmt: skip
-        return self.group(*self._choices(), *self._more(), keep)
+        )]  # fmt: skip
+
+    @property
+    def renamed(self) -> Option | None:
+        """The option whose name is being asked for."""
+        asked = self.asking.removeprefix(_RENAME)
+        options = self.scenario.options if asked != self.asking else []
+        return next((option for option in options if option.name == asked), None)
+
+    def renaming(self) -> list[Node]:
+        """The field that asks for another name of an option."""
+        old = self.renamed.name
+        return self.name_field("option:name", "Name of the option", old, lambda new: self._rename(old, new))
 
     def _choices(self) -> list[Node]:
         kept = dict(zip(LETTERS, self.scenario.options, strict=False))
@@ -188,20 +208,19 @@ class OptionChips(Chips):
             for letter, option in kept.items()
         ]  # fmt: skip
 
-    def _more(self) -> list[Node]:
-        option = self.chosen
-        if option is None:
-            return []
+    def more(self, option: Option, key: str = "option") -> list[Node]:
+        """The menu of one option; ``key``: of the menu on the page."""
         name, away = option.name, hidden(self.session)
-        title = plain(f"{LETTERS[self.scenario.options.index(option) % len(LETTERS)]} {name}", 40)
+        letter = LETTERS[self.scenario.options.index(option) % len(LETTERS)]
+        title = plain(f"{letter} {name}", 40)
         shown = name not in away
         acts = [
             Act("back", f"Go back to {title}", lambda: self._return(name)),
             Act("line", "Hide its curve" if shown else "Show its curve", lambda: self._show(name, not shown)),
-            Act("rename", "Rename", self.asker("rename")),
+            Act("rename", "Rename", self.asker(f"{_RENAME}{name}")),
             Act("drop", "Delete", lambda: self._drop(name), danger=True),
         ]
-        return menu("option", f"More for option {title}", acts)
+        return menu(key, f"More for option {title}", acts)
 
     def _wish(self) -> str:
         """A name to start from: where the swept dial stands."""
@@ -226,14 +245,14 @@ class OptionChips(Chips):
             self.session.choose(option=name)
         return refusal
 
-    def _rename(self, new: str) -> str:
-        old = self.chosen.name if self.chosen is not None else ""
+    def _rename(self, old: str, new: str) -> str:
         refusal = self.session.edit(
             f"Rename {plain(old, 30)}", lambda scenario: options.rename_option(scenario, old, new)
         )
         if not refusal:
             away = [new if name == old else name for name in hidden(self.session)]
-            self.session.choose(option=new, hidden=away)
+            chosen = self.session.choices.get("option")
+            self.session.choose(option=new if chosen == old else chosen, hidden=away)
         return refusal
 
     def _drop(self, name: str) -> None:

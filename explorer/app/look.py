@@ -224,6 +224,14 @@ SPREAD_GRID_CSS = """
 }
 """
 
+COMPARE_GRID_CSS = """
+:host { display: grid !important; grid-template-columns: minmax(0, 1.3fr) minmax(0, 1fr); gap: 10px;
+  grid-template-rows: minmax(0, 1fr); margin-top: 9px !important; min-height: 0; }
+@media (max-width: 1099px) {
+  :host { grid-template-columns: minmax(0, 1fr); grid-template-rows: minmax(0, 1.2fr) minmax(0, 1fr); }
+}
+"""
+
 PLOT_CARD_CSS = """
 :host { background: var(--card); border: 1px solid var(--line); border-radius: 7px; overflow: hidden;
   min-height: 0; transition: opacity .2s; }

@@ -25,6 +25,15 @@ class Sheet(LiveView):
         return self._describe()
 
 
+class Strip(Sheet):
+    """A row of controls over the parts of a view."""
+
+    css: ClassVar[tuple[str, ...]] = (*VIEW_STYLES, "measured.css", "study.css")
+
+    def __init__(self, describe: Callable[[], Node], **settings: Any) -> None:
+        super().__init__(describe, **({"sizing_mode": "stretch_width"} | settings))
+
+
 class SheetView(View):
     """A view that is a :class:`Sheet` and nothing else; a subclass says in :meth:`describe` what is on it."""
 

@@ -27,7 +27,7 @@ DEFAULTS = (
 )  # fmt: skip
 FEWEST, MOST = 5, 8
 
-_STATES = {
+STATES = {
     "in range": ("ok", "● in range"),
     "below": ("bad", "▼ below"),
     "above": ("bad", "▲ above"),
@@ -200,7 +200,7 @@ class Tiles(LiveView):
             return "none", "no value"
         if band is None:
             return ("bad", "▲▼ targets clash") if aimed else ("none", "no target")
-        return _STATES[status(value, *band, readout.slack)]
+        return STATES[status(value, *band, readout.slack)]
 
     def _gauge(self, key: str, value: float, band: Band | None, readout: Readout) -> Node:
         swept = self.session.swept

@@ -34,6 +34,7 @@ KINDS = (
     Kind("window", "Window", "window_view", "WindowView"),
     Kind("tolerance", "Tolerance", "tolerance_view", "ToleranceView"),
     Kind("titration", "Titration", "titration_view", "TitrationView"),
+    Kind("compare", "Compare", "compare_view", "CompareView"),
     Kind("ledger", "Ledger", "ledger_view", "LedgerView"),
     Kind("basis", "Basis", "basis_view", "BasisView"),
 )  # fmt: skip
