@@ -1,4 +1,4 @@
-// Open and save: the file picker and the download have to start in the page. Also the title of the browser tab,
+// Open, save, report: the file picker and the download have to start in the page. Also the title of the browser tab,
 // the question before leaving with unsaved changes, and the keys for save, undo and redo.
 export function render({ model }) {
   const view = document.createElement("div")
@@ -22,9 +22,18 @@ export function render({ model }) {
     return made
   }
   const save = () => model.send_msg({ act: "save" })
+  const report = button("", "", () => model.send_msg({ act: "report" }))
+  const showWriting = () => {
+    report.textContent = model.writing ? "Stop report" : "Report"
+    report.title = model.writing ? "The report is being written; press to stop" : "Write a report to keep or print"
+    report.setAttribute("aria-busy", String(model.writing))
+  }
+  model.on("writing", showWriting)
+  showWriting()
   bar.append(
     button("Open", "Open a scenario file, or a report with its scenario", () => picker.click()),
     button("Save", "Save as a scenario file (Ctrl+S)", save),
+    report,
     picker,
   )
 

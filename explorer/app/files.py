@@ -7,18 +7,22 @@ import binascii
 import re
 import secrets
 from collections import OrderedDict
+from collections.abc import Iterator
 from functools import cache
 from typing import Any
 
 import param
 from panel.custom import JSComponent
 
+from explorer.app.errand import Errand
 from explorer.app.history import Work
 from explorer.app.look import VIEW_STYLES, styles
+from explorer.app.plot_heads import family_choice
 from explorer.app.state import Offer, Session
 from explorer.app.text import plain
 from explorer.scenario.files import LARGEST_FILE, ScenarioError, dumps, open_scenario, read_scenario
 from explorer.scenario.shipped import shipped
+from explorer.studies.progress import Watch
 
 _KEPT_COPIES = 64
 _NAME = re.compile(r"[\w\-]{8,40}")
@@ -68,15 +72,16 @@ def example_titles() -> dict[str, str]:
 
 
 class FileDesk(JSComponent):
-    """The buttons Open and Save, and everything of files that has to happen in the page.
+    """The buttons Open, Save and Report, and everything of files that has to happen in the page.
 
-    ``tab`` names the working copy for a reload, "" for none.
+    ``tab`` names the working copy for a reload, "" for none. ``writing``: a report is being written.
     """
 
     title = param.String(default="")
     unsaved = param.Boolean(default=False)
     limit = param.Integer(default=LARGEST_FILE)
     tab = param.String(default="")
+    writing = param.Boolean(default=False)
 
     _esm = "files.js"
 
@@ -85,6 +90,8 @@ class FileDesk(JSComponent):
         super().__init__(stylesheets=styles(VIEW_STYLES), **settings)
         session.param.watch(self._changed, ["structure", "unsaved", "scenario"])
         session.param.watch(lambda event: self._send(event.new), "offered")
+        self._errand = Errand()
+        self._errand.param.watch(self._errand_changed, ["busy", "refusal"])
         self._changed()
 
     def open_bytes(self, content: bytes, name: str) -> str:
@@ -119,6 +126,33 @@ class FileDesk(JSComponent):
         session.offer(name, text, "application/json")
         session.mark_saved()
 
+    def report(self) -> None:
+        """Write the report on the scenario as it stands and hand it to the browser; again: stop writing."""
+        if self._errand.under_way:
+            self._errand.stop()
+            self.writing = False
+            return
+        scenario, family = self._session.scenario.copy(), family_choice(self._session)
+
+        def work(watch: Watch) -> Iterator[str]:
+            # Imported late: a page that asks for no report need not wait for it at start-up.
+            from explorer.report import report_html
+
+            yield report_html(scenario, family=family)
+
+        def show(text: str) -> None:
+            self._session.offer(file_name(f"{scenario.title} report", "html"), text, "text/html")
+            self.writing = False
+
+        self._errand.refusal = ""
+        self.writing = True
+        self._errand.start(work, show, rest=0.0)
+
+    def _errand_changed(self, *events: Any) -> None:
+        if self._errand.refusal:
+            self._session.message = f"The report was not written: {plain(self._errand.refusal, 400)}"
+            self.writing = False
+
     def _send(self, offer: Offer) -> None:
         self._send_msg({"name": offer.name, "text": offer.text, "type": offer.kind})
 
@@ -133,6 +167,8 @@ class FileDesk(JSComponent):
         act, name = data.get("act"), str(data.get("name", ""))
         if act == "save":
             self.save()
+        elif act == "report":
+            self.report()
         elif act == "undo":
             self._session.undo()
         elif act == "redo":

@@ -22,7 +22,7 @@ from explorer.app.shell import Shell
 from explorer.app.state import Session
 from explorer.app.summary import foot_line
 from explorer.app.tiles import default_tiles, gauge
-from explorer.scenario.files import LARGEST_FILE, dumps, open_scenario
+from explorer.scenario.files import LARGEST_FILE, dumps, open_scenario, read_scenario
 from explorer.scenario.model import Target
 from explorer.scenario.shipped import shipped
 
@@ -293,6 +293,33 @@ def test_save_marks_the_scenario_as_saved(shell: Shell, monkeypatch: pytest.Monk
     name, kind = "amber-river-and-wellfield.json", "application/json"
     assert sent == [{"text": dumps(shell.session.scenario), "name": name, "type": kind}]
     assert not shell.session.unsaved
+
+
+def test_the_report_holds_the_scenario_as_it_stands(shell: Shell, monkeypatch: pytest.MonkeyPatch) -> None:
+    """It goes to the browser as one page, from which the very scenario can be opened again."""
+    sent = []
+    monkeypatch.setattr(FileDesk, "_send_msg", lambda self, message: sent.append(message))
+    shell.session.turn(WELL, 33)
+    shell.files.report()
+    (message,) = sent
+    assert (message["name"], message["type"]) == ("amber-river-and-wellfield-report.html", "text/html")
+    assert read_scenario(message["text"]).same_as(shell.session.scenario)
+    assert not shell.files.writing
+    assert shell.session.unsaved, "a report is no saved scenario"
+
+
+def test_a_report_that_cannot_be_written_says_why(shell: Shell, monkeypatch: pytest.MonkeyPatch) -> None:
+    """In the message line, each time it is asked for; the button is ready again."""
+
+    def refused(*arguments: object, **settings: object) -> str:
+        raise ValueError("no water flows")
+
+    monkeypatch.setattr("explorer.report.report_html", refused)
+    for _ in range(2):
+        shell.session.message = ""
+        shell.files.report()
+        assert shell.session.message == "The report was not written: no water flows"
+        assert not shell.files.writing
 
 
 def test_start_file_that_cannot_be_read_is_said_so(tmp_path: Path) -> None:

@@ -162,6 +162,25 @@ def test_save_and_open_bring_back_the_same_file(screen: Any, tmp_path: Path) -> 
     assert _saved(page, tmp_path / "second.json").read_bytes() == first.read_bytes()
 
 
+def test_a_report_is_written_and_opens_as_its_scenario(screen: Any, tmp_path: Path) -> None:
+    """One press writes the page; opened here, it brings back the share it was written with."""
+    page = screen.page
+    share(screen, "Granite Wellfield").fill("33")
+    share(screen, "Granite Wellfield").press("Enter")
+    page.get_by_text("● not saved").wait_for()
+    with page.expect_download() as arriving:
+        page.get_by_role("button", name="Report").click()
+    report = tmp_path / "report.html"
+    arriving.value.save_as(report)
+    assert "Amber: river and wellfield" in report.read_text("utf-8")
+    share(screen, "Granite Wellfield").fill("80")
+    share(screen, "Granite Wellfield").press("Enter")
+    _open(page, report)
+    screen.until(
+        lambda: share(screen, "Granite Wellfield").input_value().startswith("33"), "the reported share"
+    )
+
+
 @pytest.mark.parametrize(
     ("content", "sentence"),
     [
