@@ -32,7 +32,7 @@ from explorer.app.look import (
     Palette,
 )
 from explorer.app.plot_parts import in_page, lettered, pointer_line, put, ticks
-from explorer.studies.pictures import Axis, Band, Dots, Layer, Picture
+from explorer.studies.pictures import Axis, Band, Layer, Picture
 
 SMALL, USUAL = 11, 12
 """Texts of a plot, pixels: at axes and marks; names and values of curves."""
@@ -142,6 +142,7 @@ class LinePlot:
             line_color="colour",
             line_width=1.6,
             fill_alpha=0.85,
+            level="annotation",
         )
         self.crossing = fig.scatter(
             x="x",
@@ -280,7 +281,7 @@ class LinePlot:
         }
         put(self.others, other_columns(picture, palette))
         put(self.fan, fan_columns(picture.x, picture.fan))
-        put(self.dots, dot_columns(picture.dots, palette))
+        put(self.dots, dot_columns(picture, palette))
         put(self.crossings, self._crossing_labels(picture))
         put(self.gaps, self._gap_labels(picture))
 
@@ -322,14 +323,16 @@ def _chosen(styles: Sequence[Any], wanted: int | None, place: int) -> Any:
     return styles[(place if wanted is None else wanted) % len(styles)]
 
 
-def dot_columns(sets: Sequence[Dots], palette: Palette) -> dict[str, list[Any]]:
-    """Measured points, each set with a marker of its own; colours are those after the curve's."""
+def dot_columns(picture: Picture, palette: Palette) -> dict[str, list[Any]]:
+    """Measured points within the range, each set with a marker of its own; colours are those after the
+    curve's."""
     columns: dict[str, list[Any]] = {"x": [], "y": [], "marker": [], "colour": []}
-    for place, part in enumerate(sets):
-        columns["x"] += part.x.tolist()
-        columns["y"] += part.y.tolist()
-        columns["marker"] += [_chosen(DOT_MARKERS, None, place)] * len(part.x)
-        columns["colour"] += [_chosen(palette.series, None, place + 1)] * len(part.x)
+    for place, part in enumerate(picture.dots):
+        seen = (part.x >= picture.x[0]) & (part.x <= picture.x[-1])
+        columns["x"] += part.x[seen].tolist()
+        columns["y"] += part.y[seen].tolist()
+        columns["marker"] += [_chosen(DOT_MARKERS, None, place)] * int(seen.sum())
+        columns["colour"] += [_chosen(palette.series, None, place + 1)] * int(seen.sum())
     return columns
 
 

@@ -2,7 +2,7 @@
 
 import csv
 import io
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from types import MappingProxyType
 from typing import Any
@@ -180,30 +180,35 @@ class Comparison:
         count = f"{self.x.size} measured"
         if not self.count:
             return f"{count}, no answer of the model"
-        readout = READOUTS[self.readout]
-        side = "above" if self.bias > 0 else "below"
-        spread = "" if self.count < 2 else f", scatter {format_value(self.scatter, readout)}"
-        return f"{count}, model {format_value(abs(self.bias), readout)} {side}{spread}"
+        spread = "" if self.count < 2 else f", scatter {self._amount(self.scatter)}"
+        return f"{count}, model {self._side(self._amount, 'level')}{spread}"
 
     def sentence(self) -> str:
         """The comparison in one sentence."""
-        readout = READOUTS[self.readout]
         if not self.count:
             return f"{self.name}: the model has no answer at any measured point"
 
         def amount(value: float) -> str:
-            return format_value(abs(value), readout) + readout.unit_text
+            return self._amount(value) + READOUTS[self.readout].unit_text
 
-        side = "above" if self.bias > 0 else "below"
         x, far = float(self.x[self.worst]), float(self.difference[self.worst])
         spread = "" if self.count < 2 else f", scatter {amount(self.scatter)}"
         left_out = self.x.size - self.count
         gaps = f"; {left_out} without an answer of the model" if left_out else ""
         return (
-            f"{self.name}: the model is {amount(self.bias)} {side} {self.count} measured"
+            f"{self.name}: the model is {self._side(amount, 'level with')} {self.count} measured"
             f" point{'s' * (self.count > 1)} on average{spread}; the largest difference is {amount(far)} at"
             f" {x:.4g}{f' {self.x_unit}' if self.x_unit else ''}{gaps}"
         ).replace("-", MINUS)
+
+    def _amount(self, value: float) -> str:
+        return format_value(abs(value), READOUTS[self.readout])
+
+    def _side(self, amount: Callable[[float], str], level: str) -> str:
+        """Where the model is on average; ``level``: words for a bias that prints as nought."""
+        if not float(self._amount(self.bias)):
+            return level
+        return f"{amount(self.bias)} {'above' if self.bias > 0 else 'below'}"
 
     def to_dict(self) -> dict[str, Any]:
         """Plain data; None where there is no answer."""

@@ -189,6 +189,8 @@ def test_points_of_the_model_itself_have_no_bias(plant):
     found = compared(scenario, scenario.measured[0])
     assert found.bias == pytest.approx(0, abs=1e-9)
     assert found.scatter == pytest.approx(0, abs=1e-9)
+    assert found.brief() == "3 measured, model level, scatter 0.00"
+    assert "the model is level with 3 measured points on average" in found.sentence()
 
 
 def test_bias_scatter_and_the_worst_point(plant):
@@ -206,6 +208,7 @@ def test_bias_scatter_and_the_worst_point(plant):
         "Bench: the model is 0.20 above 3 measured points on average, scatter 0.10;"
         " the largest difference is 0.30 at 0 %"
     )
+    assert found.brief() == "3 measured, model 0.20 above, scatter 0.10"
 
 
 def test_points_at_a_stage_are_compared_there(plant):
