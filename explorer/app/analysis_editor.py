@@ -7,6 +7,7 @@ from explorer.app.desk import Desk, beside
 from explorer.app.entry import parse_number, show_number
 from explorer.app.live_view import Node, node
 from explorer.app.other_units import conversion, in_unit, take_along
+from explorer.app.paste_panel import Pasting, paste_panel
 from explorer.app.pickers import Choice, picker
 from explorer.app.state import Change
 from explorer.app.text import plain, unit_text
@@ -114,7 +115,8 @@ def analysis_editor(desk: Desk, water: Water) -> list[Node]:
         node("h4", text=f"{plain(sheet.season)} analysis"),
         *_findings(sheet),
         table,
-        node("div", "below", *_add_entry(sheet)),
+        node("div", "below", *_add_entry(sheet), _paste(sheet)),
+        *paste_panel(desk, water.id),
         node(
             "details",
             "",
@@ -233,6 +235,15 @@ def _about(sheet: Sheet, entry: str) -> Node:
         )
     )
     return node("div", "about", *parts)
+
+
+def _paste(sheet: Sheet) -> Node:
+    """The link that opens the panel for a pasted sheet."""
+
+    def begin(value: object) -> None:
+        sheet.desk.pasting = Pasting(sheet.water.id)
+
+    return node("button", "link", text="Paste an analysis", key=f"{sheet.key}:paste", type="button", on=begin)
 
 
 def _add_entry(sheet: Sheet) -> list[Node]:

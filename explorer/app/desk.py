@@ -40,7 +40,7 @@ class Desk:
 
     opened: key of the card that shows its details ("" for none, one at a time). unfolded: key of the analysis
     row that shows its note. naming: key of the card being renamed. originals: entries as they were before
-    their unit was changed.
+    their unit was changed. pasting: the laboratory sheet being taken over (``paste_panel.Pasting``), or None.
     """
 
     def __init__(self, session: Session) -> None:
@@ -48,6 +48,7 @@ class Desk:
         self.entries = Entries()
         self.opened = self.unfolded = self.naming = ""
         self.originals = Originals()
+        self.pasting: Any = None
         self._reach: dict[str, float] = {}
         self._examined: tuple[Any, Examination] | None = None
 
@@ -168,6 +169,8 @@ class Desk:
             self.opened = ""
         if self.naming not in standing:
             self.naming = ""
+        if self.pasting is not None and f"waters.{self.pasting.water}" not in {*standing, "waters."}:
+            self.pasting = None
 
     def rename(self, key: str) -> None:
         """Let the name of a card be typed."""

@@ -171,6 +171,10 @@ export function render({ model, el }) {
     element._sent = element.value
     tell(element, element.value)
   })
+  // What is pasted into a text area is read at once, without leaving it first.
+  view.addEventListener("paste", ({ target }) => {
+    if (target.tagName === "TEXTAREA" && target.hasAttribute("data-on")) setTimeout(() => tell(target, target.value))
+  })
   async function tellFile(chooser) {
     const file = chooser.files[0]
     chooser.value = ""     // the same file can be chosen again

@@ -4,6 +4,7 @@ from typing import Any, ClassVar
 
 from explorer.app.desk import Desk, facts, heading
 from explorer.app.live_view import LiveView, Node, node
+from explorer.app.paste_panel import Pasting, paste_panel
 from explorer.app.pickers import Choice, picker
 from explorer.app.state import Session
 from explorer.app.step_card import train_list
@@ -13,6 +14,9 @@ from explorer.scenario.evaluate import Outcome
 from explorer.scenario.model import Scenario
 from explorer.scenario.readouts import MINUS, NO_VALUE, READOUTS, format_value
 from explorer.scenario.words import number_text
+
+PASTED = "paste:"
+"""Stands for a pasted analysis where the id of a water to copy would stand; no id has a colon."""
 
 
 def asked(point: Outcome) -> None:
@@ -68,16 +72,25 @@ class Rail(LiveView):
         desk = self.desk
 
         def add(like: str) -> None:
+            if like == PASTED:
+                desk.pasting = Pasting()
+                return
+
             def change(scenario: Scenario) -> None:
                 desk.opened = f"waters.{editing.add_water(scenario, like or None)}"
 
             desk.entries.refuse("waters:add", refusal=desk.edit("Add a source water", change))
 
         copies = [Choice(water.id, water.title, "copy") for water in desk.scenario.waters]
-        groups = {"New": [Choice("", "A new water", "to be filled in")], "Like one of these": copies}
+        new = [
+            Choice("", "A new water", "to be filled in"),
+            Choice(PASTED, "From a pasted analysis", "or a CSV file", "laboratory sheet spreadsheet"),
+        ]
+        groups = {"New": new, "Like one of these": copies}
         return [
             *picker("waters:add", "+ Add a source water", groups, add, hint="Search waters"),
             desk.refusal("waters:add"),
+            *paste_panel(desk, ""),
         ]
 
     def _treatment(self) -> list[Node]:

@@ -222,3 +222,21 @@ def test_open_card_fits_the_rail(page: Page) -> None:
         box = card.bounding_box()
         assert box["x"] + box["width"] <= edge["x"] + edge["width"]
         assert card.evaluate("e => e.scrollWidth <= e.clientWidth + 1")
+
+
+def test_adding_a_water_by_pasting_an_analysis(page: Page) -> None:
+    """Lines from a spreadsheet are previewed, one is corrected, and the water is there with its figures."""
+    pick(page, "+ Add a source water", "pasted")
+    area = page.get_by_role("textbox", name="Lines of the analysis")
+    area.fill(
+        "Parameter\tUnit\tResult\npH\t\t7,9\nAlk\tmg/L CaCO3\t150\nKalk\tmg/l\t60\n" + HOSTILE + "\tNTU\t0,4"
+    )
+    page.get_by_role("button", name="Read the lines").click()
+    expect(page.get_by_text(HOSTILE)).to_be_visible()
+    page.get_by_role("combobox", name="Kalk is").select_option("calcium")
+    page.get_by_role("button", name="Take over 3 entries").click()
+    expect(page.get_by_role("textbox", name="Calcium, mg/L")).to_have_value("60")
+    expect(page.get_by_role("textbox", name="Share of New water")).to_have_value("0.0")
+    page.get_by_role("button", name="Undo").click()
+    expect(page.get_by_role("textbox", name="Share of New water")).to_have_count(0)
+    assert page.evaluate("window.__xss") is None
