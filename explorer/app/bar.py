@@ -7,6 +7,7 @@ from typing import Any
 
 from explorer.app.bar_parts import OptionChips, SeasonChips
 from explorer.app.entry import Entries
+from explorer.app.files import Example
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
 from explorer.app.state import Session
@@ -17,7 +18,8 @@ from explorer.scenario.model import Scenario
 class Bar(LiveView):
     """What the scenario is called, which season is shown, and the way back.
 
-    examples: titles of the shipped scenarios by name. open_example: gets the name of the one chosen.
+    examples: the shipped scenarios by name. open_example: gets the name of the one chosen. new: begins a
+    scenario with nothing in it.
     """
 
     css = VIEW_STYLES
@@ -25,13 +27,14 @@ class Bar(LiveView):
     def __init__(
         self,
         session: Session,
-        examples: Mapping[str, str],
+        examples: Mapping[str, Example],
         open_example: Callable[[str], object],
+        new: Callable[[], object],
         **settings: Any,
     ) -> None:
         self.session = session
         self.examples = examples
-        self.open_example = open_example
+        self.open_example, self.new = open_example, new
         self.entries = Entries()
         self.seasons = SeasonChips(session, self.entries, self.refresh)
         self.options = OptionChips(session, self.entries, self.refresh)
@@ -65,20 +68,23 @@ class Bar(LiveView):
         sheet = "examples"
         rows = [
             node(
-                "button",
-                "",
-                text=plain(title, 70),
-                key=f"example:{name}",
-                type="button",
+                "button", "", node("strong", text=plain(example.title, 70)),
+                node("small", text=plain(example.story, 240)), key=f"example:{name}", type="button",
                 on=self._example(name),
             )
-            for name, title in self.examples.items()
-        ]
+            for name, example in self.examples.items()
+        ]  # fmt: skip
+        new = node(
+            "button", "", node("strong", text="New scenario"),
+            node("small", text="One water to be filled in; nothing is dosed and no target entered."),
+            key="example-new", type="button", on=lambda value: self.new(),
+        )  # fmt: skip
         return [
             node("button", "press", text="Examples", key="examples-button", type="button",
                  popovertarget=sheet, aria_haspopup="menu", aria_expanded="false"),
-            node("div", "", node("h3", text="Shipped scenarios, invented waters"), *rows, key=sheet, id=sheet,
-                 popover="auto", aria_label="Shipped scenarios"),
+            node("div", "gallery", node("h3", text="Begin"), new,
+                 node("h3", text="Examples with invented waters"), *rows, key=sheet, id=sheet, popover="auto",
+                 aria_label="New scenario and examples"),
         ]  # fmt: skip
 
     def _example(self, name: str) -> Callable[[Any], None]:

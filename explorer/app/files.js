@@ -30,23 +30,67 @@ export function render({ model }) {
   }
   model.on("writing", showWriting)
   showWriting()
+  // Saving under another name asks for it beside the button.
+  const sheet = view.appendChild(document.createElement("div"))
+  sheet.className = "saving"
+  sheet.popover = "auto"
+  sheet.dataset.placed = ""
+  const label = sheet.appendChild(document.createElement("label"))
+  label.textContent = "Name of the file"
+  const wanted = label.appendChild(document.createElement("input"))
+  wanted.className = "words"
+  wanted.maxLength = 80
+  const saveAs = (event) => {
+    event.preventDefault()
+    sheet.hidePopover()
+    model.send_msg({ act: "save", name: wanted.value })
+  }
+  sheet.append(button("Save under this name", "", saveAs))
+  wanted.addEventListener("keydown", (event) => { if (event.key === "Enter") saveAs(event) })
+  const named = button("▾", "Save under another name", () => {
+    const from = named.getBoundingClientRect()
+    sheet.style.inset = `${from.bottom + 4}px ${Math.max(4, window.innerWidth - from.right)}px auto auto`
+    sheet.showPopover()
+    wanted.value = model.title
+    wanted.select()
+  })
+  named.classList.add("narrow")
+  named.setAttribute("aria-label", "Save under another name")
   bar.append(
     button("Open", "Open a scenario file, or a report with its scenario", () => picker.click()),
     button("Save", "Save as a scenario file (Ctrl+S)", save),
+    named,
     report,
     picker,
   )
 
-  picker.addEventListener("change", async () => {
+  picker.addEventListener("change", () => {
     const file = picker.files[0]
     picker.value = ""          // the same file can be chosen again
-    if (!file) return
+    if (file) take(file)
+  })
+  async function take(file) {
     if (file.size > model.limit) return model.send_msg({ act: "too large", name: file.name, size: file.size })
     const bytes = new Uint8Array(await file.arrayBuffer())
     let text = ""
     for (let at = 0; at < bytes.length; at += 8192) text += String.fromCharCode(...bytes.subarray(at, at + 8192))
     model.send_msg({ act: "open", name: file.name, content: btoa(text) })
-  })
+  }
+
+  // A file let go anywhere on the page is opened; over a field for files it belongs to that field.
+  const carries = (event) => event.dataTransfer?.types.includes("Files") && event.composedPath()[0].type !== "file"
+  const mark = (on) => document.documentElement.toggleAttribute("data-dropping", on)
+  const onDrag = (event) => { if (carries(event)) { event.preventDefault(); mark(true) } }
+  const onDragLeave = (event) => { if (!event.relatedTarget) mark(false) }
+  const onDrop = (event) => {
+    mark(false)
+    if (!carries(event)) return
+    event.preventDefault()
+    if (event.dataTransfer.files[0]) take(event.dataTransfer.files[0])
+  }
+  document.addEventListener("dragover", onDrag)
+  document.addEventListener("dragleave", onDragLeave)
+  document.addEventListener("drop", onDrop)
 
   model.on("msg:custom", (event) => {
     const { text, name, type } = event.data ?? event
@@ -66,6 +110,7 @@ export function render({ model }) {
     if (!(event.ctrlKey || event.metaKey) || event.altKey) return
     const key = event.key.toLowerCase()
     if (key === "s" && !event.shiftKey) { event.preventDefault(); save() }
+    else if (key === "o" && !event.shiftKey) { event.preventDefault(); picker.click() }
     else if (key === "z" && !inField(event)) {
       event.preventDefault()
       model.send_msg({ act: event.shiftKey ? "redo" : "undo" })
@@ -89,6 +134,9 @@ export function render({ model }) {
   }
   model.on("remove", () => {
     document.removeEventListener("keydown", onKey)
+    document.removeEventListener("dragover", onDrag)
+    document.removeEventListener("dragleave", onDragLeave)
+    document.removeEventListener("drop", onDrop)
     window.removeEventListener("beforeunload", onLeave)
   })
   return view

@@ -8,6 +8,7 @@ import re
 import secrets
 from collections import OrderedDict
 from collections.abc import Iterator
+from dataclasses import dataclass
 from functools import cache
 from typing import Any
 
@@ -20,11 +21,17 @@ from explorer.app.look import VIEW_STYLES, styles
 from explorer.app.plot_heads import family_choice
 from explorer.app.state import Offer, Session
 from explorer.app.text import plain
+from explorer.scenario.editing import NEW_WATER
 from explorer.scenario.files import LARGEST_FILE, ScenarioError, dumps, open_scenario, read_scenario
+from explorer.scenario.model import Analysis, Scenario, Water
 from explorer.scenario.shipped import shipped
 from explorer.studies.progress import Watch
 
 _KEPT_COPIES = 64
+SEASON = "all year"
+"""The season a new scenario begins with."""
+
+_FIRST_SENTENCE = re.compile(r"[^.?!]*[.?!]?")
 _NAME = re.compile(r"[\w\-]{8,40}")
 
 
@@ -59,16 +66,35 @@ def tab_name(asked: str = "") -> str:
     return asked if _NAME.fullmatch(asked) else secrets.token_urlsafe(12)
 
 
+@dataclass(frozen=True)
+class Example:
+    """A shipped scenario: its title, and what it is about in a sentence."""
+
+    title: str
+    story: str = ""
+
+
 @cache
-def example_titles() -> dict[str, str]:
-    """Titles of the shipped scenarios by name; one that cannot be read goes by its name."""
-    titles = {}
+def examples() -> dict[str, Example]:
+    """The shipped scenarios by name; one that cannot be read goes by its name."""
+    found = {}
     for name, path in shipped().items():
         try:
-            titles[name] = open_scenario(path).title
+            scenario = open_scenario(path)
         except ScenarioError:
-            titles[name] = name
-    return titles
+            found[name] = Example(name)
+            continue
+        found[name] = Example(scenario.title, _FIRST_SENTENCE.match(scenario.note)[0].strip())
+    return found
+
+
+def blank() -> Scenario:
+    """A scenario to begin with: one water of usual figures, all marked as assumed."""
+    water = Water(
+        id="water", name="New water", share=100, analyses={SEASON: Analysis(entries=dict(NEW_WATER))}
+    )
+    made = Scenario(title="New scenario", seasons=[SEASON], season=SEASON, waters=[water])
+    return Scenario.from_dict(made.to_dict())
 
 
 class FileDesk(JSComponent):
@@ -119,11 +145,15 @@ class FileDesk(JSComponent):
         self._session.replace(scenario, path.name)
         return ""
 
-    def save(self) -> None:
-        """Hand the scenario to the browser as a download."""
+    def new(self) -> None:
+        """Begin a scenario with nothing in it."""
+        self._session.replace(blank())
+
+    def save(self, wanted: str = "") -> None:
+        """Hand the scenario to the browser as a download. wanted: name of the file, else one of the title."""
         session = self._session
-        name, text = file_name(session.scenario.title), dumps(session.scenario)
-        session.offer(name, text, "application/json")
+        name = file_name(wanted.strip().removesuffix(".json") or session.scenario.title)
+        session.offer(name, dumps(session.scenario), "application/json")
         session.mark_saved()
 
     def report(self) -> None:
@@ -166,7 +196,7 @@ class FileDesk(JSComponent):
             return
         act, name = data.get("act"), str(data.get("name", ""))
         if act == "save":
-            self.save()
+            self.save(name)
         elif act == "report":
             self.report()
         elif act == "undo":

@@ -9,7 +9,8 @@ import panel as pn
 from panel.theme.native import Native
 
 from explorer.app.bar import Bar
-from explorer.app.files import FileDesk, example_titles
+from explorer.app.files import FileDesk, examples
+from explorer.app.help import FirstHint, Help
 from explorer.app.look import FOLDER, THEMES, Palette, page_css
 from explorer.app.meeting import MeetingSwitch, Strip, in_meeting
 from explorer.app.options import Options
@@ -19,7 +20,7 @@ from explorer.app.state import Session
 from explorer.app.summary import Foot, Message, Summary
 from explorer.app.theme import ThemeSwitch
 from explorer.app.tiles import Tiles
-from explorer.app.view_tabs import ViewTabs
+from explorer.app.view_tabs import KINDS, ViewTabs
 
 TITLE = "Blendwright"
 
@@ -35,13 +36,15 @@ class Shell:
         self.theme = ThemeSwitch()
         self.options = Options(session, Conflate(pn.state.curdoc))
         self.files = FileDesk(session, tab=tab)
-        self.bar = Bar(session, example_titles(), self.files.open_example)
+        self.bar = Bar(session, examples(), self.files.open_example, self.files.new)
         self.rail = Rail(session)
         self.tiles = Tiles(session)
         self.summary = Summary(session)
         self.message = Message(session)
         self.views = ViewTabs(session)
         self.foot = Foot(session)
+        self.help = Help(self._open_view, session.step_along)
+        self.hint = FirstHint()
         self.meeting = MeetingSwitch(session)
         self.strip = Strip(session)
         session.param.watch(self._meet, "choices")
@@ -55,6 +58,8 @@ class Shell:
             "bar": self.bar,
             "files": self.files,
             "theme": self.theme,
+            "help": self.help,
+            "hint": self.hint,
             "meeting": self.meeting,
             "strip": self.strip,
             "rail": self.rail.view,
@@ -71,6 +76,11 @@ class Shell:
         if meeting and self.views.shown != "sweep":
             self.views.open("sweep")
         self.views.bar.visible = not meeting
+
+    def _open_view(self, number: int) -> None:
+        """Open the view with a number, 1 for the first; others there are not, and the meeting has one."""
+        if 0 < number <= len(KINDS) and not in_meeting(self.session):
+            self.views.open(KINDS[number - 1].key)
 
     def _page(self) -> pn.Template:
         markup = (FOLDER / "page.html").read_text(encoding="utf-8")

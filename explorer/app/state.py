@@ -157,6 +157,13 @@ class Session(param.Parameterized):
         if refused:
             self.message = refused
 
+    def step_along(self, steps: int) -> None:
+        """Move the operating point along the sweep by hundredths of its range, or steps of its dial."""
+        swept = self.swept
+        if swept is not None and swept.address in self.dials:
+            one = max(abs(float(swept.x[-1] - swept.x[0])) / 100, swept.dial.step)
+            self.turn_along(self.value(swept.address) + steps * one)
+
     def edit(
         self, label: str, change: Change, key: str = "", rebuild: bool = True, together: bool = False
     ) -> str:
@@ -236,11 +243,10 @@ class Session(param.Parameterized):
         return self.edit("Sweep", change, key="sweep", rebuild=False)
 
     def replace(self, scenario: Scenario, file_name: str = "scenario.json") -> None:
-        """Start afresh from an opened scenario; history begins anew and nothing is unsaved."""
+        """Go on with an opened scenario; nothing is unsaved, and undo leads back to the one before."""
+        self._remember(Step(f"Open {file_name}", "", self.scenario.to_dict(), self._clock()))
         self.work.file_name = file_name
         self.work.saved = scenario.to_dict()
-        self.work.past.clear()
-        self.work.future.clear()
         self._take(scenario)
 
     def undo(self) -> None:

@@ -13,7 +13,7 @@ from bokeh.models import Span
 
 from explorer.app import serve
 from explorer.app.choosers import default_range
-from explorer.app.files import FileDesk, Shelf, file_name, tab_name
+from explorer.app.files import FileDesk, Shelf, blank, examples, file_name, tab_name
 from explorer.app.history import Work
 from explorer.app.look import DARK
 from explorer.app.main import build
@@ -406,3 +406,43 @@ def test_session_of_a_page_has_no_widget() -> None:
     session = Session(open_scenario(shipped()["amber"]))
     session.solve_now()
     assert float(session.point.readout("ph")) == pytest.approx(7.47, abs=0.05)
+
+
+def test_examples_tell_what_they_are_about() -> None:
+    """Each with its title and one sentence."""
+    assert set(examples()) == set(shipped())
+    for example in examples().values():
+        assert example.title and 20 < len(example.story) <= 240 and example.story[-1] in ".?!"
+
+
+def test_new_scenario_is_one_assumed_water(shell: Shell) -> None:
+    """It has results at once, and undo leads back to what was there."""
+    assert all(entry.assumed for entry in blank().waters[0].analyses["all year"].entries.values())
+    shell.session.turn(WELL, 55)
+    shell.bar.report("example-new")
+    assert [water.name for water in shell.session.scenario.waters] == ["New water"]
+    assert np.isfinite(float(shell.session.point.readout("ph"))) and not shell.session.unsaved
+    shell.session.undo()
+    assert shell.session.value(WELL) == 55
+
+
+def test_saving_under_another_name(shell: Shell) -> None:
+    """The name is made fit for a file; without one it comes from the title."""
+    shell.files.save("Board meeting: B.json")
+    assert shell.session.offered.name == "board-meeting-b.json"
+    shell.files.save()
+    assert shell.session.offered.name == "amber-river-and-wellfield.json"
+
+
+def test_keys_open_views_and_move_the_operating_point(shell: Shell) -> None:
+    """A number opens a view; arrows move along the sweep and stop at its end; others are passed over."""
+    shell.help._handle_msg({"view": 2})
+    assert shell.views.shown == "window"
+    for strange in ({"view": 99}, {"view": "2"}, {"steps": 1000}, "?"):
+        shell.help._handle_msg(strange)
+    assert shell.views.shown == "window"
+    shell.help._handle_msg({"steps": 10})
+    assert shell.session.value(WELL) == 50
+    for _ in range(7):
+        shell.help._handle_msg({"steps": 10})
+    assert shell.session.value(WELL) == 100

@@ -163,13 +163,17 @@ def test_saving_clears_the_mark_and_undo_brings_it_back(session: Session) -> Non
     assert session.unsaved
 
 
-def test_replacing_begins_a_new_history(session: Session) -> None:
-    """An opened scenario has nothing to undo and nothing unsaved."""
+def test_opening_loses_nothing(session: Session) -> None:
+    """An opened scenario has nothing unsaved; undo leads back to the one before with all its changes."""
     session.turn(WELL, 60)
     session.replace(open_scenario(shipped()["moss"]), "moss.json")
-    assert not session.can_undo and not session.unsaved
+    assert not session.unsaved
     assert session.file_name == "moss.json"
     assert session.scenario.title.startswith("Moss")
+    session.undo()
+    assert session.value(WELL) == 60 and session.unsaved
+    session.undo()
+    assert session.value(WELL) == 40
 
 
 def test_moving_along_the_sweep_keeps_the_curve(session: Session) -> None:

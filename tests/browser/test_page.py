@@ -7,7 +7,14 @@ from typing import Any
 
 import pytest
 
+from explorer.scenario.shipped import shipped
+
 pytestmark = pytest.mark.browser
+
+
+def enter(field: Any, text: str) -> None:
+    field.fill(text)
+    field.press("Enter")
 
 
 def share(screen: Any, water: str) -> Any:
@@ -280,3 +287,103 @@ def _open(page: Any, path: Path) -> None:
     with page.expect_file_chooser() as chooser:
         page.get_by_role("button", name="Open", exact=True).click()
     chooser.value.set_files(path)
+
+
+def test_file_dropped_on_the_page_is_opened(screen: Any) -> None:
+    """Wherever it is let go."""
+    text = shipped()["moss"].read_text("utf-8")
+    data = screen.page.evaluate_handle(
+        """text => { const data = new DataTransfer()
+            data.items.add(new File([text], "moss.json", { type: "application/json" })); return data }""",
+        text,
+    )
+    screen.page.dispatch_event("#main", "dragover", {"dataTransfer": data})
+    screen.page.dispatch_event("#main", "drop", {"dataTransfer": data})
+    screen.until(lambda: screen.page.title().startswith("Moss"), "the dropped scenario")
+
+
+def test_ten_actions_are_undone_to_the_start(screen: Any, tmp_path: Path) -> None:
+    """Title, season, shares, a dose, options and sweep: undo leads back to the identical file."""
+    page = screen.page
+    start = _saved(page, tmp_path / "start.json").read_bytes()
+    enter(page.get_by_role("textbox", name="Title of the scenario"), "Another title")
+    page.get_by_role("button", name="summer").click()
+    for value in ("20", "35", "80"):
+        enter(share(screen, "Granite Wellfield"), value)
+        page.wait_for_timeout(900)
+    enter(page.get_by_role("textbox", name="Dose of Sodium hypochlorite"), "2")
+    page.get_by_role("button", name="Keep as option").click()
+    enter(page.get_by_role("textbox", name="Name of the option"), "B")
+    page.get_by_role("button", name="Compare with A B").wait_for()
+    page.get_by_role("button", name="More for Fern River").click()
+    page.get_by_role("menuitem", name="Duplicate").click()
+    page.get_by_role("textbox", name="Share of Fern River (copy)").wait_for()
+    enter(page.get_by_role("textbox", name="To, end of the sweep"), "60")
+    page.get_by_role("button", name="winter").click()
+    undo = page.locator("#bar button.glyph-undo")
+    for _ in range(10):
+        undo.click()
+        page.wait_for_timeout(150)
+    screen.until(undo.is_disabled, "nothing more to undo")
+    assert _saved(page, tmp_path / "end.json").read_bytes() == start
+
+
+@pytest.mark.parametrize(
+    "name",
+    ["\u202bمحطة المياه القديمة", "💧 Quelle 🏔️ né du rocher", "W" * 80, "a" * 40 + " " + "b" * 39],
+)
+def test_unusual_names_are_shown_and_break_nothing(screen: Any, tmp_path: Path, name: str) -> None:
+    """Right-to-left, pictures, and the longest names: as text, inside the page."""
+    page = screen.page
+    scenario = json.loads(_saved(page, tmp_path / "amber.json").read_text("utf-8"))
+    visible = name.lstrip("\u202b")
+    scenario["waters"][1]["name"] = scenario["train"][0]["name"] = visible
+    scenario["title"] = visible * 2
+    path = tmp_path / "unusual.json"
+    path.write_text(json.dumps(scenario), "utf-8")
+    _open(page, path)
+    page.get_by_role("button", name=visible, exact=True).first.wait_for()
+    assert page.evaluate("document.documentElement.scrollWidth") <= 1280
+    assert page.locator("#rail").evaluate("e => e.scrollWidth <= e.clientWidth")
+
+
+def test_name_of_ten_thousand_characters_is_refused_in_a_sentence(screen: Any, tmp_path: Path) -> None:
+    """The page stays as it was."""
+    page = screen.page
+    scenario = json.loads(_saved(page, tmp_path / "amber.json").read_text("utf-8"))
+    scenario["waters"][1]["name"] = "x" * 10_000
+    path = tmp_path / "long.json"
+    path.write_text(json.dumps(scenario), "utf-8")
+    _open(page, path)
+    page.get_by_text("10000 characters are too many").wait_for()
+    assert share(screen, "Granite Wellfield").is_visible()
+
+
+def test_keys_of_the_page(screen: Any) -> None:
+    """? lists the keys, numbers open views, arrows in a plot move the operating point."""
+    page = screen.page
+    page.locator("#main").focus()
+    page.keyboard.press("?")
+    page.get_by_role("dialog", name="Keys and first steps").wait_for()
+    page.keyboard.press("Escape")
+    page.mouse.click(*screen.point_at("ph", 0.4))
+    screen.until(lambda: share(screen, "Granite Wellfield").input_value().startswith("40"), "40 %")
+    before = float(share(screen, "Granite Wellfield").input_value())
+    page.keyboard.press("Shift+ArrowRight")
+    screen.until(
+        lambda: float(share(screen, "Granite Wellfield").input_value()) == before + 10, "ten steps further"
+    )
+    page.keyboard.press("2")
+    screen.until(
+        lambda: page.get_by_role("tab", name="Window").get_attribute("aria-selected") == "true", "a view"
+    )
+
+
+def test_first_hint_is_dismissed_for_good(screen: Any) -> None:
+    """A browser sees it once."""
+    page = screen.page
+    page.get_by_role("button", name="Understood").click()
+    assert page.get_by_role("button", name="Understood").count() == 0
+    page.reload()
+    screen.drawn()
+    assert page.get_by_role("button", name="Understood").count() == 0
