@@ -13,7 +13,7 @@ import numpy as np
 
 from explorer.app.entry import Entries
 from explorer.app.errand import REST, Errand, progress
-from explorer.app.live_view import Node
+from explorer.app.live_view import Node, node
 from explorer.app.state import Session
 from explorer.app.tolerance_setting import anything_off
 from explorer.studies.axes import Limits
@@ -79,7 +79,7 @@ class SweepBand:
         choice = entries.choice(
             "band", "Band of outcomes around the curves", WIDTHS, self._width(), self._choose
         )
-        return [progress(self.errand, self._again, "Progress of the band"), choice]
+        return [node("div", "group", progress(self.errand, self._again, "Progress of the band"), choice)]
 
     # ---- inside --------------------------------------------------------------------------------------
 

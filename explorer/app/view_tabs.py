@@ -96,9 +96,10 @@ class ViewTabs:
         before.closed()
         before.view.visible = False
         self.shown = self.bar.chosen = key
+        # Before it is opened, so that the new view follows once and not twice.
+        self.session.choose(view=key)
         self._open()
         self.bar.refresh()
-        self.session.choose(view=key)
 
     def restyle(self, palette: Palette) -> None:
         """Take the colours of another palette, in all views that have been built."""
