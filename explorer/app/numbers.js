@@ -5,3 +5,8 @@ function number(value, digits, figures, signed) {
   if (Number(text) === 0) return text
   return (value < 0 ? "−" : signed ? "+" : "") + text
 }
+
+// Height of a plot's frame, pixels; a usual one while the plot has not been laid out yet.
+function heightOf(figure) {
+  return (figure.properties.inner_height.is_unset ? 0 : figure.inner_height) || 200
+}

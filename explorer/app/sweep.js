@@ -47,7 +47,7 @@ function draw() {
   for (const part of parts) {
     const { xs, ys, colour, label, digits, figures, signed, unit } = part.lines.data
     const low = Math.min(part.y_range.start, part.y_range.end), span = Math.abs(part.y_range.end - part.y_range.start)
-    const pixel = span / Math.max(60, part.figure.inner_height || 200)
+    const pixel = span / Math.max(60, heightOf(part.figure))
     const rings = [], labels = [], ends = []
     for (let i = 0; i < xs.length; i++) {
       const own = at(xs[i], ys[i], point.location)

@@ -13,7 +13,6 @@ from explorer.app.look import VIEW_STYLES
 from explorer.app.measured_panel import MeasuredPanel
 from explorer.app.pickers import Choice, picker
 from explorer.app.state import Session
-from explorer.app.tables import csv_button
 from explorer.app.text import formula_text, plain, unit_text
 from explorer.app.titration_setting import Setting, equivalents, in_unit, shared_units
 from explorer.scenario.dials import Dial
@@ -27,8 +26,7 @@ NOTHING = ""
 class TitrationControls(LiveView):
     """Changes what the titration view shows; nothing of it belongs to the scenario.
 
-    now: what is shown, None without a result. keep: takes another setting. table: lines of the curve for a
-    spreadsheet.
+    now: what is shown, None without a result. keep: takes another setting.
     """
 
     css = (*VIEW_STYLES, "measured.css")
@@ -39,11 +37,10 @@ class TitrationControls(LiveView):
         measured: MeasuredPanel,
         now: Callable[[], Setting | None],
         keep: Callable[[Setting], None],
-        table: Callable[[], list[list[Any]]],
         **settings: Any,
     ) -> None:
         self.session, self.measured = session, measured
-        self.now, self.keep, self.table = now, keep, table
+        self.now, self.keep = now, keep
         self.refusal = ""
         self.entries = Entries()
         super().__init__(sizing_mode="stretch_width", **settings)
@@ -59,7 +56,6 @@ class TitrationControls(LiveView):
             node("div", "group", node("span", text=MINUS), *self._opposite(now)),
             *self._range(now), self._unit(now),
             node("span", "push"), *self.measured.nodes(),
-            csv_button(self.session, "titration", self.table, text="CSV"),
             node("span", "gap", text=self.refusal, role="status"),
         )  # fmt: skip
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from typing import Any
 
@@ -10,12 +10,14 @@ import numpy as np
 import panel as pn
 
 from explorer.app.diagram_plot import DiagramPlot, FamiliesHead, chosen_families
+from explorer.app.live_view import Node
 from explorer.app.look import PLOT_CARD_CSS, TITRATION_GRID_CSS, VIEW_HOST_CSS, Palette
 from explorer.app.measured_panel import Against, Comparisons, MeasuredPanel
 from explorer.app.plot_heads import Head
 from explorer.app.plots import LinkedPlots
 from explorer.app.runner import Conflate
 from explorer.app.state import Session
+from explorer.app.tables import csv_button
 from explorer.app.titration_controls import TitrationControls
 from explorer.app.titration_setting import Setting, setting
 from explorer.app.view import View
@@ -54,6 +56,17 @@ class Found:
     refusal: str = ""
 
 
+class CurveHead(Head):
+    """Title of the curve, which can be saved for a spreadsheet; ``table``: its lines."""
+
+    def __init__(self, session: Session, table: Callable[[], list[list[Any]]], **settings: Any) -> None:
+        self.table = table
+        super().__init__(session, **settings)
+
+    def extras(self) -> list[Node]:
+        return [csv_button(self.session, "titration", self.table, text="CSV")]
+
+
 class TitrationView(View):
     """Controls, two plots over the dose, and the logarithmic diagram."""
 
@@ -64,10 +77,11 @@ class TitrationView(View):
         self.found: Found | None = None
         self.comparisons = Comparisons(session, self._compared)
         measured = MeasuredPanel(session, self.comparisons, self._against, self._sets)
-        self.controls = TitrationControls(session, measured, self.setting, self._keep, self._table)
+        self.controls = TitrationControls(session, measured, self.setting, self._keep)
         self.curves = LinkedPlots(list(CURVES), columns=1)
         self.species = LinkedPlots([DIAGRAM], columns=1, kind=DiagramPlot)
-        self.heads: dict[str, Head] = {name: Head(session) for name in CURVES}
+        first, second = CURVES
+        self.heads: dict[str, Head] = {first: CurveHead(session, self._table), second: Head(session)}
         self.heads[DIAGRAM] = FamiliesHead(session, lambda: self.found.species if self.found else None)
         self._memory = Memory()
         self._runner = Conflate(pn.state.curdoc)

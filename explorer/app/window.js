@@ -10,7 +10,7 @@ const LINE = 16.5, AROUND = 16, APART = 14
 
 function show(lines) {               // beside the pointer, and inside of the plot if there is room
   const far = (x - left) / (right - left) > 0.6
-  const height = LINE * lines.length + AROUND, room = figure.inner_height || 200
+  const height = LINE * lines.length + AROUND, room = heightOf(figure)
   const pointer = (top - y) / (top - bottom) * room
   const upper = Math.max(0, Math.min(pointer - height - APART, room - height))
   tip.data = {

@@ -146,7 +146,7 @@ def test_points_that_cannot_be_read_are_refused_by_line(view: TitrationView) -> 
 
 def test_curve_can_be_saved(view: TitrationView) -> None:
     """Dose, pH and buffer intensity, a line a point."""
-    heard(view, "csv")
+    view.heads["titration-ph"].report("csv")
     first, *rest = view.session.offered.text.lstrip("\ufeff").splitlines()
     assert first.startswith("Dose [meq/L],pH,Buffer intensity") and len(rest) == view.found.curve.x.size
 
