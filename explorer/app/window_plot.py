@@ -167,13 +167,13 @@ class WindowPlot:
         named = [(region, colour) for (region, *_), (colour, _) in zip(outlines, styles, strict=True)]
         if self.drawing.found.targets:
             named.append((picture.met, palette.ok))
-        named = [(region, colour) for region, colour in named if region.place is not None]
-        self.names.data = {
-            "x": [region.place[0] for region, _ in named],
-            "y": [region.place[1] for region, _ in named],
-            "text": [region.text for region, _ in named],
-            "colour": [colour for _, colour in named],
-        }
+        rows = [(*region.place, region.text, colour) for region, colour in named if region.place is not None]
+        # Bokeh 3.9 lays out texts again with their new colours before it knows that there are fewer of them,
+        # and fails; so their number never falls.
+        spare = len(self.names.data["text"]) - len(rows)
+        rows += [(np.nan, np.nan, "", palette.soft)] * spare
+        keys = ("x", "y", "text", "colour")
+        self.names.data = {key: [row[place] for row in rows] for place, key in enumerate(keys)}
 
     def _tell(self, drawn: Drawing) -> None:
         """What the page needs to say what is at the pointer."""
