@@ -92,6 +92,7 @@ class CompareView(View):
         self.head = ReadoutHead(session)
         self._memory = Memory()
         self._asked: tuple[Any, ...] = ()
+        self._made: tuple[Scenario | None, dict[str, list[Case]]] = (None, {})
         self.card = pn.Column(
             self.head, pn.pane.Bokeh(self.plots.plots[CURVE].figure, sizing_mode="stretch_both", margin=0),
             sizing_mode="stretch_both", margin=0, css_classes=["plot"], stylesheets=[PLOT_CARD_CSS],
@@ -121,8 +122,16 @@ class CompareView(View):
         return usual if any(self._cases(kind) for kind in usual) else ("sources",)
 
     def _cases(self, kind: str) -> list[Case]:
+        """Cases of a kind; made once for every scenario, for they are copies of all of it."""
         solved = self.session.solved
-        return [] if solved is None else KINDS[kind][1](solved)
+        if solved is None:
+            return []
+        if self._made[0] is not solved:
+            self._made = solved, {}
+        _, made = self._made
+        if kind not in made:
+            made[kind] = KINDS[kind][1](solved)
+        return made[kind]
 
     def cases(self) -> list[Case]:
         """The scenario as it stands, and what it is compared with."""
