@@ -9,13 +9,10 @@ from itertools import groupby
 from typing import Any
 
 import panel as pn
-from bokeh.models import Range1d, Span
-from bokeh.plotting import figure
 
 from explorer.app.bar_parts import OptionChips
 from explorer.app.entry import Entries
 from explorer.app.errand import REST, Errand, progress
-from explorer.app.line_plot import LinePlot
 from explorer.app.live_view import Node, node
 from explorer.app.look import COMPARE_GRID_CSS, PLOT_CARD_CSS, VIEW_HOST_CSS, Palette
 from explorer.app.plot_heads import ReadoutHead, readout_choice
@@ -68,13 +65,6 @@ class Curves:
     found: Sequence[tuple[Case, Sweep]]
 
 
-class OverlayPlot(LinePlot):
-    """A plot with room for the names of curves at its right."""
-
-    def _build(self, x_range: Range1d, point: Span, cross: Span, labels_right: bool) -> figure:
-        return super()._build(x_range, point, cross, True)
-
-
 class CompareView(View):
     """Table of what differs, and one readout along the sweeps of all cases."""
 
@@ -88,7 +78,7 @@ class CompareView(View):
         self.chips = OptionChips(session, Entries(), self._refresh)
         self.controls = Strip(self._controls)
         self.sheet = Sheet(self._sheet)
-        self.plots = LinkedPlots([CURVE], session.turn_along, columns=1, kind=OverlayPlot)
+        self.plots = LinkedPlots([CURVE], session.turn_along, columns=1, named=True)
         self.head = ReadoutHead(session)
         self._memory = Memory()
         self._asked: tuple[Any, ...] = ()

@@ -29,6 +29,7 @@ class LinkedPlots:
     The last of two ``columns`` has room for the names of curves; the lowest row carries the axis label.
     ``turned`` is called with the place the operating point was dragged or tapped to, in the dial's unit;
     without it the point is a mark that nobody moves. ``kind``: what the plots are.
+    ``named``: every plot has room for the names of curves.
     """
 
     def __init__(
@@ -37,6 +38,7 @@ class LinkedPlots:
         turned: Callable[[float], None] | None = None,
         columns: int = 2,
         kind: type[LinePlot] = LinePlot,
+        named: bool = False,
     ) -> None:
         self.turned = turned
         self.x_range = Range1d(0, 1)
@@ -53,7 +55,7 @@ class LinkedPlots:
         self.plots = {
             name: kind(
                 name, self.x_range, self.point, cross,
-                labels_right=index % columns == 1, x_label=index >= len(names) - columns,
+                labels_right=named or index % columns == 1, x_label=index >= len(names) - columns,
             )
             for index, name in enumerate(names)
         }  # fmt: skip
