@@ -21,6 +21,9 @@ from explorer.studies.finding import swept_name
 MOST_CHIPS = 4
 """More seasons or options than this are chosen from a list instead of chips."""
 
+FEW_SEASONS, FEW_OPTIONS = 2, 2
+"""So many chips fit into a narrow bar, too."""
+
 _RENAME = "rename:"
 """Begins the question for the name of an option."""
 
@@ -70,9 +73,15 @@ class Chips:
             aria_pressed=str(chosen).lower(), on=lambda value: choose(),
         )  # fmt: skip
 
-    def group(self, *parts: Node) -> Node:
+    def list(self, key: str, names: dict[str, str], now: str, choose: Callable[[str], object]) -> Node:
+        """The same choice as a list, shown where there is no room for chips."""
+        return self.entries.choice(key, self.word, names, now, choose, look="choice folded")
+
+    def group(self, *parts: Node, many: bool = False) -> Node:
+        """The group. many: of chips that give way to the list in a narrow bar."""
         label = node("span", "name", text=self.word)
-        return node("div", "group", label, *parts, role="group", aria_label=self.word)
+        look = "group many" if many else "group"
+        return node("div", look, label, *parts, role="group", aria_label=self.word)
 
 
 class SeasonChips(Chips):
@@ -89,14 +98,16 @@ class SeasonChips(Chips):
             return self.group(*self.name_field("season:name", "Name of the season", now, self._rename))
         if self.asking == "remove":
             return self.group(*self._confirm())
-        return self.group(*self._choices(), *menu("season", "More for the seasons", self._acts()))
+        more = menu("season", "More for the seasons", self._acts())
+        return self.group(*self._choices(), *more, many=len(self.scenario.seasons) > FEW_SEASONS)
 
     def _choices(self) -> list[Node]:
         seasons = self.scenario.seasons
+        names = {name: plain(name, 30) for name in seasons}
+        listed = [self.list("season", names, self.scenario.season, self._choose)]
         if len(seasons) > MOST_CHIPS:
-            names = {name: plain(name, 30) for name in seasons}
-            return [self.entries.choice("season", "Season", names, self.scenario.season, self._choose)]
-        return [
+            return listed
+        return (listed if len(seasons) > FEW_SEASONS else []) + [
             self.chip(
                 f"season:{place}", name, name == self.scenario.season, lambda name=name: self._choose(name)
             )
@@ -168,7 +179,8 @@ class OptionChips(Chips):
             return self.group(*self.renaming())
         chosen = self.chosen
         more = [] if chosen is None else self.more(chosen)
-        return self.group(*self._choices(), *more, *self.keeping())
+        many = len(self.scenario.options) > FEW_OPTIONS
+        return self.group(*self._choices(), *more, *self.keeping(), many=many)
 
     def keeping(self) -> list[Node]:
         """The button that keeps an option, or the field that asks for its name."""
@@ -195,11 +207,11 @@ class OptionChips(Chips):
     def _choices(self) -> list[Node]:
         kept = dict(zip(LETTERS, self.scenario.options, strict=False))
         chosen = self.chosen
+        names = {"": "no comparison"} | {o.name: plain(f"{letter} {o.name}", 40) for letter, o in kept.items()}
+        listed = [self.list("option", names, "" if chosen is None else chosen.name, self._pick)]
         if len(kept) > MOST_CHIPS:
-            names = {"": "none"} | {o.name: plain(f"{letter} {o.name}", 40) for letter, o in kept.items()}
-            now = "" if chosen is None else chosen.name
-            return [self.entries.choice("option", "Compare with option", names, now, self._choose)]
-        return [
+            return listed
+        return (listed if len(kept) > FEW_OPTIONS else []) + [
             self.chip(
                 f"option:{letter}", f"Compare with {letter} {option.name}", option is chosen,
                 lambda name=option.name: self._choose(name),
@@ -231,6 +243,9 @@ class OptionChips(Chips):
             name = swept_name(dial).strip("()")
             wish = f"{show_number(dial.value)} {dial.unit} {name}".replace("  ", " ")
         return options.free_name(self.scenario, wish)
+
+    def _pick(self, name: str) -> None:
+        self.session.choose(option=name)
 
     def _choose(self, name: str) -> None:
         chosen = self.chosen

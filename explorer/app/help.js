@@ -43,12 +43,13 @@ export function render({ model }) {
     }
   }
   // Plots keep the size they have on the screen; the paper is told how wide that is.
-  const PAPER = 1030   // A4 landscape between its margins, CSS pixels
+  const PAPER = [1030, 700]   // A4 landscape between its margins, CSS pixels
   const onPrint = () => {
     const width = document.querySelector("#main").clientWidth, style = document.documentElement.style
     style.setProperty("--page-width", `${width}px`)
-    style.setProperty("--views-height", `${document.querySelector("#main > .views").clientHeight}px`)
-    style.setProperty("--paper", Math.min(1, PAPER / width))
+    style.setProperty("--views-height", `${document.querySelector("#main > .views").clientHeight + 40}px`)
+    const height = document.querySelector("#main").scrollHeight + 200   // the bar, and one more row of readouts
+    style.setProperty("--paper", Math.min(1, PAPER[0] / width, PAPER[1] / height))
   }
   window.addEventListener("beforeprint", onPrint)
   document.addEventListener("keydown", onKey)
