@@ -207,7 +207,9 @@ class OptionChips(Chips):
     def _choices(self) -> list[Node]:
         kept = dict(zip(LETTERS, self.scenario.options, strict=False))
         chosen = self.chosen
-        names = {"": "no comparison"} | {o.name: plain(f"{letter} {o.name}", 40) for letter, o in kept.items()}
+        names = {"": "no comparison"} | {
+            o.name: plain(f"{letter} {o.name}", 40) for letter, o in kept.items()
+        }
         listed = [self.list("option", names, "" if chosen is None else chosen.name, self._pick)]
         if len(kept) > MOST_CHIPS:
             return listed

@@ -66,7 +66,6 @@ class Dial:
         within = np.isfinite(values) & (values <= (np.inf if self.high is None else self.high))
         return within & (values >= self.low) if self.bounded else within
 
-
     def nearest(self, value: float) -> float:
         """The step within the limits that is nearest to a place that was pointed at."""
         value = round(round(value / self.step) * self.step, 10)

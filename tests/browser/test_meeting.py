@@ -27,7 +27,9 @@ def test_meeting_view_is_large_and_fits_the_screen(
     assert page.evaluate("document.documentElement.scrollWidth") <= width
     main = page.locator("#main")
     assert main.evaluate("e => e.scrollHeight <= e.clientHeight + 1")
-    screen.until(lambda: "winter · 6.8 °C" in page.locator("#strip .now").inner_text(), "season and temperature")
+    screen.until(
+        lambda: "winter · 6.8 °C" in page.locator("#strip .now").inner_text(), "season and temperature"
+    )
 
 
 def test_dials_on_the_strip_and_in_the_large_plot(screen: Any) -> None:
