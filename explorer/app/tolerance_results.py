@@ -16,6 +16,7 @@ from explorer.scenario.readouts import READOUTS, Readout, format_value
 from explorer.scenario.words import brief_label, number_text, range_text
 from explorer.studies.corners import Extreme
 from explorer.studies.ranking import Rank, Ranking
+from explorer.studies.spread import Input
 from explorer.studies.spread_pictures import MOST_PERCENT, chance_text
 from explorer.studies.spread_survey import Survey
 
@@ -81,7 +82,7 @@ class Figures(Card):
         heading = [f"{unit}" if unit else "", "lowest", "highest"]
         parts = [node("h3", text=title), table(title, heading, rows, look="loose")]
         if found.here is not None:
-            parts.append(_corner(found.here))
+            parts.append(_corner(found.here, study.inputs))
         return parts
 
     def _pair(self, readout: Readout, pair: tuple[Extreme, Extreme] | None, place: bool) -> list[str | Node]:
@@ -111,17 +112,15 @@ def _chance(text: str, part: float, look: str = "") -> Node:
     )
 
 
-def _corner(pair: tuple[Extreme, Extreme]) -> Node:
+def _corner(pair: tuple[Extreme, Extreme], inputs: Sequence[Input]) -> Node:
     """Which way everything is off at both extremes here."""
     low, high = pair
     lines = [
-        Row([plain(label, 90), _end(low.places[label]), _end(high.places[label])])
-        for label in low.places
-        if low.places[label] or high.places[label]
+        Row([plain(part.label, 90), _end(low.places[part.name]), _end(high.places[part.name])])
+        for part in inputs
+        if low.places[part.name] or high.places[part.name]
     ]
-    inside = (
-        "" if low.corner and high.corner else " Not all stand at an end: an extreme lies between the ends."
-    )
+    inside = "" if low.corner and high.corner else " An extreme lies between the ends."
     return node(
         "details", "corner", node("summary", text="What is off, and which way"),
         node("p", "hint", text=f"Between −1 and +1: part of the tolerance.{inside}"),
