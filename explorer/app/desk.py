@@ -41,6 +41,7 @@ class Desk:
     opened: key of the card that shows its details ("" for none, one at a time). unfolded: key of the analysis
     row that shows its note. naming: key of the card being renamed. originals: entries as they were before
     their unit was changed. pasting: the laboratory sheet being taken over (``paste_panel.Pasting``), or None.
+    defining: the substance of the user's own being defined (``own_substance.Definition``), or None.
     """
 
     def __init__(self, session: Session) -> None:
@@ -49,6 +50,7 @@ class Desk:
         self.opened = self.unfolded = self.naming = ""
         self.originals = Originals()
         self.pasting: Any = None
+        self.defining: Any = None
         self._reach: dict[str, float] = {}
         self._examined: tuple[Any, Examination] | None = None
 

@@ -5,6 +5,7 @@ from dataclasses import replace
 
 from explorer.app.desk import Desk, facts
 from explorer.app.live_view import Node, node
+from explorer.app.own_substance import KINDS, Definition, own_choices, own_panel
 from explorer.app.pickers import Act, Choice, menu, picker
 from explorer.app.step_form import chemical_choices, main_dial, step_form
 from explorer.app.text import in_sentence, unit_text
@@ -155,6 +156,9 @@ def add_step(desk: Desk, prefix: str) -> list[Node]:
 
     def add(choice: str) -> None:
         kind, _, chemical = choice.partition(":")
+        if kind in KINDS:
+            desk.defining = Definition(kind, prefix)
+            return
 
         def change(scenario: Scenario) -> None:
             desk.opened = f"{prefix}train.{editing.add_step(scenario, prefix, kind, chemical or None)}"
@@ -167,6 +171,10 @@ def add_step(desk: Desk, prefix: str) -> list[Node]:
         if step is not DoseStep and not (prefix and step.after_joining)
     ]
     doses = [replace(choice, key=f"dose:{choice.key}") for choice in chemical_choices(desk.scenario)]
-    groups = {"Dose a chemical": doses, "Other steps": kinds}
+    groups = {"Dose a chemical": doses, "Other steps": kinds, "Your own": own_choices()}
     words = "+ Add a treatment step" if not prefix else "+ Add a step"
-    return [*picker(key, words, groups, add, hint="Search chemicals and steps"), desk.refusal(key)]
+    return [
+        *picker(key, words, groups, add, hint="Search chemicals and steps"),
+        desk.refusal(key),
+        *own_panel(desk, prefix),
+    ]
