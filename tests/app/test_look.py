@@ -61,7 +61,8 @@ def test_views_use_only_colours_of_the_palette() -> None:
     sheets = "".join(styles(("look.css", "views.css", "live_view.css", "rail.css")))
     own = re.findall(r"(--[\w-]+)\s*:", sheets + css_variables(PALETTES["light"]))
     set_by_nodes = {"--from", "--wide", "--at", "--filled", "--colour"}
-    assert set(re.findall(r"var\((--[\w-]+)", sheets)) <= set(own) | set_by_nodes
+    set_by_scripts = {"--page-width", "--paper", "--views-height"}
+    assert set(re.findall(r"var\((--[\w-]+)", sheets)) <= set(own) | set_by_nodes | set_by_scripts
 
 
 def test_nothing_is_loaded_from_elsewhere() -> None:
