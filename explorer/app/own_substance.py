@@ -97,7 +97,8 @@ class _Panel:
         where, sentence = self.definition.refused
         refused = message(sentence if where == name else "")
         if name == "like":
-            options = {"": "none, a new substance"} | {key: chemical.name for key, chemical in CATALOGUE.items()}
+            options = {"": "none, a new substance"}
+            options |= {own: chemical.name for own, chemical in CATALOGUE.items()}
             box = self.desk.entries.choice(key, declared.label, options, entered, self._keep(name))
             return [caption, box, refused]
         box = node(
