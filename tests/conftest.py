@@ -1,7 +1,9 @@
 """Invented waters and a builder of scenarios, shared by the specifications of the upper floors."""
 
-from collections.abc import Callable
+import os
+from collections.abc import Callable, Iterator
 from copy import deepcopy
+from pathlib import Path
 from typing import Any
 
 import pytest
@@ -12,6 +14,13 @@ from explorer.scenario.model import Scenario
 # how long an example takes depends on the machine and says nothing about the rule it tests
 settings.register_profile("no deadline", deadline=None)
 settings.load_profile("no deadline")
+
+CHROMIUM = os.environ.get("CHROMIUM", "/usr/bin/chromium")
+FLAGS = (
+    "--no-sandbox",
+    "--disable-dev-shm-usage",
+    "--host-resolver-rules=MAP * ~NOTFOUND , EXCLUDE 127.0.0.1",
+)
 
 UNITS = {
     "temperature": "°C",
@@ -114,3 +123,15 @@ class Maker:
 def plant() -> Callable[..., Scenario]:
     """Builder of scenarios, with the helpers that make their parts."""
     return Maker()
+
+
+@pytest.fixture(scope="session")
+def browser() -> Iterator[Any]:
+    """A Chromium that reaches this machine and nothing else; skipped where there is none."""
+    playwright = pytest.importorskip("playwright.sync_api")
+    if not Path(CHROMIUM).exists():
+        pytest.skip(f"no browser at {CHROMIUM}")
+    with playwright.sync_playwright() as driver:
+        chromium = driver.chromium.launch(executable_path=CHROMIUM, args=list(FLAGS))
+        yield chromium
+        chromium.close()

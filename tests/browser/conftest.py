@@ -1,11 +1,9 @@
 """A served page and a browser to drive it; every page also has to be free of errors and foreign requests."""
 
-import os
 import time
 import urllib.error
 import urllib.request
 from collections.abc import Callable, Iterator
-from pathlib import Path
 from typing import Any
 
 import pytest
@@ -13,12 +11,6 @@ import pytest
 from explorer.app.serve import free_port, serve
 
 WAIT_MS = 15_000
-CHROMIUM = os.environ.get("CHROMIUM", "/usr/bin/chromium")
-FLAGS = (
-    "--no-sandbox",
-    "--disable-dev-shm-usage",
-    "--host-resolver-rules=MAP * ~NOTFOUND , EXCLUDE 127.0.0.1",
-)
 IDLE = "window.Bokeh && Bokeh.documents.length > 0 && Bokeh.documents[0].is_idle"
 
 _FRAME = """
@@ -118,18 +110,6 @@ class Screen:
             mouse.move(*self.point_at(plot, start + (stop - start) * step / 10))
             self.page.wait_for_timeout(20)
         mouse.up()
-
-
-@pytest.fixture(scope="session")
-def browser() -> Iterator[Any]:
-    """A Chromium that reaches this machine and nothing else; skipped where there is none."""
-    playwright = pytest.importorskip("playwright.sync_api")
-    if not Path(CHROMIUM).exists():
-        pytest.skip(f"no browser at {CHROMIUM}")
-    with playwright.sync_playwright() as driver:
-        chromium = driver.chromium.launch(executable_path=CHROMIUM, args=list(FLAGS))
-        yield chromium
-        chromium.close()
 
 
 @pytest.fixture(scope="session")

@@ -1,6 +1,5 @@
 """The report in a browser, straight from the disk: complete without a network, and on paper."""
 
-import os
 from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
@@ -10,28 +9,13 @@ import pytest
 from explorer.report import report_html
 from tests.report.conftest import hostile_plant
 
-CHROMIUM = os.environ.get("CHROMIUM", "/usr/bin/chromium")
-FLAGS = ("--no-sandbox", "--disable-dev-shm-usage", "--host-resolver-rules=MAP * ~NOTFOUND")
-
 pytestmark = pytest.mark.browser
 
 
-@pytest.fixture(scope="module")
-def chromium() -> Iterator[Any]:
-    """A Chromium that reaches nothing but the disk; skipped where there is none."""
-    playwright = pytest.importorskip("playwright.sync_api")
-    if not Path(CHROMIUM).exists():
-        pytest.skip(f"no browser at {CHROMIUM}")
-    with playwright.sync_playwright() as driver:
-        browser = driver.chromium.launch(executable_path=CHROMIUM, args=list(FLAGS))
-        yield browser
-        browser.close()
-
-
 @pytest.fixture
-def opened(chromium: Any, tmp_path: Path) -> Iterator[Any]:
+def opened(browser: Any, tmp_path: Path) -> Iterator[Any]:
     """Opens a page from a file; it must ask for nothing else and say nothing in the console."""
-    context = chromium.new_context(viewport={"width": 1280, "height": 720}, offline=True)
+    context = browser.new_context(viewport={"width": 1280, "height": 720}, offline=True)
     page, asked, said = context.new_page(), [], []
     page.on("request", lambda request: asked.append(request.url))
     page.on("console", lambda message: said.append(message.text))
