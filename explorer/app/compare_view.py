@@ -149,10 +149,7 @@ class CompareView(View):
 
     def _start(self, rest: float = 0.0) -> None:
         cases = self.cases()
-        if self.curves is None and self.session.swept is not None:
-            # The curve that is there already, until the others have been worked out.
-            self.curves = Curves(cases, [(cases[0], self.session.swept)])
-        self.show()
+        self._refresh()
 
         def work(watch: Any) -> Iterator[Comparison | Curves]:
             yield compare(cases)

@@ -126,11 +126,7 @@ class TitrationView(View):
             return
         scenario, point = self.session.solved, self.session.point
         self.controls.refresh()
-        if self.found is None:
-            # The first one at once: a view that opens empty looks broken.
-            self._take(worked_out(wanted, scenario, point))
-        else:
-            self._runner.submit(lambda: worked_out(wanted, scenario, point), self._take)
+        self._runner.submit(lambda: worked_out(wanted, scenario, point), self._take)
         if not same:
             self.comparisons.follow()
 
