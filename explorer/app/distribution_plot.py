@@ -11,7 +11,7 @@ from bokeh.plotting import figure
 from explorer.app.look import BAR_ALPHA, LIGHT, LINE_WIDTH, Palette
 from explorer.app.plot_parts import lettered, put, ticks
 from explorer.scenario.readouts import format_value
-from explorer.scenario.words import unit_text
+from explorer.scenario.words import compact, unit_text
 from explorer.studies.spread_pictures import Distribution
 
 MARKS = ("2.5 %", "median", "97.5 %")
@@ -73,7 +73,8 @@ class DistributionPlot:
         if found.band is not None:
             self.band.update(left=found.band[0], right=found.band[1])
         unit = unit_text(found.readout.unit)
-        label = f"{found.readout.label}, {unit}" if unit else found.readout.label
+        name = compact(found.readout.label)
+        label = f"{name}, {unit}" if unit else name
         axis = self.figure.xaxis[0]
         if getattr(axis.axis_label, "text", None) != label:
             axis.axis_label = PlainText(label)

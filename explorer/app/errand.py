@@ -43,14 +43,19 @@ _T = TypeVar("_T")
 class _Order:
     """One calculation that was asked for: what it does, how far it is, and whether it is still wanted."""
 
-    def __init__(self, work: Work, show: Callable[[Any], None]) -> None:
-        self.work, self.show = work, show
+    def __init__(self, work: Work, show: Callable[[Any], None], inputs: Callable[[], str]) -> None:
+        self.work, self.show, self.inputs = work, show, inputs
+        self.key = ""
         self.part = 0.0
         self.began = time.monotonic()
         self.unwanted = threading.Event()
 
-    def watch(self) -> Watch:
-        return Watch(self._progress, self.unwanted.is_set)
+    def begin(self, known: str) -> Iterator[Any]:
+        """The results to come, none where the inputs are those ``known``."""
+        self.key = self.inputs()
+        if self.key and self.key == known:
+            return iter(())
+        return iter(self.work(Watch(self._progress, self.unwanted.is_set)))
 
     def _progress(self, part: float) -> None:
         self.part = part
@@ -72,6 +77,7 @@ class Errand(param.Parameterized):
         self._document = pn.state.curdoc
         self._pool = pool
         self._order: _Order | None = None
+        self._known = ""
         self._tasks: set[asyncio.Task[None]] = set()
 
     @property
@@ -79,10 +85,20 @@ class Errand(param.Parameterized):
         """Whether a calculation is going on or waits for the inputs to rest."""
         return self._order is not None
 
-    def start(self, work: Work, show: Callable[[Any], None], rest: float = REST) -> None:
-        """Calculate ``work`` once the inputs have been at ``rest`` and show each of its results."""
+    def start(
+        self,
+        work: Work,
+        show: Callable[[Any], None],
+        rest: float = REST,
+        inputs: Callable[[], str] = str,
+    ) -> None:
+        """Calculate ``work`` once nothing else has been started for ``rest`` seconds; show each result.
+
+        inputs: puts into words everything the results depend on, "" for no words; what was the last to be
+        shown to its end is not calculated again. It may take its time, as ``work`` may.
+        """
         self.drop()
-        order = self._order = _Order(work, show)
+        order = self._order = _Order(work, show, inputs)
         try:
             loop = asyncio.get_running_loop()
         except RuntimeError:
@@ -99,6 +115,11 @@ class Errand(param.Parameterized):
             self._order = None
         self.param.update(busy=False, stopped=False)
 
+    def forget(self) -> None:
+        """What is under way is wanted no longer, and what was shown is shown no longer."""
+        self.drop()
+        self._known = ""
+
     def stop(self) -> None:
         """The user does not want to wait."""
         under_way = self.under_way
@@ -108,8 +129,8 @@ class Errand(param.Parameterized):
     def _at_once(self, order: _Order) -> None:
         refusal = ""
         try:
-            for result in order.work(order.watch()):
-                order.show(result)
+            for result in order.begin(self._known):
+                self._show(order, result)
         except Stopped:
             pass
         except ValueError as error:
@@ -125,12 +146,12 @@ class Errand(param.Parameterized):
         try:
             if order.unwanted.is_set():
                 return
-            results = await self._patiently(order, lambda: iter(order.work(order.watch())))
+            results = await self._patiently(order, lambda: order.begin(self._known))
             while (result := await self._patiently(order, lambda: next(results, _END))) is not _END:
                 if order.unwanted.is_set():
                     return
                 with on_page(self._document):
-                    order.show(result)
+                    self._show(order, result)
         except Stopped:
             return
         except ValueError as error:
@@ -150,9 +171,14 @@ class Errand(param.Parameterized):
                     self.param.update(busy=True, part=order.part)
         return future.result()
 
+    def _show(self, order: _Order, result: Any) -> None:
+        self._known = ""
+        order.show(result)
+
     def _finish(self, order: _Order, refusal: str) -> None:
         if order is self._order:
             self._order = None
+            self._known = "" if refusal else order.key
             self.param.update(busy=False, part=0.0, refusal=refusal)
 
 

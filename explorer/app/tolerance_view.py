@@ -105,7 +105,7 @@ class DistributionHead(LiveView):
         shown = self.owner.distribution
         words = shown.most if shown is not None else ""
         return node(
-            "div", "head", node("h3", "title", text="At the operating point"),
+            "div", "head", node("h3", "title", text="Operating point"),
             node("span", "note", text=words, title=words),
         )  # fmt: skip
 
@@ -120,7 +120,6 @@ class ToleranceView(View):
         self.errand = Errand()
         self.found: Survey | None = None
         self.distribution: Distribution | None = None
-        self._asked = ""
         self._memory = Memory()
         self._limits: dict[str, Limits] = {}
         self.plots = LinkedPlots((FAN,), session.turn_along, columns=1)
@@ -156,13 +155,10 @@ class ToleranceView(View):
 
     def closed(self) -> None:
         super().closed()
-        if self.errand.under_way:
-            self._asked = ""
         self.errand.drop()
 
     def again(self) -> None:
         """Begin the survey anew."""
-        self._asked = ""
         self._calculate(rest=0.0)
 
     def follow(self, changed: set[str]) -> None:
@@ -183,16 +179,12 @@ class ToleranceView(View):
     # ---- the survey ----------------------------------------------------------------------------------
 
     def _calculate(self, rest: float) -> None:
-        """Begin a new survey unless the one shown, or under way, is of the same inputs."""
+        """Begin a new survey unless the one shown is of the same inputs."""
         scenario, setting = self.session.solved, settings.setting(self.session)
         if scenario is None:
             return
-        inputs = setting.inputs(scenario)
-        if inputs == self._asked:
-            return
-        self._asked = inputs
         if not settings.anything_off(self.session):
-            self.errand.drop()
+            self.errand.forget()
             self.found = None
             self.controls.refresh()
             return
@@ -200,7 +192,7 @@ class ToleranceView(View):
         def work(watch: Watch) -> Iterator[Survey]:
             return survey(scenario, setting.readout, setting.samples, setting.seed, watch)
 
-        self.errand.start(work, self._show, rest)
+        self.errand.start(work, self._show, rest, lambda: setting.inputs(scenario))
 
     def _show(self, found: Survey) -> None:
         self.found = found

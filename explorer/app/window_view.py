@@ -131,7 +131,6 @@ class WindowView(View):
         self.choices = WindowChoices(session)
         self.errand = Errand()
         self.drawn: Drawing | None = None
-        self._asked = ""
         self.controls = WindowControls(session, self.choices)
         self.plot = WindowPlot(self.set_dials)
         self.legend = MapLegend(self)
@@ -158,13 +157,10 @@ class WindowView(View):
 
     def closed(self) -> None:
         super().closed()
-        if self.errand.under_way:
-            self._asked = ""
         self.errand.drop()
 
     def again(self) -> None:
         """Begin the map anew."""
-        self._asked = ""
         self._calculate(rest=0.0)
 
     def follow(self, changed: set[str]) -> None:
@@ -200,14 +196,10 @@ class WindowView(View):
     # ---- the map -------------------------------------------------------------------------------------
 
     def _calculate(self, rest: float) -> None:
-        """Begin a new map unless the one shown, or under way, is of the same inputs."""
+        """Begin a new map unless the one shown is of the same inputs."""
         setting, scenario = self.choices.setting(), self.session.solved
         if setting is None or scenario is None:
             return
-        inputs = setting.inputs(scenario)
-        if inputs == self._asked:
-            return
-        self._asked = inputs
 
         def work(watch: Watch) -> Iterator[Drawing]:
             maps = window(
@@ -216,7 +208,7 @@ class WindowView(View):
             )  # fmt: skip
             return (drawing(found, setting.readout) for found in maps)
 
-        self.errand.start(work, self._show, rest)
+        self.errand.start(work, self._show, rest, lambda: setting.inputs(scenario))
 
     def _show(self, drawn: Drawing) -> None:
         self.drawn = drawn

@@ -156,6 +156,24 @@ def test_refusal_is_kept_until_the_next_success(in_loop: bool) -> None:
         assert errand.refusal == "nothing may be off"
 
 
+def test_what_is_shown_to_its_end_is_not_calculated_again() -> None:
+    """Only other inputs are; what was stopped half-way, or has been forgotten, is calculated anew."""
+    shown, errand = [], Errand()
+
+    def start(results: str, inputs: str) -> None:
+        errand.start(lambda watch: iter(results), shown.append, inputs=lambda: inputs)
+
+    start("ab", "one")
+    start("cd", "one")
+    assert shown == ["a", "b"]
+    start("ef", "two")
+    start("gh", "one")
+    assert "".join(shown) == "abefgh"
+    errand.forget()
+    start("i", "one")
+    assert shown[-1] == "i"
+
+
 def test_unforeseen_error_is_a_sentence_and_not_a_traceback(caplog: pytest.LogCaptureFixture) -> None:
     """The log has the rest."""
 
