@@ -30,7 +30,7 @@ MAX_STEP = 2.0
 NEAR = 0.3
 """Largest change of any ln activity for which the ionic strength is changed with Newton too."""
 MAX_ITERATIONS = 100
-CHUNK = 2048
+CHUNK = 4096
 """Points worked on together, so that the arrays of one step stay in the processor's cache."""
 ABSENT = -3000.0
 """ln activity given to a component whose total is zero: every species with it underflows to exactly 0."""
