@@ -102,6 +102,7 @@ def _parser() -> argparse.ArgumentParser:
     sweep.add_argument("--stop", type=number, metavar="B", help="last value")
     sweep.add_argument("--points", type=int, metavar="N", help="number of values")
     sweep.add_argument("--readouts", metavar="K1,K2", help="readouts, separated by commas")
+    sweep.add_argument("--stage", default="finished", metavar="S", help="stage; %(default)s without it")
     form = sweep.add_mutually_exclusive_group()
     form.add_argument("--csv", metavar="OUT", help="write a CSV file; - for the screen")
     form.add_argument("--json", action="store_true", help="print JSON")
@@ -159,12 +160,12 @@ def _sweep(options: argparse.Namespace) -> None:
             raise ScenarioError("", unknown(key, "a readout", READOUTS))
     swept = sweep(scenario, options.dial, options.start, options.stop, options.points, options.season, dials)
     if options.json:
-        print(json.dumps(swept.to_dict(readouts), ensure_ascii=False))
+        print(json.dumps(swept.to_dict(readouts, options.stage), ensure_ascii=False))
         return
     if options.csv is None:
-        print("\n".join(_swept_text(swept, readouts)))
+        print("\n".join(_swept_text(swept, readouts, options.stage)))
         return
-    text = csv_text(swept.table(readouts))
+    text = csv_text(swept.table(readouts, options.stage))
     if options.csv == "-":
         sys.stdout.write(text)
     else:
@@ -329,12 +330,12 @@ def _band(target: Target) -> str:
     return f"from {target.low:g}" if target.high is None else f"{target.low:g} to {target.high:g}"
 
 
-def _swept_text(swept: "Sweep", keys: Sequence[str]) -> Iterator[str]:
+def _swept_text(swept: "Sweep", keys: Sequence[str], stage: str) -> Iterator[str]:
     readouts = [READOUTS[key] for key in keys]
     columns = [[swept.dial.label, swept.dial.unit, *map(entered, swept.x)]]
     for readout in readouts:
-        values = swept.outcome.readout(readout.key)
+        values = swept.outcome.readout(readout.key, stage)
         columns.append([readout.short, readout.unit, *(format_value(value, readout) for value in values)])
     columns += [[label, unit, *map(entered, values)] for label, unit, values in swept.held()]
-    columns.append(["", "", *swept.outcome.reasons().tolist()])
+    columns.append(["", "", *swept.outcome.reasons(stage).tolist()])
     yield from aligned(list(zip(*columns, strict=True)), right=range(len(columns) - 1))

@@ -155,6 +155,18 @@ def test_sweep_prints_json_of_the_agreed_shape(run, written, raw):
     assert answer["readouts"]["calcium"] == pytest.approx([26, 48.5, 71])
 
 
+def test_a_sweep_can_look_at_any_stage(run, written, raw):
+    """The blend and the source waters have readouts as the finished water has."""
+    asked = ("sweep", written(raw), "--start", "0", "--stop", "100", "--points", "2", "--readouts", "ph")
+    found = {}
+    for stage in ("river", "well", "blend", "finished"):
+        status, out, _ = run(*asked, "--stage", stage, "--json")
+        assert status == 0
+        found[stage] = json.loads(out)["readouts"]["ph"]
+    assert found["blend"] == pytest.approx([found["river"][0], found["well"][1]], abs=1e-9)
+    assert found["finished"][0] > found["blend"][0]
+
+
 def test_sweep_writes_csv(run, written, raw, tmp_path):
     """A heading with units and a row a point; without readouts asked for, those of the targets."""
     target = tmp_path / "out.csv"
@@ -330,6 +342,7 @@ def test_missing_files_and_folders_are_refused(run, tmp_path):
         (["sweep", "FILE", "--points", "many"], "--points"),
         (["sweep", "FILE", "--start", "5", "--stop", "5"], "no range"),
         (["sweep", "FILE", "--readouts", "ph,redness"], '"redness" is not a readout'),
+        (["sweep", "FILE", "--stage", "hypoo"], '"hypoo" is not a stage'),
         (["sweep", "FILE", "--json", "--csv", "x.csv"], "not allowed with"),
         (["sweep", "FILE", "--csv", "no/such/folder/x.csv"], "no such file"),
         (["sweep", "FILE", "--set", "waters.well.share=5", "--dial", "waters.well.share"], "swept and set"),

@@ -14,6 +14,8 @@ from explorer.studies.sweep import Sweep, sweep
 logger = logging.getLogger(__name__)
 
 Questions = Iterable[Callable[[Outcome], None]]
+Wanted = tuple[str, str]
+"""A readout and the stage it is wanted at."""
 
 
 @dataclass(frozen=True)
@@ -43,9 +45,17 @@ class Immediate:
         apply(compute())
 
 
+def warm(wanted: Iterable[Wanted], *outcomes: Outcome) -> None:
+    """Work out readouts before they are asked for; stages that an outcome does not have are passed over."""
+    for key, stage in wanted:
+        for outcome in outcomes:
+            if stage in outcome:
+                outcome.readout(key, stage)
+
+
 def solve(
     scenario: Scenario,
-    wanted: Iterable[str] = (),
+    wanted: Iterable[Wanted] = (),
     questions: Questions = (),
     swept: Sweep | None = None,
     curve: int = 0,
@@ -59,9 +69,7 @@ def solve(
     try:
         point = evaluate(scenario)
         swept = swept or sweep(scenario)
-        for key in wanted:
-            point.readout(key)
-            swept.outcome.readout(key)
+        warm(wanted, point, swept.outcome)
         for question in questions:
             question(point)
     except ValueError as error:

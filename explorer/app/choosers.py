@@ -11,6 +11,7 @@ from explorer.app.pickers import Choice, picker
 from explorer.app.state import Session
 from explorer.app.text import compact, plain, unit_text
 from explorer.scenario.dials import Dial
+from explorer.scenario.outcome import BLEND, FINISHED, Outcome
 from explorer.scenario.readouts import READOUTS
 from explorer.scenario.words import brief_label
 from explorer.studies.axes import nice_step
@@ -61,6 +62,26 @@ def readout_picker(
         groups.setdefault(readout.group, []).append(line)
     label = f"{brief_label(READOUTS[chosen])} ▾"
     return picker(key, label, groups, choose, look=look, hint="Search readouts", title=title)
+
+
+def stage_picker(
+    key: str,
+    point: Outcome,
+    chosen: str,
+    choose: Callable[[str], object],
+    title: str,
+    look: str = "button",
+) -> list[Node]:
+    """A button with the chosen place of the plant on it, and the searchable list of all places."""
+    waters = [stage for stage in point.stages if stage.kind == "water"]
+    steps = [stage for stage in point.stages if stage.kind not in ("water", "blend")]
+    groups = {
+        "Plant": [Choice(FINISHED, "Finished water"), Choice(BLEND, "Blend")],
+        "Source waters": [Choice(stage.id, plain(stage.name, 60)) for stage in waters],
+        "Behind a step": [Choice(stage.id, plain(stage.name, 60)) for stage in steps],
+    }
+    names = {choice.key: choice.label for choices in groups.values() for choice in choices}
+    return picker(key, f"{names[chosen]} ▾", groups, choose, look=look, hint="Search places", title=title)
 
 
 def range_fields(

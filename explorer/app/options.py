@@ -8,7 +8,7 @@ from typing import Any
 
 import numpy as np
 
-from explorer.app.calculation import Immediate, Runner
+from explorer.app.calculation import Immediate, Runner, Wanted, warm
 from explorer.app.state import Session
 from explorer.scenario.evaluate import Outcome, evaluate
 from explorer.scenario.readouts import MINUS, Readout, format_value
@@ -116,7 +116,7 @@ def _results(
     cases: Sequence[Case],
     drawn: Sequence[Case],
     line: tuple[str, float, float, int] | None,
-    wanted: frozenset[str],
+    wanted: frozenset[Wanted],
 ) -> tuple[Kept, ...]:
     """Results of all cases; ``first`` gives the dial that the curves of the ``drawn`` ones run along."""
     curves: dict[str, Sweep] = {}
@@ -132,9 +132,6 @@ def _results(
         except ValueError:
             point = None
         swept = curves.get(case.name)
-        for key in wanted:
-            for outcome in (point, swept.outcome if swept is not None else None):
-                if outcome is not None:
-                    outcome.readout(key)
+        warm(wanted, *(part for part in (point, swept and swept.outcome) if part is not None))
         found.append(Kept(case, point, swept))
     return tuple(found)

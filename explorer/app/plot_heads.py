@@ -4,14 +4,15 @@ from __future__ import annotations
 
 from typing import Any
 
+from explorer.app.choosers import readout_picker, stage_picker
 from explorer.app.entry import Entries
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
-from explorer.app.pickers import Choice, picker, segments
+from explorer.app.pickers import segments
 from explorer.app.state import Session
-from explorer.app.text import compact, plain, unit_text
+from explorer.app.text import plain
+from explorer.scenario.outcome import FINISHED
 from explorer.scenario.readouts import READOUTS
-from explorer.scenario.words import brief_label
 from explorer.studies.pictures import Picture
 
 FAMILIES = ("carbonate", "chlorine", "ammonia", "phosphate", "silicate", "borate")
@@ -29,6 +30,13 @@ def readout_choice(session: Session) -> str:
     """Readout of the fourth plot."""
     key = session.choices.get("readout", DEFAULT_READOUT)
     return key if key in READOUTS else DEFAULT_READOUT
+
+
+def stage_choice(session: Session, plot: str) -> str:
+    """Where in the plant a plot looks; a place that is gone falls back to the finished water."""
+    stage, point = session.choices.get(f"{plot} stage", FINISHED), session.point
+    there = point is not None and stage in point and stage != point.stages[-1].id
+    return stage if there else FINISHED
 
 
 def family_names(session: Session) -> dict[str, str]:
@@ -71,6 +79,16 @@ class Head(LiveView):
         """The title, or the control that chooses what it names."""
         return [node("h3", "title", text=self.said[0])]
 
+    def place(self, plot: str) -> list[Node]:
+        """The choice of the place in the plant that a plot looks at."""
+        session = self.session
+        if session.point is None:
+            return []
+        return stage_picker(
+            "stage", session.point, stage_choice(session, plot),
+            lambda stage: session.choose(**{f"{plot} stage": stage}), "Where in the plant", look="pick place",
+        )  # fmt: skip
+
     def extras(self) -> list[Node]:
         """Controls at the right end."""
         return []
@@ -82,7 +100,8 @@ class SpeciesHead(Head):
     def heading(self) -> list[Node]:
         names = {key: f"{name[:1].upper()}{name[1:]}" for key, name in family_names(self.session).items()}
         shown = family_choice(self.session)
-        return [self.entries.choice("family", "Family of species", names, shown, self._show, look="pick")]
+        family = self.entries.choice("family", "Family of species", names, shown, self._show, look="pick")
+        return [family, *self.place("species")]
 
     def extras(self) -> list[Node]:
         scales = {"share": ("%", "Percent of the family"), "log": ("log", "log₁₀ of mol/L")}
@@ -100,16 +119,14 @@ class ReadoutHead(Head):
     """Chooses the readout."""
 
     def heading(self) -> list[Node]:
-        groups: dict[str, list[Choice]] = {}
-        for readout in READOUTS.values():
-            words = f"{readout.short} {readout.key}"
-            line = Choice(readout.key, compact(readout.label), unit_text(readout.unit), words)
-            groups.setdefault(readout.group, []).append(line)
-        label = brief_label(READOUTS[readout_choice(self.session)])
-        return picker(
-            "readout", f"{label} ▾", groups, self._show, look="pick", hint="Search readouts",
-            title="Choose the readout of this plot",
-        )  # fmt: skip
+        readout = readout_picker(
+            "readout",
+            readout_choice(self.session),
+            self._show,
+            "Choose the readout of this plot",
+            look="pick",
+        )
+        return [*readout, *self.place("chosen")]
 
     def _show(self, key: str) -> None:
         self.session.choose(readout=key)

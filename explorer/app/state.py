@@ -28,12 +28,13 @@ from typing import Any
 
 import param
 
-from explorer.app.calculation import Immediate, Results, Runner, solve
+from explorer.app.calculation import Immediate, Results, Runner, Wanted, solve
 from explorer.app.history import MOST_STEPS, Step, Work
 from explorer.scenario.dials import Dial, dials, turn
 from explorer.scenario.editing import tidy
 from explorer.scenario.evaluate import Outcome
 from explorer.scenario.model import Scenario, SweepSetting
+from explorer.scenario.outcome import FINISHED
 
 MERGE_SECONDS = 0.8
 """Turns of one dial that follow each other faster than this are one undo step."""
@@ -90,7 +91,7 @@ class Session(param.Parameterized):
         """What ``point`` and ``swept`` are of: a copy of its own, which nobody changes."""
         self.runner: Runner = runner or Immediate()
         self._clock = clock
-        self._wanted: dict[str, tuple[str, ...]] = {}
+        self._wanted: dict[str, tuple[Wanted, ...]] = {}
         self._questions: dict[str, Callable[[Outcome], None]] = {}
         self._dials: dict[str, Dial] | None = None
         self._curve = self._shown_curve = 0
@@ -273,9 +274,9 @@ class Session(param.Parameterized):
 
     # ---- calculating ---------------------------------------------------------------------------------
 
-    def want(self, view: str, readouts: Iterable[str]) -> None:
+    def want(self, view: str, readouts: Iterable[str], stage: str = FINISHED) -> None:
         """Tell which readouts a view will ask for, so that they are computed off the event loop."""
-        self._wanted[view] = tuple(readouts)
+        self._wanted[view] = tuple((key, stage) for key in readouts)
 
     def ask(self, view: str, question: Callable[[Outcome], None]) -> None:
         """Tell what a view will ask of the operating point alone (its stages), for the same reason."""
@@ -310,9 +311,9 @@ class Session(param.Parameterized):
         return all(dial.low < number < high for number in (dial.value, value))
 
     @property
-    def wanted(self) -> set[str]:
-        """Readouts that some view will ask for."""
-        return {key for keys in self._wanted.values() for key in keys}
+    def wanted(self) -> set[Wanted]:
+        """Readouts that some view will ask for, each with its stage."""
+        return {wanted for several in self._wanted.values() for wanted in several}
 
     def _apply(self, results: Results) -> None:
         if results.point is None:

@@ -18,6 +18,7 @@ from explorer.app.plot_heads import (
     family_choice,
     family_names,
     readout_choice,
+    stage_choice,
 )
 from explorer.app.plots import LinkedPlots
 from explorer.app.state import Session
@@ -28,7 +29,13 @@ from explorer.scenario.model import MeasuredPoints
 from explorer.scenario.outcome import FINISHED
 from explorer.scenario.words import in_sentence
 from explorer.studies.pictures import Axis, Memory, Picture
-from explorer.studies.sweep_pictures import picture_of, picture_of_species, swept_axis, with_options
+from explorer.studies.sweep_pictures import (
+    is_finished,
+    picture_of,
+    picture_of_species,
+    swept_axis,
+    with_options,
+)
 
 
 class SweepView(View):
@@ -67,7 +74,8 @@ class SweepView(View):
 
     def closed(self) -> None:
         super().closed()
-        self.session.want("sweep", ())
+        for plot in PLOTS:
+            self.session.want(f"sweep {plot}", ())
         self.band.rest()
 
     def show(self) -> None:
@@ -88,26 +96,29 @@ class SweepView(View):
             "ph": self._readout("ph"),
             "species": self._species(),
             "buffer": self._readout("buffer_intensity"),
-            "chosen": self._readout(readout_choice(self.session)),
+            "chosen": self._readout(readout_choice(self.session), stage_choice(self.session, "chosen")),
         }
         return pictures, swept_axis(self.session.swept)
 
-    def _readout(self, key: str) -> Picture:
-        targets, previous = self.session.scenario.targets, self._memory.limits.get(key)
-        dots = self.comparisons.dots(self._placed(), key)
-        picture = picture_of(self.session.swept, key, targets, previous, dots)
-        picture = self.band.drawn(picture, key, previous)
+    def _readout(self, key: str, stage: str = FINISHED) -> Picture:
+        swept, slot = self.session.swept, f"{key} {stage}"
+        targets, previous = self.session.scenario.targets, self._memory.limits.get(slot)
+        dots = self.comparisons.dots(self._placed(stage), key)
+        picture = picture_of(swept, key, targets, previous, dots, stage)
+        if is_finished(swept, stage):
+            picture = self.band.drawn(picture, key, previous)
         curves = option_curves(self.session)
         if curves:
-            picture = with_options(picture, key, curves, previous)
-        return self._memory.keep(key, picture)
+            picture = with_options(picture, key, curves, previous, stage)
+        return self._memory.keep(slot, picture)
 
     def _species(self) -> Picture:
         family, logarithmic = family_choice(self.session), bool(self.session.choices.get("log"))
+        stage = stage_choice(self.session, "species")
         name = family_names(self.session)[family].removesuffix(" species")
-        slot = f"{family} log" if logarithmic else family
+        slot = f"{family} {'log ' if logarithmic else ''}{stage}"
         previous = self._memory.limits.get(slot)
-        picture = picture_of_species(self.session.swept, family, name, logarithmic, previous)
+        picture = picture_of_species(self.session.swept, family, name, logarithmic, previous, stage)
         return self._memory.keep(slot, picture)
 
     def _arrange(self) -> None:
@@ -117,13 +128,21 @@ class SweepView(View):
             card.visible = large in ("", name)
         self.plots.enlarge(MEETING_SCALE if large else 1.0)
 
-    def _drawn(self) -> tuple[str, ...]:
-        """Readouts that are drawn."""
-        return "ph", "buffer_intensity", readout_choice(self.session)
+    def _drawn(self) -> dict[str, tuple[str, str]]:
+        """By plot: the readout that is drawn, and at which stage; of the species the pH stands for all."""
+        session = self.session
+        return {
+            "ph": ("ph", FINISHED),
+            "species": ("ph", stage_choice(session, "species")),
+            "buffer": ("buffer_intensity", FINISHED),
+            "chosen": (readout_choice(session), stage_choice(session, "chosen")),
+        }
 
     def follow(self, changed: set[str]) -> None:
-        self.session.want("sweep", self._drawn())
-        self.band.follow(self._drawn())
+        drawn = self._drawn()
+        for plot, (key, stage) in drawn.items():
+            self.session.want(f"sweep {plot}", [key], stage)
+        self.band.follow(tuple(dict.fromkeys(key for key, stage in drawn.values() if stage == FINISHED)))
         if "structure" in changed:
             self._memory.limits.clear()
         if "choices" in changed:
@@ -139,16 +158,20 @@ class SweepView(View):
 
     # ---- measured points -----------------------------------------------------------------------------
 
-    def _placed(self) -> Iterator[tuple[MeasuredPoints, np.ndarray]]:
-        """Sets of measured points that belong to the sweep, with their dial values."""
+    def _placed(self, stage: str) -> Iterator[tuple[MeasuredPoints, np.ndarray]]:
+        """Sets of measured points that belong to the sweep at a stage, with their dial values."""
         session = self.session
-        ends = {FINISHED, session.point.stages[-1].id}
+        last = session.point.stages[-1].id
+        here = {FINISHED, last} if stage in (FINISHED, last) else {stage}
         for part in session.solved.measured:
-            if part.dial == session.swept.address and part.stage in ends:
+            if part.dial == session.swept.address and part.stage in here:
                 yield part, np.array([pair[0] for pair in part.points], float)
 
     def _sets(self) -> list[MeasuredPoints]:
-        return [part for part, _ in self._placed()] if self.session.swept is not None else []
+        if self.session.swept is None:
+            return []
+        stages = dict.fromkeys(stage for _, stage in self._drawn().values())
+        return [part for stage in stages for part, _ in self._placed(stage)]
 
     def _against(self) -> Against | None:
         swept = self.session.swept

@@ -6,7 +6,7 @@ from collections.abc import Callable
 from dataclasses import replace
 from typing import Any
 
-from explorer.app.choosers import range_fields
+from explorer.app.choosers import range_fields, stage_picker
 from explorer.app.entry import Entries
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
@@ -16,7 +16,6 @@ from explorer.app.state import Session
 from explorer.app.text import formula_text, plain, unit_text
 from explorer.app.titration_setting import Setting, equivalents, in_unit, shared_units
 from explorer.scenario.dials import Dial
-from explorer.scenario.outcome import BLEND, FINISHED
 from explorer.scenario.readouts import MINUS
 from explorer.treatment.chemicals import Chemical
 
@@ -60,18 +59,9 @@ class TitrationControls(LiveView):
         )  # fmt: skip
 
     def _stages(self, now: Setting) -> list[Node]:
-        point = self.session.point
-        waters = [stage for stage in point.stages if stage.kind == "water"]
-        steps = [stage for stage in point.stages if stage.kind not in ("water", "blend")]
-        groups = {
-            "Plant": [Choice(FINISHED, "Finished water"), Choice(BLEND, "Blend")],
-            "Source waters": [Choice(stage.id, plain(stage.name, 60)) for stage in waters],
-            "Behind a step": [Choice(stage.id, plain(stage.name, 60)) for stage in steps],
-        }
-        names = {choice.key: choice.label for choices in groups.values() for choice in choices}
-        return picker(
-            "stage", f"{names[now.stage]} ▾", groups, lambda stage: self._set(stage=stage), look="button",
-            hint="Search places", title="The water that is titrated",
+        return stage_picker(
+            "stage", self.session.point, now.stage, lambda stage: self._set(stage=stage),
+            "The water that is titrated",
         )  # fmt: skip
 
     def _chemical(self, now: Setting) -> list[Node]:

@@ -54,6 +54,10 @@ class Outcome:
         self._targets, self._notes, self._goals = targets, notes, goals
         self._by_id = {stage.id: stage for stage in stages} | {FINISHED: stages[-1]}
 
+    def __contains__(self, id: str) -> bool:
+        """Whether there is a stage with this id."""
+        return id in self._by_id
+
     def stage(self, id: str = FINISHED) -> Stage:
         """A stage by the id of its water or step, or "blend" or "finished". Raises ScenarioError."""
         if id not in self._by_id:

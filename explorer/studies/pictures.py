@@ -233,7 +233,7 @@ def species_picture(
     total = sum(amounts.values(), np.zeros(len(x)))
     present = bool(np.any(total[np.isfinite(total)] > 0)) if amounts else False
     label = f"{family[:1].upper()}{family[1:]} species"
-    note = "log₁₀ of mol/L" if logarithmic else "mole percent"
+    note, scale = ("log mol/L", "log₁₀ of mol/L") if logarithmic else ("mol %", "mole percent")
     if not present:
         return Picture(
             label,
@@ -268,7 +268,7 @@ def species_picture(
         2 if logarithmic else 1,
         unit="" if logarithmic else "%",
         gaps=missing,
-        words=f"{label}, {note}, against {in_sentence(along.name)}: {ends}.",
+        words=f"{label}, {scale}, against {in_sentence(along.name)}: {ends}.",
     )
 
 

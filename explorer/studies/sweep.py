@@ -110,9 +110,9 @@ class Sweep:
                 found.append(Extreme(float(x), float(self.at(x).readout(key)), lowest))
         return sorted(found, key=lambda extreme: extreme.x)
 
-    def gaps(self, key: str | None = None) -> list[Gap]:
-        """Parts of the range without equilibrium, or without the readout ``key``."""
-        reasons = self.outcome.reasons(FINISHED, key)
+    def gaps(self, key: str | None = None, stage: str = FINISHED) -> list[Gap]:
+        """Parts of the range without equilibrium at a stage, or without the readout ``key`` there."""
+        reasons = self.outcome.reasons(stage, key)
         found: list[Gap] = []
         for position, reason in enumerate(reasons):
             x = float(self.x[position])
@@ -131,24 +131,25 @@ class Sweep:
             if not address.endswith(".dose"):
                 yield self.plan.dials[address].label, dial.unit, dial.value
 
-    def to_dict(self, readouts: Sequence[str]) -> dict[str, Any]:
-        """Plain lists by name; None where there is no answer."""
+    def to_dict(self, readouts: Sequence[str], stage: str = FINISHED) -> dict[str, Any]:
+        """Plain lists by name, of the water at a stage; None where there is no answer."""
         return {
             "dial": self.address,
             "unit": self.dial.unit,
             "x": self.x.tolist(),
-            "readouts": {key: listed(self.outcome.readout(key)) for key in readouts},
+            "readouts": {key: listed(self.outcome.readout(key, stage)) for key in readouts},
             "notes": [{"level": n.level, "where": n.where, "text": n.text} for n in self.outcome.notes],
         }
 
-    def table(self, readouts: Sequence[str]) -> list[list[Any]]:
-        """Rows for a spreadsheet, the heading first: dial, readouts, what is held, why there is no answer."""
+    def table(self, readouts: Sequence[str], stage: str = FINISHED) -> list[list[Any]]:
+        """Rows for a spreadsheet, the heading first: dial, readouts at a stage, what is held, why there is no
+        answer."""
         columns = [[headed(self.dial.label, self.dial.unit), *self.x.tolist()]]
         for readout in (READOUTS[key] for key in readouts):
-            values = listed(self.outcome.readout(readout.key))
+            values = listed(self.outcome.readout(readout.key, stage))
             columns.append([headed(readout.label, readout.unit), *values])
         columns += [[headed(label, unit), *listed(values)] for label, unit, values in self.held()]
-        columns.append(["No answer because", *self.outcome.reasons().tolist()])
+        columns.append(["No answer because", *self.outcome.reasons(stage).tolist()])
         return [list(row) for row in zip(*columns, strict=True)]
 
 

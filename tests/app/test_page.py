@@ -155,6 +155,20 @@ def test_plots_carry_words_that_follow_the_data(shell: Shell) -> None:
     assert figure.html_attributes["aria-label"] != before
 
 
+def test_a_plot_can_look_anywhere_in_the_plant(shell: Shell) -> None:
+    """Any readout and family of species behind any step; a place that goes away gives way to the end."""
+    view, session = shell.views["sweep"], shell.session
+    session.choose(readout="ph", **{"chosen stage": "river", "species stage": "blend"})
+    pictures, _ = view.pictures()
+    swept = session.swept
+    assert pictures["chosen"].title == "pH, Fern River"
+    assert pictures["chosen"].lines[0].y == pytest.approx(swept.outcome.readout("ph", "river"))
+    assert pictures["chosen"].band is None and pictures["ph"].band is not None
+    assert pictures["species"].title == "Carbonate species, Blend"
+    session.choose(**{"chosen stage": "long gone"})
+    assert view.pictures()[0]["chosen"].title == "pH"
+
+
 def test_dark_palette_reaches_the_curves(shell: Shell) -> None:
     """Colours in columns are exchanged with the palette."""
     shell.views["sweep"].restyle(DARK)

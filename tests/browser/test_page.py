@@ -117,7 +117,7 @@ def test_species_as_logarithm_and_another_readout(screen: Any) -> None:
     screen.until(lambda: max(max(curve) for curve in screen.curves("species")) < 0, "logarithms")
     page.get_by_label("Family of species").select_option("chlorine")
     screen.until(lambda: len(screen.curves("species")) == 2, "two chlorine species")
-    page.get_by_title("Choose the readout of this plot").click()
+    page.get_by_title("The readout of this plot").click()
     page.get_by_placeholder("Search readouts").fill("nitrate")
     page.keyboard.press("Enter")
     screen.until(lambda: max(screen.curves("chosen")[0]) == pytest.approx(29, abs=0.1), "nitrate")
@@ -125,6 +125,19 @@ def test_species_as_logarithm_and_another_readout(screen: Any) -> None:
     screen.drawn()
     assert len(screen.curves("species")) == 2
     assert max(screen.curves("chosen")[0]) == pytest.approx(29, abs=0.1)
+
+
+def test_a_plot_looks_at_any_place_of_the_plant(screen: Any) -> None:
+    """Two plots choose where they look; elsewhere than in the finished water nothing has a target."""
+    page = screen.page
+    finished = screen.curves("chosen")
+    page.get_by_title("Where in the plant").nth(1).click()
+    page.get_by_placeholder("Search places").last.fill("granite")
+    page.keyboard.press("Enter")
+    screen.until(lambda: screen.curves("chosen") != finished, "the source water")
+    (source,) = screen.curves("chosen")
+    assert max(source) == pytest.approx(min(source)), "a source water does not know its share"
+    assert page.get_by_title("Where in the plant").nth(1).inner_text() == "Granite Wellfield ▾"
 
 
 def test_reload_keeps_the_working_copy_and_its_undo(screen: Any) -> None:

@@ -117,6 +117,13 @@ def test_gaps_carry_their_reason(blend):
     assert swept.gaps("ccpp") == [gap]
 
 
+def test_gaps_of_a_stage_are_its_own(blend):
+    """Where one water has no answer the other still has."""
+    swept = sweep(blend, "waters.river.analysis.ph", 8.0, 12.0, 9)
+    assert swept.gaps(stage="river") == swept.gaps()
+    assert swept.gaps(stage="well") == []
+
+
 def test_plain_data_has_none_where_there_is_no_answer(blend):
     """Lists of numbers, None for a gap, and a note that counts the points."""
     plain = sweep(blend, "waters.river.analysis.ph", 8.0, 12.0, 3).to_dict(["ph", "calcium"])
