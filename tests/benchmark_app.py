@@ -6,28 +6,35 @@ After letting go: until the last curve is painted, without the band of tolerance
 server part is what a turned dial asks of it. Figures are of this machine with whatever else it does.
 """
 
-import os
+import subprocess
 import sys
 import time
 import urllib.error
 import urllib.request
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 from statistics import median, quantiles
+from tempfile import TemporaryDirectory
 from typing import Any
 
 ROOT = Path(__file__).resolve().parents[1]
-sys.path[:0] = [str(ROOT), str(ROOT / "tests" / "browser")]
+sys.path.insert(0, str(ROOT))
 
-import conftest
 from playwright.sync_api import sync_playwright
 
 from explorer.app.calculation import solve
 from explorer.app.files import Shelf
 from explorer.app.main import build
-from explorer.app.serve import free_port, serve
+from explorer.app.serve import free_port
+from explorer.scenario.files import save_scenario
 from explorer.scenario.shipped import shipped
+from tests.benchmark import plant
+from tests.browser.conftest import Screen
+from tests.conftest import CHROMIUM, FLAGS
 
 EXAMPLES = ("amber", "juniper", "dune")
+PLANT = "3 waters, 6 doses"
 MOVES, DRAGS, TURNS = 40, 5, 40
 
 _WATCH = """
@@ -58,9 +65,9 @@ def spread(times: list[float]) -> str:
     return f"{median(times):5.0f} ms   {quantiles(times, n=20)[-1]:5.0f} ms"
 
 
-def server(name: str) -> list[float]:
+def server(path: Path) -> list[float]:
     """Milliseconds from a turned dial that is not on the x axis to all results the page asks for."""
-    session = build(shipped()[name], shelf=Shelf()).session
+    session = build(path, shelf=Shelf()).session
     dial = next(
         dial for dial in session.dials.values() if dial.address != session.swept.address and dial.value
     )
@@ -106,32 +113,43 @@ def page_times(screen: Any) -> tuple[list[float], list[float]]:
     return live, settled
 
 
+@contextmanager
+def served(path: Path) -> Iterator[str]:
+    """Address of a page that a process of its own serves."""
+    port = free_port()
+    command = [sys.executable, "-m", "explorer", "serve", str(path), "--port", str(port), "--no-browser"]
+    process = subprocess.Popen(command, cwd=ROOT, stdout=subprocess.DEVNULL)
+    try:
+        yield f"http://127.0.0.1:{port}/"
+    finally:
+        process.kill()
+        process.wait()
+
+
 def main() -> None:
-    if not Path(conftest.CHROMIUM).exists():
-        print(f"no browser at {conftest.CHROMIUM}; set CHROMIUM to one")
+    if not Path(CHROMIUM).exists():
+        print(f"no browser at {CHROMIUM}; set CHROMIUM to one")
         return
-    print(f"{'':34}{'median':>8}   {'95th percentile'}")
-    with sync_playwright() as driver:
-        browser = driver.chromium.launch(executable_path=conftest.CHROMIUM, args=list(conftest.FLAGS))
-        for name in EXAMPLES:
-            print(f"{name:10}{'server, one turn of a dial':24}{spread(server(name))}")
-            port = free_port()
-            served = serve(shipped()[name], port=port, open_browser=False, threaded=True, verbose=False)
-            page = browser.new_context(viewport={"width": 1600, "height": 900}).new_page()
-            screen = conftest.Screen(page, f"http://127.0.0.1:{port}/")
-            screen.until(lambda screen=screen: _answers(screen.url), "an answer of the server")
-            screen.open()
-            live, settled = page_times(screen)
-            print(f"{'':10}{'move to newer curves':24}{spread(live)}")
-            print(f"{'':10}{'let go to last paint':24}{spread(settled)}")
-            served.stop()
+    print(f"{'':46}{'median':>8}   {'95th percentile'}")
+    with TemporaryDirectory() as folder, sync_playwright() as driver:
+        written = Path(folder) / "plant.json"
+        save_scenario(plant(), written)
+        browser = driver.chromium.launch(executable_path=CHROMIUM, args=list(FLAGS))
+        for name, path in ((PLANT, written), *((name, shipped()[name]) for name in EXAMPLES)):
+            print(f"{name:20}{'server, one turn of a dial':28}{spread(server(path))}")
+            with served(path) as url:
+                context = browser.new_context(viewport={"width": 1600, "height": 900})
+                screen = Screen(context.new_page(), url)
+                screen.until(lambda url=url: _answers(url), "an answer of the server")
+                screen.open()
+                live, settled = page_times(screen)
+                context.close()
+            print(f"{'':20}{'move to newer curves':28}{spread(live)}")
+            print(f"{'':20}{'let go to last paint':28}{spread(settled)}")
         browser.close()
-    sys.stdout.flush()
-    os._exit(0)  # threads of the servers would wait for their pages
 
 
 def _answers(url: str) -> bool:
-
     try:
         with urllib.request.urlopen(url, timeout=10) as answer:
             return answer.status == 200
