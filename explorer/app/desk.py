@@ -18,6 +18,7 @@ from explorer.scenario import editing
 from explorer.scenario.dials import Dial, fine_step
 from explorer.scenario.model import Analysis, Scenario
 from explorer.scenario.operations import Dose
+from explorer.scenario.own_parts import own_parts
 from explorer.scenario.readouts import MINUS, READOUTS, format_value
 from explorer.scenario.words import number_text
 from explorer.studies.axes import nice_step
@@ -171,6 +172,11 @@ class Desk:
             self.opened = ""
         if self.naming not in standing:
             self.naming = ""
+        if self.defining is not None and self.defining.id not in {
+            "",
+            *(part.id for part in own_parts(self.scenario)),
+        }:
+            self.defining = None
         if self.pasting is not None and f"waters.{self.pasting.water}" not in {*standing, "waters."}:
             self.pasting = None
 

@@ -1,4 +1,6 @@
-"""A chemical or weak acid of the user's own: a form made from what its class declares, entered as a whole."""
+"""Chemicals and weak acids of the user's own: a form made from what their class declares, entered as a whole,
+and the list of those there are.
+"""
 
 from __future__ import annotations
 
@@ -7,15 +9,16 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 from typing import Any
 
-from explorer.app.desk import Desk
+from explorer.app.desk import Desk, facts, heading
 from explorer.app.entry import message, parse_number
 from explorer.app.live_view import Node, node
-from explorer.app.pickers import Choice
+from explorer.app.pickers import Act, Choice, menu
 from explorer.app.text import plain, unit_text
 from explorer.scenario import editing
 from explorer.scenario.entity import Entity
 from explorer.scenario.fields import Amounts, Field, Number, Numbers, Texts
 from explorer.scenario.model import Acid, OwnChemical, Scenario
+from explorer.scenario.own_parts import Own, own_parts, remove_own, uses
 from explorer.treatment.chemicals import CATALOGUE
 
 CHEMICAL, ACID = "own-chemical", "own-acid"
@@ -37,19 +40,24 @@ EXAMPLES = {
 }
 """How fields with several parts are written."""
 
+LISTED = "own"
+"""Stands for the list of what there is where a train would stand, of which none is called so."""
+
 _PART = re.compile(r"\s*([^\s,;]+)[\s:=]+(\S+)\s*")
 _PATH = re.compile(r"^(?:chemicals|acids)\[\d+\]\.?")
 
 
 @dataclass
 class Definition:
-    """A substance being defined. kind: CHEMICAL or ACID. prefix: train that a chemical is then dosed in.
+    """A substance being defined, or with ``id`` one that is being changed. kind: CHEMICAL or ACID. prefix:
+    train that a new chemical is then dosed in.
 
     entered: texts of the fields by name. refused: field at fault and the sentence, "" for the whole.
     """
 
     kind: str
     prefix: str
+    id: str = ""
     entered: dict[str, str] = field(default_factory=dict)
     refused: tuple[str, str] = ("", "")
 
@@ -68,11 +76,45 @@ def own_panel(desk: Desk, prefix: str) -> list[Node]:
     return [_Panel(desk, definition).node()] if definition is not None and definition.prefix == prefix else []
 
 
+def own_section(desk: Desk) -> Node | None:
+    """The substances of the user's own, each with its menu; None where there are none."""
+    lines = [_listed(desk, part) for part in own_parts(desk.scenario)]
+    if not lines:
+        return None
+    title = "Own chemicals and acids"
+    parts = [heading(title), node("ul", "", *lines), *own_panel(desk, LISTED)]
+    return node("section", "", *parts, key=LISTED, aria_label=title)
+
+
+def _listed(desk: Desk, part: Own) -> Node:
+    kind = ACID if isinstance(part, Acid) else CHEMICAL
+    name, key = plain(part.name or part.id, 60), f"{LISTED}:{part.id}"
+    users = list(uses(desk.scenario, part))
+    remove = desk.act(key, f"Remove {name}", lambda scenario: remove_own(scenario, part.id))
+
+    def change() -> None:
+        raw, fields = part.to_dict(), part.fields()
+        entered = {field: written_part(fields[field], raw[field]) for field in raw if field != "id"}
+        desk.defining = Definition(kind, LISTED, part.id, entered)
+
+    acts = [
+        Act("change", "Change", change),
+        Act("remove", "Remove", None if users else remove, danger=True),
+    ]
+    head = node(
+        "div", "head", node("span", "name still", text=name, title=name), *menu(key, f"More for {name}", acts)
+    )
+    used = f"used in {'; '.join(users)}" if users else "not used"
+    return node("li", "card", head, facts(plain(used, 120)), desk.refusal(key), key=key)
+
+
 class _Panel:
     def __init__(self, desk: Desk, definition: Definition) -> None:
         self.desk, self.definition = desk, definition
         self.key = f"own:{definition.prefix}"
         self.kind, self.place, self.title = KINDS[definition.kind]
+        if definition.id:
+            self.title = f"Change {plain(definition.entered.get('name') or definition.id, 60)}"
 
     def node(self) -> Node:
         lines: list[Node] = []
@@ -134,12 +176,19 @@ class _Panel:
 
         def change(scenario: Scenario) -> None:
             nonlocal opened
-            taken = [own.id for own in (*scenario.acids, *scenario.chemicals)]
-            own_id = editing.unique_id(scenario, str(raw.get("name", "own")), (*taken, *CATALOGUE))
+            others = getattr(scenario, self.place)
+            taken = [own.id for own in own_parts(scenario)]
+            own_id = definition.id or editing.unique_id(
+                scenario, str(raw.get("name", "own")), (*taken, *CATALOGUE)
+            )
             made = self.kind.from_dict({"id": own_id, **raw})
-            setattr(scenario, self.place, [*getattr(scenario, self.place), made])
             if definition.kind == CHEMICAL:
                 made.chemical(scenario.acids)
+            if definition.id:
+                setattr(scenario, self.place, [made if own.id == own_id else own for own in others])
+                return
+            setattr(scenario, self.place, [*others, made])
+            if definition.kind == CHEMICAL:
                 opened = editing.add_step(scenario, definition.prefix, "dose", own_id)
 
         refusal = _PATH.sub("", self.desk.session.edit(self.title, change))
@@ -163,6 +212,20 @@ def read_part(declared: Field, text: str) -> Any:
     if isinstance(declared, Texts):
         return [part.strip() for part in text.split(";") if part.strip()]
     return text
+
+
+def written_part(declared: Field, value: Any) -> str:
+    """What is typed for a declared field to get its JSON form; the inverse of :func:`read_part`."""
+    if isinstance(declared, Amounts):
+        return ", ".join(f"{name} {_shortest(amount)}" for name, amount in value.items())
+    if isinstance(declared, (Numbers, Texts)):
+        return "; ".join(map(_shortest, value))
+    return "" if value is None else _shortest(value)
+
+
+def _shortest(value: Any) -> str:
+    """A number without digits it does not need; a text as it is."""
+    return str(int(value)) if isinstance(value, float) and value.is_integer() else str(value)
 
 
 def _amounts(text: str) -> Mapping[str, float]:

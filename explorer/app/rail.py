@@ -4,6 +4,7 @@ from typing import Any, ClassVar
 
 from explorer.app.desk import Desk, facts, heading
 from explorer.app.live_view import LiveView, Node, node
+from explorer.app.own_substance import own_section
 from explorer.app.paste_panel import Pasting, paste_panel
 from explorer.app.pickers import Choice, picker
 from explorer.app.state import Session
@@ -54,6 +55,7 @@ class Rail(LiveView):
             "div", "rail stale" if self.desk.session.stale else "rail",
             node("section", "", *self._waters(), aria_label="Source waters"),
             node("section", "", *self._treatment(), aria_label="Treatment, in order of flow"),
+            own_section(self.desk),
             node("section", "", *self._cost(), key="cost", aria_label="Running cost"),
         )  # fmt: skip
 
