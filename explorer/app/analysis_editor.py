@@ -112,7 +112,7 @@ def analysis_editor(desk: Desk, water: Water) -> list[Node]:
         aria_label=f"{sheet.season} analysis of {water.title}",
     )  # fmt: skip
     return [
-        node("h4", text=f"{plain(sheet.season)} analysis"),
+        node("h3", text=f"{plain(sheet.season)} analysis"),
         *_findings(sheet),
         table,
         node("div", "below", *_add_entry(sheet), _paste(sheet)),

@@ -260,7 +260,7 @@ class Desk:
 
 def heading(text: str) -> Node:
     """Heading of a part of the rail."""
-    return node("h3", text=text)
+    return node("h2", text=text)
 
 
 def facts(*words: str | tuple[str, str] | None, hint: str = "") -> Node:

@@ -128,7 +128,7 @@ class _Panel:
         cancel = node("button", "link", text="Cancel", key=f"{self.key}:cancel", type="button",
                       on=lambda value: self._close())  # fmt: skip
         return node(
-            "div", "paste-panel", node("h4", text=self.title), node("div", "form", *lines), message(whole),
+            "div", "paste-panel", node("h3", text=self.title), node("div", "form", *lines), message(whole),
             node("div", "below", take, cancel), key=self.key, data_reveal=True,
         )  # fmt: skip
 

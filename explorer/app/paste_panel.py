@@ -50,7 +50,7 @@ class PastePanel:
     def node(self) -> Node:
         """What the panel shows now."""
         parts = self._preview() if self.pasting.lines else self._question()
-        return node("div", "paste-panel", node("h4", text="Paste an analysis"), *parts, key=self.key,
+        return node("div", "paste-panel", node("h3", text="Paste an analysis"), *parts, key=self.key,
                     data_reveal=True)  # fmt: skip
 
     # ---- asking for the text -------------------------------------------------------------------------

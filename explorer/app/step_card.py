@@ -57,7 +57,7 @@ def step_card(desk: Desk, step: Step, prefix: str, position: int, count: int, be
         body.append(node("div", "details", *step_form(desk, step, key), data_reveal=True))
     if isinstance(step, SideStreamStep):
         inner = train_list(desk, step.train, f"{key}.", before)
-        body.append(node("div", "inner", node("h4", text="In the side stream"), inner))
+        body.append(node("div", "inner", node("h3", text="In the side stream"), inner))
     held = isinstance(step, DoseStep) and step.hold is not None
     look = "card" + (" opened" if opened else "") + (" held" if held else "") + ("" if step.on else " off")
     return node("li", "" if step.on else "idle", node("div", look, *body), key=key, data_reveal=opened)

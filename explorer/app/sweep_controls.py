@@ -74,9 +74,9 @@ class SweepControls(LiveView):
             "div", "controls",
             node("div", "group", node("span", text="Sweep"), *dial),
             *self._range(),
-            node("span", text=self._rule()),
+            node("span", "rule", text=self._rule(), title=self._rule() or None),
             node("span", "gap", text=self._shown[0], role="status"),
-            node("span", "push"), *self.band.nodes(self.entries), *self.measured.nodes(),
+            *self.band.nodes(self.entries), *self.measured.nodes(),
         )  # fmt: skip
 
     def _plots(self) -> Node:

@@ -34,7 +34,7 @@ def water_card(desk: Desk, water: Water, position: int) -> Node:
             node(
                 "div",
                 "inner",
-                node("h4", text="Before the blend"),
+                node("h3", text="Before the blend"),
                 train_list(desk, water.train, f"{key}.", water.id),
             )
         )
