@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator, Sequence
 from contextlib import suppress
 from dataclasses import dataclass
+from functools import partial
 from itertools import groupby
 from typing import Any
 
@@ -78,8 +79,9 @@ class CompareView(View):
         self.chips = OptionChips(session, Entries(), self._refresh)
         self.controls = Strip(self._controls)
         self.sheet = Sheet(self._sheet)
-        self.plots = LinkedPlots([CURVE], session.turn_along, columns=1, named=True)
+        self.plots = LinkedPlots([CURVE], session.turn_along, columns=1, named=True, saved_as="compared")
         self.head = ReadoutHead(session)
+        self.head.saved = partial(self.plots.plate, CURVE)
         self._memory = Memory()
         self._asked: tuple[Any, ...] = ()
         self._made: tuple[Scenario | None, dict[str, list[Case]]] = (None, {})

@@ -16,7 +16,7 @@ from explorer.app.plot_parts import lettered, put
 from explorer.app.state import Session
 from explorer.app.text import plain
 from explorer.studies.titration import WATER, Diagram
-from explorer.studies.titration_pictures import names_along
+from explorer.studies.titration_pictures import Name, names_along
 
 USUAL = (WATER, "carbonate")
 """Families shown at first."""
@@ -37,6 +37,9 @@ class DiagramPlot(LinePlot):
             y_offset=-3, background_fill_alpha=0.75, padding=1, border_radius=3, level="annotation",
         )  # fmt: skip
         return fig
+
+    def written(self) -> list[Name]:
+        return names_along(self.picture, self.mark)
 
     def restyle(self, palette: Palette) -> None:
         self.name_text.glyph.background_fill_color = palette.card

@@ -94,12 +94,29 @@ export function render({ model }) {
 
   model.on("msg:custom", (event) => {
     const { text, name, type } = event.data ?? event
+    if (type === "image/png") painted(text).then((picture) => hand(picture, name))
+    else hand(new Blob([text], { type }), name)
+  })
+  function hand(content, name) {
     const link = document.createElement("a")
-    link.href = URL.createObjectURL(new Blob([text], { type }))
+    link.href = URL.createObjectURL(content)
     link.download = name
     link.click()
     setTimeout(() => URL.revokeObjectURL(link.href), 10_000)
-  })
+  }
+  // A drawing as a picture, fine enough for a slide or a page of paper.
+  const FINER = 2
+  async function painted(svg) {
+    const picture = new Image(), address = URL.createObjectURL(new Blob([svg], { type: "image/svg+xml" }))
+    picture.src = address
+    await picture.decode()
+    const canvas = document.createElement("canvas")
+    canvas.width = FINER * picture.naturalWidth
+    canvas.height = FINER * picture.naturalHeight
+    canvas.getContext("2d").drawImage(picture, 0, 0, canvas.width, canvas.height)
+    URL.revokeObjectURL(address)
+    return new Promise((made) => canvas.toBlob(made, "image/png"))
+  }
 
   const inField = (event) => {
     const target = event.composedPath()[0]

@@ -16,6 +16,7 @@ import param
 from panel.custom import JSComponent
 
 from explorer.app.errand import Errand
+from explorer.app.file_names import file_name
 from explorer.app.history import Work
 from explorer.app.look import VIEW_STYLES, styles
 from explorer.app.plot_heads import family_choice
@@ -33,12 +34,6 @@ SEASON = "all year"
 
 _FIRST_SENTENCE = re.compile(r"[^.?!]*[.?!]?")
 _NAME = re.compile(r"[\w\-]{8,40}")
-
-
-def file_name(title: str, ending: str = "json") -> str:
-    """A file name from a title: letters, digits and hyphens of any script, never empty."""
-    words = re.sub(r"[^\w]+", "-", title.lower()).strip("-_")
-    return f"{words[:60].rstrip('-') or 'scenario'}.{ending}"
 
 
 class Shelf:

@@ -33,6 +33,7 @@ from explorer.app.look import (
 )
 from explorer.app.plot_parts import in_page, lettered, pointer_line, put, ticks
 from explorer.studies.pictures import Axis, Band, Layer, Picture
+from explorer.studies.titration_pictures import Name
 
 SMALL, USUAL = 11, 12
 """Texts of a plot, pixels: at axes and marks; names and values of curves."""
@@ -221,6 +222,10 @@ class LinePlot:
             if getattr(self.figure.xaxis[0].axis_label, "text", None) != label:
                 self.figure.xaxis[0].axis_label = PlainText(label)
         self.figure.html_attributes = {"role": "img", "aria-label": picture.words}
+
+    def written(self) -> Sequence[Name]:
+        """Names of the curves that stand on the curves; none where they stand at their ends."""
+        return ()
 
     def enlarge(self, scale: float, x_label: bool) -> None:
         """Texts, lines and marks so many times their usual size, with or without the label of the x axis."""

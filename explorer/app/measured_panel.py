@@ -13,12 +13,13 @@ from explorer.app.entry import Entries, message
 from explorer.app.live_view import Node, node
 from explorer.app.runner import Conflate
 from explorer.app.state import Session
+from explorer.app.tables import csv_button
 from explorer.app.text import plain
 from explorer.scenario.errors import ScenarioError
 from explorer.scenario.model import MeasuredPoints, Scenario
 from explorer.scenario.observing import drop_measured, keep_measured
 from explorer.scenario.readouts import READOUTS
-from explorer.studies.measured import Comparison, all_compared, read_points
+from explorer.studies.measured import Comparison, all_compared, measured_table, read_points
 from explorer.studies.pictures import Dots
 
 LONGEST_PASTE = 200_000
@@ -109,7 +110,13 @@ class MeasuredPanel:
     def _shown(self, key: str) -> Node:
         rows = [self._set(part, f"{key}:drop:{part.name}") for part in self.sets()]
         nothing = node("p", text="None here yet: paste bench or plant data below, or open a CSV file.")
-        return node("ul", "sets", *rows) if rows else nothing
+        if not rows:
+            return nothing
+        save = csv_button(self.session, "measured points", self._table, f"{key}:csv")
+        return node("div", "", node("ul", "sets", *rows), save)
+
+    def _table(self) -> list[list[Any]]:
+        return measured_table(self.comparisons.found.values())
 
     def _set(self, part: MeasuredPoints, key: str) -> Node:
         """A set and how far the model is from it."""

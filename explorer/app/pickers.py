@@ -30,8 +30,8 @@ def _press(run: Callable[[], object]) -> Handler:
     return lambda value: run()
 
 
-def menu(key: str, label: str, acts: Iterable[Act]) -> list[Node]:
-    """The button "⋯" and the menu it opens. label: what the menu is about, for screen readers."""
+def menu(key: str, label: str, acts: Iterable[Act], sign: str = "⋯") -> list[Node]:
+    """The button ``sign`` and the menu it opens. label: what the menu is about, for screen readers."""
     lines = [
         node(
             "button", "danger" if act.danger else "", text=act.label, key=f"{key}:{act.key}", type="button",
@@ -41,7 +41,7 @@ def menu(key: str, label: str, acts: Iterable[Act]) -> list[Node]:
     ]  # fmt: skip
     sheet = f"{key}:menu"
     button = node(
-        "button", "more", text="⋯", key=f"{sheet}-button", type="button", popovertarget=sheet,
+        "button", "more", text=sign, key=f"{sheet}-button", type="button", popovertarget=sheet,
         aria_label=label, title=label, aria_haspopup="menu", aria_expanded="false",
     )  # fmt: skip
     return [

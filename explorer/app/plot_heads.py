@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from typing import Any
 
 from explorer.app.choosers import readout_picker, stage_picker
@@ -9,6 +10,7 @@ from explorer.app.entry import Entries
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES
 from explorer.app.pickers import segments
+from explorer.app.saving import Plate, save_menu
 from explorer.app.state import Session
 from explorer.app.text import plain
 from explorer.scenario.outcome import FINISHED
@@ -54,6 +56,8 @@ class Head(LiveView):
         self.session = session
         self.entries = Entries()
         self.said = ("", "", "")
+        self.saved: Callable[[], Plate | None] | None = None
+        """Gives the plot below as it is saved."""
         super().__init__(sizing_mode="stretch_width", **settings)
         self.refresh()
 
@@ -73,6 +77,7 @@ class Head(LiveView):
             *self.heading(),
             node("span", "note empty" if empty else "note", text=words, title=words),
             *self.extras(),
+            *save_menu(self.session, self.saved, self.said[0]),
         )
 
     def heading(self) -> list[Node]:

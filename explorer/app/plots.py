@@ -16,6 +16,7 @@ from bokeh.models import CustomJS, Range1d, Span
 from explorer.app.line_plot import LinePlot
 from explorer.app.look import Palette
 from explorer.app.plot_parts import pointer_line, script, ticks
+from explorer.app.saving import Plate, picture_plate
 from explorer.studies.pictures import Axis, Picture
 
 _SCRIPT = script("numbers.js", "sweep.js")
@@ -29,7 +30,7 @@ class LinkedPlots:
     The last of two ``columns`` has room for the names of curves; the lowest row carries the axis label.
     ``turned`` is called with the place the operating point was dragged or tapped to, in the dial's unit;
     without it the point is a mark that nobody moves. ``kind``: what the plots are.
-    ``named``: every plot has room for the names of curves.
+    ``named``: every plot has room for the names of curves. ``saved_as``: begins the names of their files.
     """
 
     def __init__(
@@ -39,8 +40,9 @@ class LinkedPlots:
         columns: int = 2,
         kind: type[LinePlot] = LinePlot,
         named: bool = False,
+        saved_as: str = "sweep",
     ) -> None:
-        self.turned = turned
+        self.turned, self.saved_as = turned, saved_as
         self.x_range = Range1d(0, 1)
         self.point = Span(
             name="operating-point",
@@ -60,6 +62,7 @@ class LinkedPlots:
             for index, name in enumerate(names)
         }  # fmt: skip
         self.scale = 1.0
+        self.along: Axis | None = None
         self._lowest = names[-columns:]
         self._quiet = False
         self.point.on_change("location", self._moved)
@@ -92,6 +95,7 @@ class LinkedPlots:
 
     def show(self, pictures: dict[str, Picture], along: Axis) -> None:
         """Show all pictures (by plot name); they share ``x``."""
+        self.along = along
         x = next(iter(pictures.values())).x
         start, end = float(x[0]), float(x[-1])
         if (self.x_range.start, self.x_range.end) != (start, end):
@@ -126,6 +130,14 @@ class LinkedPlots:
                 self.point.location = x
             finally:
                 self._quiet = False
+
+    def plate(self, name: str) -> Plate | None:
+        """A plot as it can be saved; None while it shows nothing."""
+        plot = self.plots[name]
+        if plot.picture is None or self.along is None:
+            return None
+        here = None if self.point.location is None else float(self.point.location)
+        return picture_plate(self.saved_as, plot.picture, self.along, here, plot.written())
 
     def restyle(self, palette: Palette) -> None:
         """Take the colours of another palette."""

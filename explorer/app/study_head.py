@@ -15,7 +15,7 @@ class StudyHead(LiveView):
     """Choice of the readout, a note, and the progress of the errand.
 
     readout, note: say what to show. choose: gets the key of the readout chosen. again: begins the calculation
-    anew after it was stopped. title: what choosing another readout does.
+    anew after it was stopped. title: what choosing another readout does. save: the menu that saves the plot.
     """
 
     css = STUDY_STYLES
@@ -28,16 +28,12 @@ class StudyHead(LiveView):
         note: Callable[[], str],
         again: Callable[[], None],
         title: str,
+        save: Callable[[], list[Node]] = list,
         **settings: Any,
     ) -> None:
         self.errand = errand
-        self._readout, self._choose, self._note, self._again, self._title = (
-            readout,
-            choose,
-            note,
-            again,
-            title,
-        )
+        self._readout, self._choose, self._title = readout, choose, title
+        self._note, self._again, self._save = note, again, save
         super().__init__(sizing_mode="stretch_width", **settings)
         errand.param.watch(lambda *events: self.refresh(), ["busy", "part", "stopped", "refusal"])
 
@@ -47,5 +43,5 @@ class StudyHead(LiveView):
             "div", "head",
             *readout_picker("readout", self._readout(), self._choose, self._title, look="pick"),
             node("span", "note", text=words, title=words),
-            progress(self.errand, self._again, "Progress of the calculation"),
+            progress(self.errand, self._again, "Progress of the calculation"), *self._save(),
         )  # fmt: skip

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import partial
 
 import numpy as np
 import panel as pn
@@ -52,6 +53,8 @@ class SweepView(View):
         self.plots = LinkedPlots(list(PLOTS), session.turn_along)
         kinds = {"species": SpeciesHead, "chosen": ReadoutHead}
         self.heads: dict[str, Head] = {name: kinds.get(name, Head)(session) for name in PLOTS}
+        for name, head in self.heads.items():
+            head.saved = partial(self.plots.plate, name)
         self._memory = Memory()
         self.cards = {
             name: pn.Column(

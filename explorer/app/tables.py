@@ -6,7 +6,7 @@ from collections.abc import Callable, Container, Iterable, Sequence
 from dataclasses import dataclass
 from typing import Any
 
-from explorer.app.files import file_name
+from explorer.app.file_names import file_name
 from explorer.app.live_view import Node, node
 from explorer.app.state import Session
 from explorer.scenario.csv_text import BYTE_ORDER_MARK, csv_text

@@ -2,22 +2,20 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 from dataclasses import dataclass
-from typing import Any
+from functools import partial
 
 import numpy as np
 import panel as pn
 
 from explorer.app.diagram_plot import DiagramPlot, FamiliesHead, chosen_families
-from explorer.app.live_view import Node
 from explorer.app.look import PLOT_CARD_CSS, TITRATION_GRID_CSS, VIEW_HOST_CSS, Palette
 from explorer.app.measured_panel import Against, Comparisons, MeasuredPanel
 from explorer.app.plot_heads import Head
 from explorer.app.plots import LinkedPlots
 from explorer.app.runner import Conflate
 from explorer.app.state import Session
-from explorer.app.tables import csv_button
 from explorer.app.titration_controls import TitrationControls
 from explorer.app.titration_setting import Setting, setting
 from explorer.app.view import View
@@ -56,17 +54,6 @@ class Found:
     refusal: str = ""
 
 
-class CurveHead(Head):
-    """Title of the curve, which can be saved for a spreadsheet; ``table``: its lines."""
-
-    def __init__(self, session: Session, table: Callable[[], list[list[Any]]], **settings: Any) -> None:
-        self.table = table
-        super().__init__(session, **settings)
-
-    def extras(self) -> list[Node]:
-        return [csv_button(self.session, "titration", self.table, text="CSV")]
-
-
 class TitrationView(View):
     """Controls, two plots over the dose, and the logarithmic diagram."""
 
@@ -78,11 +65,12 @@ class TitrationView(View):
         self.comparisons = Comparisons(session, self._compared)
         measured = MeasuredPanel(session, self.comparisons, self._against, self._sets)
         self.controls = TitrationControls(session, measured, self.setting, self._keep)
-        self.curves = LinkedPlots(list(CURVES), columns=1)
-        self.species = LinkedPlots([DIAGRAM], columns=1, kind=DiagramPlot)
-        first, second = CURVES
-        self.heads: dict[str, Head] = {first: CurveHead(session, self._table), second: Head(session)}
+        self.curves = LinkedPlots(list(CURVES), columns=1, saved_as="titration")
+        self.species = LinkedPlots([DIAGRAM], columns=1, kind=DiagramPlot, saved_as="diagram")
+        self.heads: dict[str, Head] = {name: Head(session) for name in CURVES}
         self.heads[DIAGRAM] = FamiliesHead(session, lambda: self.found.species if self.found else None)
+        for name, head in self.heads.items():
+            head.saved = partial((self.species if name == DIAGRAM else self.curves).plate, name)
         self._memory = Memory()
         self._runner = Conflate(pn.state.curdoc)
         grid = pn.Column(
@@ -205,9 +193,6 @@ class TitrationView(View):
 
     def _keep(self, wanted: Setting) -> None:
         self.session.choose(titration=wanted.remembered())
-
-    def _table(self) -> list[list[Any]]:
-        return self.found.curve.table() if self.found is not None and self.found.curve is not None else []
 
 
 def worked_out(wanted: Setting, scenario: Scenario, point: Outcome) -> Found:

@@ -10,7 +10,7 @@ import numpy as np
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import STUDY_STYLES
 from explorer.app.state import Session
-from explorer.app.tables import Row, table
+from explorer.app.tables import Row, csv_button, table
 from explorer.app.text import compact, in_sentence, plain, unit_text
 from explorer.scenario.readouts import READOUTS, Readout, format_value
 from explorer.scenario.words import brief_label, number_text, range_text
@@ -149,7 +149,10 @@ class RankingBars(Card):
         ranking, readout = found.ranking, READOUTS[found.readout]
         first, rest = ranking.ranks[:MOST_RANKS], ranking.ranks[MOST_RANKS:]
         return node(
-            "div", "found", heading, node("p", "hint", text=_advice(ranking, readout)),
+            "div", "found",
+            node("div", "line", heading,
+                 csv_button(self.session, f"ranking {readout.label}", ranking.table, text="CSV")),
+            node("p", "hint", text=_advice(ranking, readout)),
             node("p", "key",
                  node("span", "chip removed", aria_hidden="true"),
                  node("span", text="removed by halving it"),

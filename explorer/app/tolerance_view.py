@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from functools import partial
 from typing import Any
 
 import panel as pn
@@ -15,11 +16,14 @@ from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import PLOT_CARD_CSS, SPREAD_GRID_CSS, STUDY_STYLES, VIEW_HOST_CSS, Palette
 from explorer.app.pickers import segments
 from explorer.app.plots import LinkedPlots
+from explorer.app.saving import Plate, save_menu
 from explorer.app.state import Session
 from explorer.app.study_head import StudyHead
+from explorer.app.text import compact
 from explorer.app.tolerance_results import Figures, RankingBars
 from explorer.app.tolerance_table import ToleranceTable
 from explorer.app.view import View
+from explorer.report.svg_spread import distribution_plot
 from explorer.studies.axes import Limits
 from explorer.studies.pictures import Memory, Picture, rising
 from explorer.studies.progress import Watch
@@ -107,6 +111,7 @@ class DistributionHead(LiveView):
         return node(
             "div", "head", node("h3", "title", text="Operating point"),
             node("span", "note", text=words, title=words),
+            *save_menu(self.owner.session, self.owner.plate, "distribution"),
         )  # fmt: skip
 
 
@@ -122,13 +127,14 @@ class ToleranceView(View):
         self.distribution: Distribution | None = None
         self._memory = Memory()
         self._limits: dict[str, Limits] = {}
-        self.plots = LinkedPlots((FAN,), session.turn_along, columns=1)
+        self.plots = LinkedPlots((FAN,), session.turn_along, columns=1, saved_as="spread")
         self.histogram = DistributionPlot()
         self.controls = ToleranceControls(self)
         self.head = StudyHead(
             self.errand, lambda: settings.setting(session).readout,
             lambda key: settings.choose(session, readout=key), self._note, self.again,
             "Choose the readout whose spread is shown",
+            lambda: save_menu(session, partial(self.plots.plate, FAN), "spread along the sweep"),
         )  # fmt: skip
         self.distribution_head = DistributionHead(self)
         self.figures = Figures(session, lambda: self.found)
@@ -224,6 +230,15 @@ class ToleranceView(View):
             layers = resampled(fan_layers(study, key), rising(study.x, study.x), picture.x)
             picture = with_fan(picture, layers, previous)
         return self._memory.keep(key, picture)
+
+    def plate(self) -> Plate | None:
+        """The distribution as it can be saved; None while there is none."""
+        found = self.distribution
+        if found is None:
+            return None
+        what = compact(found.readout.label)
+        title = f"{what} at the operating point"
+        return Plate(f"distribution {what}", title, found.most, lambda: distribution_plot(found), found.table)
 
     def _note(self) -> str:
         if self.found is None:

@@ -12,6 +12,8 @@ from explorer.app.entry import Entries
 from explorer.app.errand import REST, Errand
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import MAP_GRID_CSS, PLOT_CARD_CSS, STUDY_STYLES, VIEW_HOST_CSS, Palette
+from explorer.app.map_svg import map_height, map_plot
+from explorer.app.saving import Plate, save_menu
 from explorer.app.state import Session
 from explorer.app.study_head import StudyHead
 from explorer.app.text import plain
@@ -136,7 +138,7 @@ class WindowView(View):
         self.legend = MapLegend(self)
         self.head = StudyHead(
             self.errand, self._readout, lambda key: self.choices.choose(readout=key), self._note, self.again,
-            "Choose what the contours are of",
+            "Choose what the contours are of", lambda: save_menu(session, self.plate, "map of two dials"),
         )  # fmt: skip
         self.card = pn.Column(
             self.head,
@@ -192,6 +194,17 @@ class WindowView(View):
         refused = self.session.edit(label, change, rebuild=False)
         if refused:
             self.session.message = refused
+
+    def plate(self) -> Plate | None:
+        """The map as it can be saved; None while there is none."""
+        drawn, setting = self.drawn, self.choices.setting()
+        if drawn is None or setting is None:
+            return None
+        here = self.session.value(setting.x.address), self.session.value(setting.y.address)
+        title = "Which target is missed first" if drawn.found.targets else drawn.picture.quantity.label
+        return Plate(
+            "map", title, self._note(), lambda: map_plot(drawn, here), drawn.found.table, map_height(drawn)
+        )
 
     # ---- the map -------------------------------------------------------------------------------------
 

@@ -3,12 +3,12 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import datetime
-from importlib.resources import files
 
 from explorer.report import basis, entered, plant, results
 from explorer.report.case import Case
 from explorer.report.markup import Markup, Part, element, joined
 from explorer.report.spread import Tolerances
+from explorer.report.style import report_style, svg_style
 from explorer.scenario.embedded import embedded
 from explorer.scenario.files import dumps
 from explorer.scenario.version import method
@@ -66,8 +66,7 @@ def usual_figures(case: Case) -> list[str]:
 def _style(title: str) -> str:
     """The style sheet, with the title for the foot of printed pages."""
     safe = "".join(sign if sign.isalnum() or sign == " " else f"\\{ord(sign):x} " for sign in title)
-    sheet = files("explorer.report").joinpath("report.css").read_text(encoding="utf-8")
-    return sheet.replace('"TITLE"', f'"{safe}"')
+    return report_style().replace('"TITLE"', f'"{safe}"') + svg_style()
 
 
 def _head(case: Case, written: datetime) -> Markup:

@@ -2,7 +2,7 @@
 
 import csv
 import io
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from types import MappingProxyType
 from typing import Any
@@ -18,7 +18,7 @@ from explorer.scenario.model import MeasuredPoints, Scenario
 from explorer.scenario.observed import MOST_POINTS
 from explorer.scenario.readouts import MINUS, READOUTS, format_value
 from explorer.studies.plain import known
-from explorer.studies.sweep import listed
+from explorer.studies.sweep import headed, listed
 from explorer.studies.titration import titrated
 
 Pairs = list[list[float]]
@@ -263,3 +263,14 @@ def all_compared(
         except ScenarioError:
             # A water or step out of service has no dial and no stage; its points wait for its return.
             continue
+
+
+def measured_table(comparisons: Iterable[Comparison]) -> list[list[Any]]:
+    """Rows for a spreadsheet, the heading first: every point of every set, beside the model."""
+    rows: list[list[Any]] = [["Points", "Against", "Value", "What", "Measured", "Model", "Difference"]]
+    for made in comparisons:
+        readout = READOUTS[made.readout]
+        against, what = headed(made.x_label, made.x_unit), headed(readout.label, readout.unit)
+        columns = made.x.tolist(), made.measured.tolist(), listed(made.model), listed(made.difference)
+        rows += [[made.name, against, x, what, *values] for x, *values in zip(*columns, strict=True)]
+    return rows

@@ -17,6 +17,7 @@ from explorer.scenario.model import Scenario
 from explorer.scenario.readouts import READOUTS
 from explorer.studies.progress import UNWATCHED, Watch
 from explorer.studies.spread import NOTHING_OFF, Input, spread_of
+from explorer.studies.sweep import headed
 from explorer.studies.tolerance import USUAL_SEED, chances
 
 SAMPLES, ALONE = 4096, 129
@@ -58,6 +59,12 @@ class Ranking:
             for r in self.ranks
         ]
         return {"readout": self.readout, "width": self.width, "inputs": inputs}
+
+    def table(self) -> list[list[Any]]:
+        """Rows for a spreadsheet, the heading first, in the order of the ranks."""
+        unit = READOUTS[self.readout].unit
+        heading = ["What may be off", headed("Width it adds alone", unit), headed("Removed by halving", unit)]
+        return [heading, *([rank.input.label, rank.alone, rank.removed] for rank in self.ranks)]
 
 
 def ranking(

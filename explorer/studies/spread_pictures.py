@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from typing import Any
 
 import numpy as np
 
@@ -11,6 +12,7 @@ from explorer.scenario.readouts import READOUTS, Readout, format_value
 from explorer.scenario.words import number_text, unit_text
 from explorer.studies.axes import Limits, steady_limits
 from explorer.studies.pictures import Band, Layer, Picture, band_of, least_span, rising
+from explorer.studies.sweep import headed
 from explorer.studies.tolerance import ToleranceStudy
 
 MOST_PERCENT, HALF_PERCENT = 95.0, 50.0
@@ -80,6 +82,14 @@ class Distribution:
         if not np.isfinite(low):
             return ""
         return f"95 % within {format_value(low, self.readout)} to {format_value(high, self.readout)}"
+
+    def table(self) -> list[list[Any]]:
+        """Rows for a spreadsheet, the heading first: the ends of every bin and its part of the outcomes."""
+        ends = [
+            headed(f"{self.readout.label}, {end}", unit_text(self.readout.unit)) for end in ("from", "to")
+        ]
+        columns = self.edges[:-1].tolist(), self.edges[1:].tolist(), (100 * self.parts).tolist()
+        return [[*ends, "Part of the outcomes [%]"], *(list(row) for row in zip(*columns, strict=True))]
 
 
 def distribution(study: ToleranceStudy, key: str, previous: Limits | None = None) -> Distribution:

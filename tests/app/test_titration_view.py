@@ -1,5 +1,7 @@
 """The titration view without a browser."""
 
+import csv
+import io
 from typing import Any
 
 import numpy as np
@@ -145,10 +147,12 @@ def test_points_that_cannot_be_read_are_refused_by_line(view: TitrationView) -> 
 
 
 def test_curve_can_be_saved(view: TitrationView) -> None:
-    """Dose, pH and buffer intensity, a line a point."""
-    view.heads["titration-ph"].report("csv")
-    first, *rest = view.session.offered.text.lstrip("\ufeff").splitlines()
-    assert first.startswith("Dose [meq/L],pH,Buffer intensity") and len(rest) == view.found.curve.x.size
+    """Dose and pH, a line a point."""
+    view.heads["titration-ph"].report("save:csv")
+    heading, *rest = csv.reader(io.StringIO(view.session.offered.text.lstrip("\ufeff")))
+    assert heading == ["Dose of sodium hydroxide, below 0 of hydrochloric acid [meq/L]", "pH"]
+    assert [float(row[0]) for row in rest] == pytest.approx(view.found.curve.x)
+    assert [float(row[1]) for row in rest] == pytest.approx(view.found.curve.ph)
 
 
 def test_choice_of_what_is_gone_falls_back(view: TitrationView) -> None:

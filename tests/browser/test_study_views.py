@@ -179,3 +179,16 @@ def test_text_from_a_file_stays_text_in_every_view(screen: Any, tmp_path: Path) 
     page.wait_for_timeout(300)
     assert page.evaluate("window.__xss") is None
     assert page.locator("img.inj").count() == 0
+
+
+def test_a_plot_is_saved_as_picture_drawing_and_figures(screen: Any, tmp_path: Path) -> None:
+    """One menu beside the plot; the picture is made in the page, of the drawing."""
+    page = screen.page
+    for kind, starts in (("PNG", b"\x89PNG"), ("SVG", b"<svg"), ("CSV", "\ufeffShare of".encode())):
+        page.get_by_role("button", name="Save the plot: pH").click()
+        with page.expect_download() as arriving:
+            page.get_by_role("menuitem", name=kind).locator("visible=true").click()
+        path = tmp_path / arriving.value.suggested_filename
+        assert path.name == f"amber-river-and-wellfield-sweep-ph.{kind.lower()}"
+        arriving.value.save_as(path)
+        assert path.read_bytes().startswith(starts)
