@@ -114,6 +114,7 @@ export function render({ model, el }) {
 
   function showTree() {
     const focused = scope().activeElement?._key
+    letGo()
     order = []
     const tree = JSON.parse(model.tree)
     heard = tree.heard ?? heard
@@ -186,6 +187,57 @@ export function render({ model, el }) {
     const sheet = button.closest("[popover]")
     if (button.hasAttribute("data-on")) tell(button)
     if (sheet && !button.hasAttribute("popovertarget") && !button.hasAttribute("data-stays")) sheet.hidePopover()
+  })
+
+  // ---- dragging an item of a list to another place -------------------------------------------------
+
+  let letGo = () => {}   // puts everything back where the list has it
+
+  view.addEventListener("pointerdown", (event) => {
+    const grip = event.target.closest("[data-grip]")
+    if (!grip || event.button !== 0) return
+    event.preventDefault()
+    letGo()
+    const moved = grip.parentElement
+    const items = [...moved.parentElement.children].filter((item) => item.querySelector(":scope > [data-grip]"))
+    const places = items.map((item) => item.getBoundingClientRect())
+    const from = items.indexOf(moved), start = event.clientY
+    const room = (places[from + 1]?.top ?? places[from].bottom) - places[from].top
+    let to = from
+    const follow = ({ clientY }) => {
+      const by = clientY - start   // the leading edge passes the middle of an item that makes room
+      const edge = (at) => (at < from ? places[from].top : places[from].bottom) + by
+      to = places.filter((place, at) => at !== from && place.top + place.height / 2 < edge(at)).length
+      items.forEach((item, at) => {
+        const aside = at > from && at <= to ? -room : at < from && at >= to ? room : 0
+        item.style.transform = `translateY(${item === moved ? by : aside}px)`
+      })
+    }
+    const stop = () => {
+      grip.removeEventListener("pointermove", follow)
+      grip.removeEventListener("pointerup", drop)
+      grip.removeEventListener("pointercancel", letGo)
+      window.removeEventListener("keydown", escape)
+    }
+    const drop = () => {
+      stop()
+      if (to === from) return letGo()
+      tell(grip, to - from)
+      setTimeout(letGo, PATIENCE_MS)   // a refused move brings no new list
+    }
+    const escape = (pressed) => { if (pressed.key === "Escape") letGo() }
+    letGo = () => {
+      stop()
+      moved.removeAttribute("data-moving")
+      for (const item of items) item.style.transform = ""
+      letGo = () => {}
+    }
+    moved.setAttribute("data-moving", "")
+    grip.setPointerCapture(event.pointerId)
+    grip.addEventListener("pointermove", follow)
+    grip.addEventListener("pointerup", drop)
+    grip.addEventListener("pointercancel", letGo)
+    window.addEventListener("keydown", escape)
   })
 
   // ---- keys, menus and searchable lists ----------------------------------------------------------

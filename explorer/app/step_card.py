@@ -60,7 +60,19 @@ def step_card(desk: Desk, step: Step, prefix: str, position: int, count: int, be
         body.append(node("div", "inner", node("h3", text="In the side stream"), inner))
     held = isinstance(step, DoseStep) and step.hold is not None
     look = "card" + (" opened" if opened else "") + (" held" if held else "") + ("" if step.on else " off")
-    return node("li", "" if step.on else "idle", node("div", look, *body), key=key, data_reveal=opened)
+    card = node("div", look, *body)
+    return node("li", "" if step.on else "idle", _grip(desk, step, key), card, key=key, data_reveal=opened)
+
+
+def _grip(desk: Desk, step: Step, key: str) -> Node:
+    """The dot on the line, by which a step is dragged along it; by keyboard its menu moves it."""
+    step_id, name = step.id, step_name(desk.scenario, step)
+
+    def move(by: int | float | None) -> None:
+        if isinstance(by, int):
+            desk.act(key, f"Move {name}", lambda scenario: editing.move_step(scenario, step_id, by))()
+
+    return node("span", "grip", key=f"{key}:grip", data_grip=True, title="Drag to another place", on=move)
 
 
 def _head(desk: Desk, step: Step, key: str, position: int, count: int) -> list[Node]:

@@ -154,6 +154,33 @@ def test_reordering_steps(page: Page) -> None:
     expect(names).to_have_text(["Carbon dioxide", "Sodium hypochlorite"])
 
 
+def test_a_step_is_dragged_along_its_line(page: Page) -> None:
+    """By the dot before its card; one undo brings it back, Escape lets it stay."""
+    pick(page, "+ Add a treatment step", "carbon dioxide")
+    pick(page, "+ Add a treatment step", "air contact")
+    names = page.locator("#rail .flow > li .open .name")
+    expect(names).to_have_text(["Sodium hypochlorite", "Carbon dioxide", "Air contact"])
+
+    def drag(name: str, onto: str) -> None:
+        grip, goal = step(page, name).locator(".grip"), step(page, onto)
+        grip.scroll_into_view_if_needed()
+        start, end = grip.bounding_box(), goal.bounding_box()
+        page.mouse.move(start["x"] + 10, start["y"] + 15)
+        page.mouse.down()
+        page.mouse.move(start["x"] + 10, end["y"] + end["height"] / 2, steps=5)
+
+    drag("Sodium hypochlorite", "Air contact")
+    page.mouse.move(0, 2, steps=2)
+    page.keyboard.press("Escape")
+    page.mouse.up()
+    expect(names).to_have_text(["Sodium hypochlorite", "Carbon dioxide", "Air contact"])
+    drag("Air contact", "Sodium hypochlorite")
+    page.mouse.up()
+    expect(names).to_have_text(["Air contact", "Sodium hypochlorite", "Carbon dioxide"])
+    page.get_by_role("button", name="Undo").click()
+    expect(names).to_have_text(["Sodium hypochlorite", "Carbon dioxide", "Air contact"])
+
+
 def test_analysis_value_non_detect_and_unit(page: Page) -> None:
     """An entry is corrected, given as below a limit, and shown in another unit."""
     page.get_by_role("button", name="Granite Wellfield", exact=True).click()
