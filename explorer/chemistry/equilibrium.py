@@ -14,7 +14,7 @@ from .start import first_state
 if TYPE_CHECKING:
     from .system import Kernel, System
 
-SOLVED, NOT_FINITE, NEGATIVE, TEMPERATURE, NO_CONVERGENCE = range(5)
+SOLVED, NOT_FINITE, NEGATIVE, TEMPERATURE, NO_CONVERGENCE, TOO_MUCH, NO_PH = range(7)
 
 REASONS: tuple[str, ...] = (
     "",
@@ -22,6 +22,8 @@ REASONS: tuple[str, ...] = (
     "more of a substance is taken away than is there",
     "the temperature is outside 0 to 60 °C",
     "the equilibrium could not be found",
+    "there is more of a substance than water can hold",
+    "the pH is outside -2 to 16",
 )
 """Reason text by code; code 0 is a solved point."""
 
@@ -31,6 +33,12 @@ RETRY_PH = (8.0, 6.0, 10.0, 4.0, 12.0, 2.0)
 
 LOW_TEMPERATURE, HIGH_TEMPERATURE = 0.0, 60.0
 """°C; validity of the constants."""
+
+LOWEST_PH, HIGHEST_PH = -2.0, 16.0
+"""Of a pH that may be asked for; no water has one beyond."""
+
+LARGEST_TOTAL = 100.0
+"""mol/L; a litre of water is 55 mol. Beyond, nothing is dissolved in water, and exponentials overflow."""
 
 
 @dataclass
@@ -188,10 +196,15 @@ def buffer_intensity(system: "System", answer: Equilibrium) -> NDArray:
 def _impossible(system: "System", totals: NDArray, temperature: NDArray, ph: NDArray | None) -> NDArray:
     """Reason codes of points that cannot be asked."""
     reason = np.zeros(totals.shape[1], dtype=np.int8)
+    alkalinity = totals[system.index["alkalinity"]]
     amounts = np.delete(totals, system.index["alkalinity"], axis=0)
+    much = (amounts > LARGEST_TOTAL).any(axis=0)
+    reason[much if ph is not None else much | (np.abs(alkalinity) > LARGEST_TOTAL)] = TOO_MUCH
+    if ph is not None:
+        reason[(ph < LOWEST_PH) | (ph > HIGHEST_PH)] = NO_PH
     reason[(amounts < 0.0).any(axis=0)] = NEGATIVE
     reason[(temperature < LOW_TEMPERATURE) | (temperature > HIGH_TEMPERATURE)] = TEMPERATURE
     finite = np.isfinite(amounts).all(axis=0) & np.isfinite(temperature)
-    finite &= np.isfinite(totals[system.index["alkalinity"]] if ph is None else ph)
+    finite &= np.isfinite(alkalinity if ph is None else ph)
     reason[~finite] = NOT_FINITE
     return reason

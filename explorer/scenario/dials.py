@@ -36,6 +36,9 @@ from explorer.treatment.units import from_base, to_base
 PLANT = "Plant"
 """Group of the dials that belong to no water and no step."""
 
+SMALLEST = 1e-12
+"""What is smaller, in whichever unit, is as good as zero."""
+
 FINE_STEP = {"ph": 0.05, "temperature": 0.5}
 """Steps [entered unit] of analysis entries whose size says nothing about their precision."""
 
@@ -242,8 +245,8 @@ def part_range(part: Number | Amount, value: float | Quantity) -> tuple[str, flo
 
 
 def fine_step(value: float) -> float:
-    """A hundredth of a value, rounded down to 1, 2 or 5 of a decade; 0.1 where the value is zero."""
-    if not value:
+    """A hundredth of a value, rounded down to 1, 2 or 5 of a decade; 0.1 where it is as good as zero."""
+    if abs(value) < SMALLEST:
         return 0.1
     hundredth = abs(value) / 100
     decade = 10.0 ** np.floor(np.log10(hundredth))

@@ -164,16 +164,17 @@ class Children(_Part):
 
 
 class Table(_Part):
-    """Entities by name."""
+    """Entities by name; ``most`` limits how many."""
 
-    __slots__ = []
+    __slots__ = ["most"]
+    _slot_defaults = _Part._slot_defaults | {"most": 500}
 
     @property
     def allowed(self) -> str:
-        return "an object with parts by name"
+        return f"an object with parts by name, at most {self.most}"
 
     def fault(self, value: Any) -> str:
-        return object_fault(value)
+        return object_fault(value, self.most)
 
     def read(self, raw: Any, path: str) -> dict[str, Entity]:
         parts = self.accepted(raw, path).items()

@@ -9,6 +9,9 @@ from typing import Any
 SHOWN_LENGTH = 40
 """Characters of a foreign text that are quoted in a sentence."""
 
+LISTED_LENGTH = 150
+"""Characters of a list of allowed words: beyond, nobody reads it to its end."""
+
 
 class ScenarioError(ValueError):
     """Something in a scenario that cannot be accepted.
@@ -54,8 +57,12 @@ def shown(value: Any) -> str:
 
 
 def listed(allowed: Iterable[str]) -> str:
-    """Allowed words in one line."""
-    return ", ".join(allowed) or "none"
+    """Allowed words in one line; of many the first, and how many there are."""
+    words = tuple(allowed)
+    line = ", ".join(words) or "none"
+    if len(line) <= LISTED_LENGTH:
+        return line
+    return f"{line[:LISTED_LENGTH].rpartition(', ')[0]} … ({len(words)} in all)"
 
 
 def unknown(word: Any, what: str, allowed: Iterable[str], similar: bool = True) -> str:
@@ -75,9 +82,11 @@ def unknown_key(key: str, allowed: Iterable[str]) -> str:
 
 
 def _guess(word: Any, allowed: tuple[str, ...], similar: bool = True) -> str:
-    if not isinstance(word, str):
+    # A text much longer than any word is none of them misspelt, and comparing it takes its time.
+    if not isinstance(word, str) or len(word) > 5 * SHOWN_LENGTH:
         return ""
-    same = [candidate for candidate in allowed if _plain(candidate) == _plain(word)]
+    plain = _plain(word)
+    same = [candidate for candidate in allowed if _plain(candidate) == plain]
     close = same or (difflib.get_close_matches(word, allowed, n=1) if similar else [])
     return f" (perhaps {close[0]})" if close else ""
 

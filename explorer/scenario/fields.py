@@ -29,6 +29,9 @@ LARGEST_NUMBER = 1e12
 
 NAME_LENGTH, TITLE_LENGTH, NOTE_LENGTH = 80, 200, 20_000
 
+MOST_NAMED = 100
+"""Entries of an analysis, components of a chemical: there are fewer than 30, and at most 50 own acids."""
+
 Bounds = tuple[float | None, float | None] | None
 
 _OVERRIDING_DIRECTION = frozenset("\u202a\u202b\u202c\u202d\u202e\u2066\u2067\u2068\u2069")
@@ -190,7 +193,7 @@ class Amounts(Number):
         return f"an object with numbers by name, each {self.each}"
 
     def faults(self, value: Any) -> Faults:
-        if fault := object_fault(value):
+        if fault := object_fault(value, MOST_NAMED):
             yield "", fault
             return
         for name, number in value.items():
@@ -335,11 +338,11 @@ class Choices(Choice):
                 yield f"[{position}]", f"{shown(word)} is there twice; allowed once"
 
 
-def object_fault(value: Any) -> str:
-    """What is wrong with something that must be a JSON object."""
-    return (
-        "" if isinstance(value, dict) else f"{shown(value)} is not an object; allowed {{…}} with named parts"
-    )
+def object_fault(value: Any, most: int | None = None) -> str:
+    """What is wrong with something that must be a JSON object, of at most so many parts."""
+    if not isinstance(value, dict):
+        return f"{shown(value)} is not an object; allowed {{…}} with named parts"
+    return "" if most is None or len(value) <= most else f"{len(value)} parts are too many; allowed {most}"
 
 
 def check_keys(raw: Mapping[str, Any], allowed: Iterable[str], path: str) -> None:

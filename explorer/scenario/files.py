@@ -24,6 +24,10 @@ LARGEST_FILE = 5_000_000
 DEEPEST = 40
 """Objects and lists that may stand in each other; four side streams in an option need 17."""
 
+MOST = {"objects": ("{", 50_000), "lists": ("[", 150_000)}
+"""By kind of part its sign in the text, and how many a file may have; a large one with twenty options has
+some 5 000 objects, fifty full sets of points 100 000 lists. Bounds the time and memory of reading."""
+
 LINE = 100
 """Columns within which a small object is written on one line."""
 
@@ -117,6 +121,9 @@ def _decoded(text: str | bytes) -> str:
 
 
 def _parsed(text: str) -> Any:
+    for kind, (sign, most) in MOST.items():
+        if (count := text.count(sign)) > most:
+            raise ScenarioError("", f"the file has {count} {kind}; allowed {most}")
     try:
         return json.loads(text, object_pairs_hook=_object, parse_int=_whole)
     except json.JSONDecodeError as error:
@@ -133,8 +140,12 @@ def _object(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
     parts = dict(pairs)
     if len(parts) == len(pairs):
         return parts
-    repeating, keys = _Repeating(parts), [key for key, _ in pairs]
-    repeating.repeated = next(key for position, key in enumerate(keys) if key in keys[:position])
+    repeating, seen = _Repeating(parts), set()
+    for key, _ in pairs:
+        if key in seen:
+            repeating.repeated = key
+            break
+        seen.add(key)
     return repeating
 
 

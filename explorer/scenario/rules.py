@@ -30,6 +30,9 @@ RESERVED_IDS = ("blend", "finished")
 
 SIDE_STREAM_DEPTH = 4
 
+MOST_STEPS = 200
+"""Steps of all trains together; no plant has a tenth of them, and each takes its time."""
+
 
 def check_format(raw: Any, path: str = "") -> None:
     """Raise ScenarioError unless ``raw`` says that it is a scenario of a version that can be read."""
@@ -158,8 +161,10 @@ def _analysis(analysis: Analysis, acid_units: dict[str, tuple[str, ...]]) -> Fau
 
 
 def _steps(scenario: Scenario) -> Faults:
-    chemicals = scenario.known_chemicals()
-    for path, step in scenario.steps():
+    chemicals, steps = scenario.known_chemicals(), list(scenario.steps())
+    if len(steps) > MOST_STEPS:
+        yield "train", f"there are {len(steps)} steps in all trains together; allowed {MOST_STEPS}"
+    for path, step in steps:
         # The train of a water is a level of the path, but not of side streams.
         depth = path.count(".train") + isinstance(step, SideStreamStep) - path.startswith("waters")
         if depth > SIDE_STREAM_DEPTH:

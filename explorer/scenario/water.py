@@ -5,6 +5,7 @@ from typing import Any, Self
 from explorer.scenario.entity import OPTIONAL, Children, Entity, Table
 from explorer.scenario.errors import ScenarioError, join, shown
 from explorer.scenario.fields import (
+    MOST_NAMED,
     NOTE_LENGTH,
     TITLE_LENGTH,
     Choice,
@@ -89,6 +90,8 @@ class Analysis(Entity):
         own = cls.fields().keys() - {"entries"}
         analysis = super().from_dict({key: part for key, part in raw.items() if key in own}, path)
         given = {key: part for key, part in raw.items() if key not in own}
+        if fault := object_fault(given, MOST_NAMED):
+            raise ScenarioError(path, fault)
         analysis.entries = {key: read_measured(key, part, join(path, key)) for key, part in given.items()}
         analysis._entry_parts = {key: tuple(part) for key, part in given.items()}
         analysis._written = tuple(raw)
@@ -130,7 +133,9 @@ class Water(Entity):
     )
     on = Flag(True, label="In service", doc="A water out of service keeps its settings but does not flow.")
     note = Text("", limit=NOTE_LENGTH, lines=True, label="Note", doc="Anything worth knowing of this water.")
-    analyses = Table({}, item=Analysis, required=True, label="Analyses", doc="One analysis for every season.")
+    analyses = Table(
+        {}, item=Analysis, most=12, required=True, label="Analyses", doc="One analysis for every season."
+    )
     train = Children([], item=Step, label="Train", doc="Steps before blending, in flow order.")
 
     @property
