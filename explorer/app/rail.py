@@ -16,6 +16,8 @@ from explorer.scenario.model import Scenario
 from explorer.scenario.readouts import MINUS, NO_VALUE, READOUTS, format_value
 from explorer.scenario.words import number_text
 
+COST_HINT = "kg a day of product, as far as its strength is known; prices, pumps and tanks under Quantities"
+
 PASTED = "paste:"
 """Stands for a pasted analysis where the id of a water to copy would stand; no id has a colon."""
 
@@ -133,7 +135,7 @@ class Rail(LiveView):
             for name, words, look in lines
         ]
         if len(rows) > 1:
-            rows.append(node("p", "hint", text="kg a day of product, as far as its strength is known"))
+            rows.append(node("p", "hint", text=COST_HINT))
         return [heading("Running cost"), *rows]
 
 

@@ -36,6 +36,7 @@ KINDS = (
     Kind("titration", "Titration", "titration_view", "TitrationView"),
     Kind("compare", "Compare", "compare_view", "CompareView"),
     Kind("ledger", "Ledger", "ledger_view", "LedgerView"),
+    Kind("quantities", "Quantities", "quantities_view", "QuantitiesView"),
     Kind("basis", "Basis", "basis_view", "BasisView"),
 )  # fmt: skip
 """Views in the order of their tabs; the first is open at first."""

@@ -9,12 +9,12 @@ from explorer.report.entered import dose_text
 from explorer.report.markup import Markup, Part, element
 from explorer.report.tables import Row, table
 from explorer.scenario.errors import ScenarioError
-from explorer.scenario.readouts import MINUS, NO_VALUE, READOUTS, format_value
+from explorer.scenario.readouts import NO_VALUE, READOUTS, format_value
 from explorer.scenario.words import number_text, unit_text
 from explorer.studies.hand_checks import figure, hand_checks
 from explorer.studies.ledger import SUM, Ledger
 from explorer.studies.measured import all_compared
-from explorer.studies.quantities import DoseUse, quantities
+from explorer.studies.quantities import Quantities, amount_text, quantities
 
 STAGES = ("ph", "temperature", "alkalinity", "dic", "calcium", "buffer_intensity", "ccpp")
 """Results shown at every stage."""
@@ -106,57 +106,72 @@ def amounts(case: Case) -> Iterator[Markup | None]:
     except ScenarioError as error:
         yield element("p", f"There are no quantities; {error}.")
         return
-    money = any(np.isfinite(dose.cost_per_ml) for dose in made.doses)
-    currency = made.currency or "cost"
-    heading = ["Chemical", "Dose", "Active, kg/d", "Product, kg/d", "t/year", "Pump, L/h", "Range, L/h"]
-    rows = [_dose_row(case, dose, money) for dose in made.doses]
-    if money:
-        heading += [f"{currency} per ML", f"{currency} per year"]
-        rows.append(["All", *[""] * 6, _amount_of(made.cost_per_ml), _amount_of(made.cost_per_year)])
-    yield table("quantities", heading, rows, left=(0, 1))
+    yield table("quantities", *_chemicals(case, made), left=(0, 1), full=made.table())
+    yield table("pumps", *_pumps(made), left=(0,))
     solids = [
         [
             solid.name,
-            _amount_of(solid.concentration),
-            _amount_of(solid.kg_per_day),
-            _amount_of(solid.t_per_year),
+            amount_text(solid.concentration),
+            amount_text(solid.kg_per_day),
+            amount_text(solid.t_per_year),
         ]
         for solid in made.solids
         if solid.concentration > 0
     ]
     yield table("solids", ["Dry solids formed", "mg/L", "kg/d", "t/year"], solids)
     said = [note.text for note in made.notes]
-    if money and made.price_date:
+    if np.isfinite(made.cost_per_ml) and made.price_date:
         said.append(f"prices of {made.price_date}")
     if made.doses:
-        said.append("range of the pump: over all seasons at the flow entered")
+        said.append(f"pumps: over all seasons{_flow_range(made)}; t/year at the flow and doses of now")
     if said:
         sentence = "; ".join(said)
         yield element("p", f"{sentence[0].upper()}{sentence[1:]}.", class_="small")
 
 
-def _dose_row(case: Case, dose: DoseUse, money: bool) -> Row:
-    pump = [dose.lowest_rate, dose.highest_rate]
-    span = " to ".join(dict.fromkeys(_amount_of(rate) for rate in pump))
-    return [
-        dose.name,
-        dose_text(case, dose.step),
-        _amount_of(dose.active_kg_per_day),
-        _amount_of(dose.product_kg_per_day),
-        _amount_of(dose.product_t_per_year),
-        _amount_of(dose.rate),
-        span,
-        *((_amount_of(dose.cost_per_ml), _amount_of(dose.cost_per_year)) if money else ()),
+def _flow_range(made: Quantities) -> str:
+    if made.low_flow < made.high_flow:
+        return f" and flows of {amount_text(made.low_flow)} to {amount_text(made.high_flow)} m³/h"
+    return ", at the flow entered"
+
+
+def _chemicals(case: Case, made: Quantities) -> tuple[Row, list[Row]]:
+    """Heading and rows: what is used, and what it costs where prices are entered."""
+    money = np.isfinite(made.cost_per_ml)
+    heading = ["Chemical", "Dose", "Active, kg/d", "Product, kg/d", "Product, t/year"]
+    rows = [
+        [
+            dose.name,
+            dose_text(case, dose.step),
+            amount_text(dose.active_kg_per_day),
+            amount_text(dose.product_kg_per_day),
+            amount_text(dose.product_t_per_year),
+            *(map(amount_text, (dose.price, dose.cost_per_ml, dose.cost_per_year)) if money else ()),
+        ]
+        for dose in made.doses
     ]
+    if money:
+        label = made.currency or "cost"
+        heading += [f"{label} per kg", f"{label} per ML", f"{label} per year"]
+        rows.append(["All", *[""] * 5, amount_text(made.cost_per_ml), amount_text(made.cost_per_year)])
+    return heading, rows
 
 
-def _amount_of(value: float) -> str:
-    """A quantity to three figures, or all of a larger one."""
-    if not np.isfinite(value):
-        return NO_VALUE
-    return (
-        f"{value:,.0f}".replace(",", "\u202f").replace("-", MINUS) if abs(value) >= 1000 else figure(value, 3)
-    )
+def _pumps(made: Quantities) -> tuple[Row, list[Row]]:
+    """Heading and rows: what the pumps must deliver, and how long a tank lasts where tanks are entered."""
+    tanks = any(np.isfinite(dose.tank) for dose in made.doses)
+    heading = ["Pump", "Strength, %", "kg/L", "L/h now", "least", "most", "Turndown"]
+    heading += ["Tank, m³", "lasts, days"] if tanks else []
+    rows = [
+        [
+            dose.name,
+            *map(amount_text, (dose.strength, dose.density, dose.rate, dose.lowest_rate, dose.highest_rate)),
+            f"{figure(dose.turndown, 3)} : 1" if np.isfinite(dose.turndown) else NO_VALUE,
+            *(map(amount_text, (dose.tank, dose.storage)) if tanks else ()),
+        ]
+        for dose in made.doses
+    ]
+    return heading, rows
 
 
 def measured(case: Case) -> Markup | None:

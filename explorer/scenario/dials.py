@@ -39,6 +39,9 @@ PLANT = "Plant"
 SMALLEST = 1e-12
 """What is smaller, in whichever unit, is as good as zero."""
 
+NO_DIALS = ("tank",)
+"""Numbers of steps on which no result of a stage depends."""
+
 FINE_STEP = {"ph": 0.05, "temperature": 0.5}
 """Steps [entered unit] of analysis entries whose size says nothing about their precision."""
 
@@ -179,7 +182,8 @@ def _train(scenario: Scenario, train: Sequence[Step], prefix: str) -> Iterator[D
     for step in train:
         inner = f"{prefix}train.{step.id}."
         name = step_name(scenario, step)
-        numbers = [key for key, part in step.fields().items() if isinstance(part, Number | Amount)]
+        fields = step.fields().items()
+        numbers = [key for key, part in fields if isinstance(part, Number | Amount) and key not in NO_DIALS]
         if isinstance(step, DoseStep):
             yield from _fields(step, numbers, inner, name, usual=usual_settings(scenario, step))
             if step.hold is not None:

@@ -227,7 +227,7 @@ def change_chemical(scenario: Scenario, step_id: str, chemical: str) -> None:
     if step.hold is not None:
         step.hold.ceiling = fitting(step.hold.ceiling)
     step.chemical = chemical
-    step.strength = step.basicity = step.ratio = step.price = None
+    step.strength = step.basicity = step.ratio = step.price = step.tank = None
     tidy(scenario)
 
 

@@ -150,6 +150,12 @@ class Scenario(Entity):
     )
     season = Text(None, required=True, label="Season", doc="The season shown.")
     flow = Amount(None, quantity="flow", label="Flow", doc="Flow of the blend, where waters have shares.")
+    low_flow = Amount(
+        None, quantity="flow", label="Lowest flow", doc="Of the blend; pumps follow it at the same doses."
+    )
+    high_flow = Amount(
+        None, quantity="flow", label="Highest flow", doc="Of the blend; pumps follow it at the same doses."
+    )
     waters = Children([], item=Water, required=True, label="Source waters", doc="Waters that are blended.")
     balance_water = Id(
         None,

@@ -106,6 +106,9 @@ class DoseStep(Step):
         label="Price",
         doc="Of a kilogram of product, in the currency of the scenario.",
     )
+    tank = Number(
+        None, unit="m³", bounds=(0, None), label="Tank", doc="Usable volume of product in store, when full."
+    )
 
 
 class AirStep(Step):

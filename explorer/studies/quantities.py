@@ -10,11 +10,14 @@ from numpy.typing import ArrayLike
 
 from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import Outcome, evaluate
-from explorer.scenario.model import Quantity, Scenario
+from explorer.scenario.model import DoseStep, Quantity, Scenario, Step
 from explorer.scenario.operations import Dose
+from explorer.scenario.readouts import NO_VALUE
+from explorer.studies.hand_checks import figure
 from explorer.studies.plain import known
 from explorer.treatment.chemicals import density, dose_in
 from explorer.treatment.notes import Note
+from explorer.treatment.units import to_base
 
 HOURS, DAYS = 24, 365
 """A day, a year."""
@@ -38,8 +41,9 @@ class DoseUse:
 
     ``dose`` in ``unit``. ``active_*``: pure substance, counted as ``basis``. ``rate``: L/h of product of
     ``strength`` [% by mass] and ``density`` [kg/L]. ``lowest_rate``, ``highest_rate``: over the flows and all
-    seasons; ``turndown``: their ratio. ``storage``: days that a full tank lasts at ``rate``. Costs in the
-    currency of the scenario, ``cost_per_ml`` for each ML of finished water.
+    seasons; ``turndown``: their ratio. ``tank`` [m³]; ``storage``: days that it lasts at ``rate`` when full.
+    ``price``: of a kg of product; costs in the currency of the scenario, ``cost_per_ml`` for each ML of
+    finished water.
     """
 
     step: str
@@ -59,7 +63,9 @@ class DoseUse:
     lowest_rate: float
     highest_rate: float
     turndown: float
+    tank: float
     storage: float
+    price: float
     cost_per_day: float
     cost_per_ml: float
     cost_per_year: float
@@ -110,6 +116,35 @@ class Quantities:
     def solids_kg_per_day(self) -> float:
         return _total(solid.kg_per_day for solid in self.solids)
 
+    def table(self) -> list[list[Any]]:
+        """Rows for a spreadsheet, the heading first: doses, their sum, and below them the dry solids."""
+        money = self.currency or "cost"
+        heading = [
+            "Dose", "Chemical", "Amount", "Unit", "Active [kg/d]", "Counted as", "Active [t/year]",
+            "Product [kg/d]", "Product [t/year]", "Strength [%]", "Density [kg/L]", "Pump [L/h]",
+            "Pump, least [L/h]", "Pump, most [L/h]", "Turndown", "Tank [m³]", "Storage [days]",
+            f"Price per kg [{money}]", f"Per day [{money}]", f"Per ML [{money}]", f"Per year [{money}]",
+            "Prices of",
+        ]  # fmt: skip
+        rows = [[*map(_cell, self._row(dose)), self.price_date] for dose in self.doses]
+        costs = self.cost_per_day, self.cost_per_ml, self.cost_per_year
+        everything = ["All", *[None] * 17, *map(_cell, costs), self.price_date]
+        solids = [
+            [solid.name, *map(_cell, (solid.concentration, solid.kg_per_day, solid.t_per_year))]
+            for solid in self.solids
+        ]
+        below = [[], ["Dry solids formed", "mg/L", "kg/d", "t/year"], *solids] if solids else []
+        return [heading, *rows, *([everything] if rows else []), *below]
+
+    @staticmethod
+    def _row(dose: DoseUse) -> tuple[Any, ...]:
+        return (
+            dose.name, dose.chemical, dose.dose, dose.unit, dose.active_kg_per_day, dose.basis,
+            dose.active_t_per_year, dose.product_kg_per_day, dose.product_t_per_year, dose.strength,
+            dose.density, dose.rate, dose.lowest_rate, dose.highest_rate, dose.turndown, dose.tank,
+            dose.storage, dose.price, dose.cost_per_day, dose.cost_per_ml, dose.cost_per_year,
+        )  # fmt: skip
+
     def to_dict(self) -> dict[str, Any]:
         """Plain data; None for what is not known."""
         totals = ("cost_per_day", "cost_per_ml", "cost_per_year", "solids_kg_per_day")
@@ -138,8 +173,9 @@ def quantities(
 ) -> Quantities:
     """Quantities of a scenario at a single point.
 
-    ``tanks``: usable m³ of product by dose step. ``low_flow``, ``high_flow``: m³/h of the blend, between
-    which pumps must follow at the same doses; the flow itself where None.
+    ``tanks``: usable m³ of product by dose step, in place of those of the steps. ``low_flow``, ``high_flow``:
+    m³/h of the blend, between which pumps must follow at the same doses; where None those of the scenario,
+    as far as they reach beyond the flow, else the flow itself.
 
     Raises ScenarioError for a tank of no dose step, a flow range that does not hold the flow, or many points.
     """
@@ -155,7 +191,8 @@ def quantities(
         if step not in outcome.dosing:
             raise ScenarioError("tanks", unknown(step, "a dose step in service", outcome.dosing))
     blend = float(outcome.stage("blend").flow)
-    low, high = _factors(blend, low_flow, high_flow) if flowing else (1.0, 1.0)
+    low, high = _factors(scenario, blend, low_flow, high_flow) if flowing else (1.0, 1.0)
+    tanks = {step.id: step.tank for _, step in scenario.steps() if _has_tank(step)} | dict(tanks)
     seasons = [evaluate(scenario, dials, other) for other in scenario.seasons if other != outcome.season]
     finished = float(outcome.stage().flow)
     given = finished if flowing else float("nan")
@@ -177,9 +214,26 @@ def quantities(
     )
 
 
-def _factors(flow: float, low: float | None, high: float | None) -> tuple[float, float]:
+def amount_text(value: float) -> str:
+    """A quantity to four figures, or all of a larger one in groups of three."""
+    if not np.isfinite(value):
+        return NO_VALUE
+    grouped = f"{value:,.0f}".replace(",", "\u202f")
+    return grouped if value >= 10_000 else figure(value)
+
+
+def _has_tank(step: Step) -> bool:
+    return isinstance(step, DoseStep) and step.tank is not None
+
+
+def _factors(scenario: Scenario, flow: float, low: float | None, high: float | None) -> tuple[float, float]:
     """Lowest and highest flow as parts of the flow."""
-    lowest, highest = (flow if end is None else end for end in (low, high))
+    own = [
+        flow if end is None else float(to_base(end.value, end.unit, "flow"))
+        for end in (scenario.low_flow, scenario.high_flow)
+    ]
+    lowest = min(own[0] or flow, flow) if low is None else low
+    highest = max(own[1], flow) if high is None else high
     if not 0 < lowest <= flow <= highest:
         wrong = f"{lowest:.4g} to {highest:.4g} m³/h does not hold the flow"
         raise ScenarioError("flow", f"{wrong}; allowed a range around {flow:.4g} m³/h, above 0")
@@ -222,7 +276,9 @@ def _dose_use(
         lowest_rate=lowest,
         highest_rate=highest,
         turndown=highest / lowest if lowest > 0 else float("nan"),
+        tank=float("nan") if tank is None else float(tank),
         storage=float("nan") if tank is None or not rate > 0 else 1000 * tank / (rate * HOURS),
+        price=float(dose.price),
         cost_per_day=cost * there,
         cost_per_ml=cost / (float(outcome.stage().flow) * HOURS / 1000),
         cost_per_year=cost * DAYS * there,
@@ -269,6 +325,11 @@ def _total(values: Iterator[float]) -> float:
     """Sum of what is known; nan where nothing is."""
     entered = [value for value in values if np.isfinite(value)]
     return sum(entered) if entered else float("nan")
+
+
+def _cell(value: Any) -> Any:
+    """A number that is not known as an empty cell."""
+    return known(value) if isinstance(value, float) else value
 
 
 def _parts(owner: DoseUse | SolidUse) -> dict[str, Any]:

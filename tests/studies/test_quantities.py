@@ -193,3 +193,40 @@ def test_plain_data_hold_none_for_what_is_not_known(hypo):
     data = quantities(hypo).to_dict()
     assert data["doses"][0]["rate"] == pytest.approx(9.6154, rel=HAND)
     assert data["doses"][0]["storage"] is None
+
+
+def test_the_scenario_says_tanks_and_the_range_of_flows(plant):
+    """5 m³ and 15 to 36 ML/d around 24 ML/d: 21.67 days, 6.01 to 14.42 L/h, a turndown of 2.4."""
+    dose = plant.dosed("hypo", "sodium_hypochlorite", 1.2, "mg/L as Cl2", tank=5)
+    made = quantities(
+        plant({"well": 100}, [dose], low_flow={"value": 15, "unit": "ML/d"},
+              high_flow={"value": 1500, "unit": "m³/h"})
+    )  # fmt: skip
+    found = only(made)
+    assert (made.low_flow, made.high_flow) == (pytest.approx(625), pytest.approx(1500))
+    assert (found.tank, found.storage) == (5, pytest.approx(21.667, rel=HAND))
+    assert found.lowest_rate == pytest.approx(9.6154 * 15 / 24, rel=HAND)
+    assert found.highest_rate == pytest.approx(9.6154 * 36 / 24, rel=HAND)
+    assert found.turndown == pytest.approx(2.4, rel=HAND)
+
+
+def test_a_range_that_the_flow_has_left_is_widened(plant):
+    """The flow is turned beyond the range that was entered: the pumps must follow it all the same."""
+    made = quantities(
+        plant({"well": 100}, low_flow={"value": 30, "unit": "ML/d"}, high_flow={"value": 36, "unit": "ML/d"})
+    )
+    assert (made.low_flow, made.high_flow) == (pytest.approx(1000), pytest.approx(1500))
+
+
+def test_the_rows_of_a_spreadsheet_have_every_figure(plant):
+    """A line a dose, their sum, and below them the solids; what is not known is an empty cell."""
+    alum = plant.dosed("alum", "aluminium_sulfate", 30, "mg/L", price=0.2)
+    clear = {"id": "clear", "step": "settle", "residual": 1000}
+    made = quantities(plant({"river": 100}, [alum, clear], currency="credits", price_date="2026-03"))
+    heading, dose, every, _, below, *solids = made.table()
+    assert len(dose) == len(every) == len(heading)
+    named = dict(zip(heading, dose, strict=True))
+    assert named["Active [kg/d]"] == pytest.approx(720, rel=HAND)
+    assert named["Tank [m³]"] is None and named["Prices of"] == "2026-03"
+    assert named["Per ML [credits]"] == dict(zip(heading, every, strict=True))["Per ML [credits]"]
+    assert below[0] == "Dry solids formed" and solids[0][0] == "Aluminium hydroxide"
