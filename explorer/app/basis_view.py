@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from explorer.app.basis_tables import constants_table, left_out_table, readouts_table
+from explorer.app.basis_tables import checks_table, constants_table, left_out_table, readouts_table
 from explorer.app.errand import REST, Errand
 from explorer.app.live_view import Node, node
 from explorer.app.sheet import SheetView
@@ -22,6 +22,7 @@ from explorer.studies.alarms import alarms, place_of
 from explorer.studies.basis import Assumption, Provenance, assumptions, provenance
 from explorer.studies.cautions import EXCLUDED, Hazard, Trial, hazards, next_tests, standing_cautions
 from explorer.studies.methods import CONVENTIONS, METHOD, OUTSIDE_CHECKS, STUDIES, VALIDITY, Method
+from explorer.studies.outside_checks import outside_checks
 from explorer.studies.sweep import Sweep
 from explorer.treatment.analysis import Balance
 from explorer.treatment.notes import Note
@@ -133,7 +134,7 @@ class BasisView(SheetView):
                 _section("constants", "Constants and their sources", "", constants_table()),
                 _section("left", "Reactions left out, and why", "", left_out_table()),
                 _section("readouts", "Readouts, their meaning and source", "", readouts_table()),
-                _section("checks", "Outside checks", "", _list(OUTSIDE_CHECKS)),
+                _section("checks", "Outside checks", _checked(), _list(OUTSIDE_CHECKS), checks_table()),
             ]
         return self._standing
 
@@ -146,6 +147,12 @@ def _section(key: str, title: str, aside: str, *content: Node) -> Node:
     head = node("summary", "", node("span", "title", text=title), node("span", "aside", text=aside))
     return node("details", "card section", head, *content, key=f"section:{key}", data_group=True,
                 open=key in OPEN)  # fmt: skip
+
+
+def _checked() -> str:
+    checks = outside_checks()
+    parting = sum(bool(check.parts) for check in checks)
+    return f"{len(checks)} cases, {sum(int(check.figures) for check in checks)} figures, ▲ {parting} part"
 
 
 def _list(sentences: Iterable[str]) -> Node:
@@ -205,7 +212,7 @@ def _notes(found: Rests) -> Node:
         level = node("span", f"level {note.level}", text=f"{GLYPHS[note.level]} {note.level}")
         where = place_of(found.outcome, note.where) or note.where
         rows.append(Row([level, plain(where, 80), plain(note.text, 390), note.source]))
-    heading = ["", "Where", "What", "Source"]
+    heading = ["Level", "Where", "What", "Source"]
     return table("Notes and alarms", heading, rows, words=range(4), searched=True)
 
 
@@ -238,4 +245,6 @@ def _methods(caption: str, methods: Sequence[Method]) -> Node:
         Row([one.name, " ".join(map(formula_text, one.text.split(" "))), formula_text(one.source)])
         for one in methods
     ]
-    return table(caption, ["", "What it is", "Source"], rows, words=range(3), searched=True, look="loose")
+    return table(
+        caption, ["Subject", "What it is", "Source"], rows, words=range(3), searched=True, look="loose"
+    )

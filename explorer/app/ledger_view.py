@@ -90,7 +90,7 @@ class LedgerView(SheetView):
 
         caption = "Ledger, " + ("amounts a day" if per == DAY else "amounts per litre of finished water")
         return table(
-            caption, ["", *(_heading(column, per) for column in found.columns)], lines(),
+            caption, ["Stage", *(_heading(column, per) for column in found.columns)], lines(),
             foot=[row(text, amounts, False, "total") for text, amounts in ends.items()], look="wide",
         )  # fmt: skip
 

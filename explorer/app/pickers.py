@@ -95,6 +95,13 @@ def picker(
     return [button, body]
 
 
+def spoken_name(text: str, hint: str) -> str | None:
+    """Name of a button for screen readers: its hint, with the text on it for those who speak to the page."""
+    if text.lower() in hint.lower():
+        return hint
+    return f"{text}: {hint}" if hint else None
+
+
 def segments(
     key: str,
     label: str,
@@ -107,9 +114,9 @@ def segments(
 
     def segment(name: str, words: str, hint: str) -> Node:
         return node(
-            "button", "", text=words, title=hint or None, aria_label=hint or None, key=f"{key}:{name}",
-            type="button", aria_pressed=str(name == chosen).lower(), disabled=name in disabled,
-            on=_press(lambda: choose(name)),
+            "button", "", text=words, title=hint or None, aria_label=spoken_name(words, hint),
+            key=f"{key}:{name}", type="button", aria_pressed=str(name == chosen).lower(),
+            disabled=name in disabled, on=_press(lambda: choose(name)),
         )  # fmt: skip
 
     buttons = [segment(name, *words) for name, words in options.items()]

@@ -8,6 +8,7 @@ from typing import Any
 
 from explorer.app.file_names import file_name
 from explorer.app.live_view import Node, node
+from explorer.app.pickers import spoken_name
 from explorer.app.state import Session
 from explorer.scenario.csv_text import BYTE_ORDER_MARK, csv_text
 
@@ -95,4 +96,5 @@ def csv_button(
         session.offer(name, BYTE_ORDER_MARK + csv_text(rows()))
 
     hint = f"Save the {what} as CSV, for a spreadsheet"
-    return node("button", "button", text=text, key=key, type="button", title=hint, aria_label=hint, on=save)
+    spoken = spoken_name(text, hint)
+    return node("button", "button", text=text, key=key, type="button", title=hint, aria_label=spoken, on=save)

@@ -79,7 +79,7 @@ class Figures(Card):
             Row(["everything at its worst, here", *self._pair(readout, found.here, place=False)]),
             Row(["… anywhere on the sweep", *self._pair(readout, found.anywhere, place=True)]),
         ]
-        heading = [f"{unit}" if unit else "", "lowest", "highest"]
+        heading = [f"{unit}" if unit else "Where", "lowest", "highest"]
         parts = [node("h3", text=title), table(title, heading, rows, look="loose")]
         if found.here is not None:
             parts.append(_corner(found.here, study.inputs))
@@ -124,7 +124,7 @@ def _corner(pair: tuple[Extreme, Extreme], inputs: Sequence[Input]) -> Node:
     return node(
         "details", "corner", node("summary", text="What is off, and which way"),
         node("p", "hint", text=f"Between −1 and +1: part of the tolerance.{inside}"),
-        table("What is off at the extremes", ["", "lowest", "highest"], lines),
+        table("What is off at the extremes", ["Input", "lowest", "highest"], lines),
     )  # fmt: skip
 
 

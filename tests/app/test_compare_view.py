@@ -48,7 +48,7 @@ def words(view: CompareView) -> str:
 
 def test_other_season_stands_beside_the_present_one(view: CompareView) -> None:
     """Only rows that differ: the river has other analyses, the well the same."""
-    assert [title.split(" ")[0] for title in heading(view)] == ["", "As", "summer"]
+    assert [title.split(" ")[0] for title in heading(view)] == ["Dial", "As", "summer"]
     found = lines(view)
     assert found["Temperature of Fern River °C"] == ["4", "19"]
     assert not any("Granite" in label for label in found)
