@@ -11,7 +11,6 @@ import pytest
 from bokeh.document import Document
 from bokeh.models import Span
 
-from explorer.app import serve
 from explorer.app.choosers import default_range
 from explorer.app.files import FileDesk, Shelf, blank, examples, file_name, tab_name
 from explorer.app.history import Work
@@ -394,25 +393,6 @@ def test_runner_without_a_loop_works_at_once() -> None:
     applied = []
     Conflate().submit(lambda: 5, applied.append)
     assert applied == [5]
-
-
-# ---- serving ------------------------------------------------------------------------------------------
-
-
-def test_only_requests_under_the_own_name_are_answered(monkeypatch: pytest.MonkeyPatch) -> None:
-    """A foreign name that points to this machine gets no page."""
-    page = serve.guarded(lambda: "page", lambda: 5006, "127.0.0.1")
-    headers = {}
-    monkeypatch.setattr(serve.pn, "state", SimpleNamespace(headers=headers))
-    for host, answered in (
-        ("127.0.0.1:5006", True),
-        ("localhost:5006", True),
-        ("evil.example:5006", False),
-        ("127.0.0.1:80", False),
-        ("", False),
-    ):
-        headers["Host"] = host
-        assert (page() == "page") is answered, host
 
 
 def test_session_of_a_page_has_no_widget() -> None:

@@ -1,14 +1,12 @@
 """A served page and a browser to drive it; every page also has to be free of errors and foreign requests."""
 
 import time
-import urllib.error
-import urllib.request
 from collections.abc import Callable, Iterator
 from typing import Any
 
 import pytest
 
-from explorer.app.serve import free_port, serve
+from tests.serving import running
 
 WAIT_MS = 15_000
 IDLE = "window.Bokeh && Bokeh.documents.length > 0 && Bokeh.documents[0].is_idle"
@@ -115,20 +113,8 @@ class Screen:
 @pytest.fixture(scope="session")
 def served() -> Iterator[str]:
     """Address of a served page with the shipped demo."""
-    port = free_port()
-    server = serve(port=port, open_browser=False, threaded=True, verbose=False)
-    url = f"http://127.0.0.1:{port}/"
-
-    def answers() -> bool:
-        try:
-            with urllib.request.urlopen(url, timeout=WAIT_MS / 1000) as answer:
-                return answer.status == 200
-        except urllib.error.URLError:
-            return False
-
-    until(answers, "an answer of the server")
-    yield url
-    server.stop()
+    with running() as url:
+        yield url
 
 
 @pytest.fixture
