@@ -11,6 +11,7 @@ from explorer.chemistry.constants import Constant, dissolved, log_henry_co2, sol
 from explorer.scenario.readouts import NO_VALUE, READOUTS
 from explorer.scenario.words import number_text, short_number
 from explorer.studies.methods import confidence_text, reaction_text
+from explorer.studies.outside_checks import OutsideCheck, by_topic
 
 HENRY = (
     "CO₂(g) = CO₂(aq), mol/(kg atm)",
@@ -58,6 +59,23 @@ def readouts_table() -> Node:
     rows = [line for name, lines in groups.items() for line in (Group(name), *lines)]
     heading = ["Readout", "Unit", "Meaning", "Source"]
     return table("Readouts", heading, rows, words=range(4), searched=True)
+
+
+def checks_table() -> Node:
+    """Published figures beside those of the engine."""
+    rows = [line for topic, found in by_topic() for line in (Group(topic), *map(_check, found))]
+    heading = ["Published case", "Printed", "Engine", "Difference", "Allowed", "Reason", "Source"]
+    return table("Outside checks", heading, rows, words=(0, 5, 6), searched=True)
+
+
+def _check(one: OutsideCheck) -> Row:
+    case = node("span", "", node("span", text=one.case), node("small", text=one.about) if one.about else None)
+    printed, engine, difference, allowed = one.numbers
+    if one.parts:
+        difference = node("span", "status bad", text=f"▲ {difference}")
+    unit = unit_text(one.unit)
+    first = node("span", "", node("span", text=printed), node("small", text=unit) if unit else None)
+    return Row([case, first, engine, difference, allowed, one.why, one.source])
 
 
 def _constant(one: Constant) -> Row:

@@ -13,7 +13,8 @@ from explorer.scenario.version import method
 from explorer.scenario.words import number_text, short_number
 from explorer.studies.basis import assumptions, provenance
 from explorer.studies.cautions import EXCLUDED, hazards, next_tests, standing_cautions
-from explorer.studies.methods import METHOD, VALIDITY, reaction_text
+from explorer.studies.methods import METHOD, OUTSIDE_CHECKS, VALIDITY, reaction_text
+from explorer.studies.outside_checks import OutsideCheck, by_topic
 from explorer.treatment.analysis import Balance
 
 LEVELS = {"error": "✕", "caution": "▲", "info": "i"}
@@ -143,6 +144,22 @@ def constants(case: Case) -> Markup | None:
         ]
     heading = ["Reaction", *(_at(celsius) for celsius in (25.0, temperature)), "Source"]
     return table("constants", heading, rows, left=(0, 3), look="dense")
+
+
+def outside_checks() -> Iterator[Markup | None]:
+    """Published figures beside those of the engine."""
+    yield element("ul", [element("li", text) for text in OUTSIDE_CHECKS])
+    rows = [line for topic, found in by_topic() for line in (Group(topic), *map(_check, found))]
+    heading = ["Published case", "Printed", "Engine", "Difference", "Allowed", "Reason", "Source"]
+    yield table("outside checks", heading, rows, left=(0, 5, 6), look="dense")
+
+
+def _check(one: OutsideCheck) -> Row:
+    about = element("small", one.about, class_="under") if one.about else None
+    printed, engine, difference, allowed = one.numbers
+    mark = "▲ " if one.parts else ""
+    figures = [[printed, " ", unit_cell(one.unit)], engine, mark + difference, allowed]
+    return [[one.case, about], *figures, one.why, one.source]
 
 
 def _at(celsius: float) -> Part:

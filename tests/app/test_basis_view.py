@@ -10,6 +10,7 @@ from explorer.scenario.files import open_scenario
 from explorer.scenario.model import Scenario
 from explorer.scenario.readouts import READOUTS
 from explorer.scenario.shipped import shipped
+from explorer.studies.outside_checks import outside_checks
 
 
 def opened(name: str = "juniper") -> BasisView:
@@ -135,3 +136,14 @@ def test_assumptions_can_be_saved(view: BasisView) -> None:
     """The register as CSV."""
     view.view.report("csv")
     assert view.session.offered.text.lstrip("\ufeff").startswith("Assumption,Value,Unit,Basis,Source")
+
+
+def test_every_outside_check_is_a_line_with_its_source(view: BasisView) -> None:
+    """The same table as in the report; where engine and publication part, it is marked and says why."""
+    found = rows(view, "checks")
+    for check in outside_checks():
+        said = (check.case, *check.numbers, check.why, check.source)
+        row = next(row for row in found if all(part in row for part in said))
+        assert ("▲" in row) == bool(check.parts)
+    title = next(part for part in section(view, "checks").walk() if part.tag == "summary").words()
+    assert f"{len(outside_checks())} cases" in title

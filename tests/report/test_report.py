@@ -16,6 +16,7 @@ from explorer.scenario.shipped import shipped
 from explorer.scenario.version import method
 from explorer.studies.finding import finding
 from explorer.studies.hand_checks import hand_checks
+from explorer.studies.outside_checks import outside_checks
 from explorer.studies.sweep import sweep
 from tests.report.conftest import every, rows, tree, words
 
@@ -78,7 +79,7 @@ def test_the_sections_of_a_complete_report(shipped_report):
     assert sections(tree(shipped_report("moss"))) == [
         "targets", "alarms", "sweep", "options", "seasons", "entered", "stages", "ledger", "checks",
         "tolerance", "quantities", "cautions", "excluded", "tests", "assumptions", "data", "results",
-        "method", "constants",
+        "method", "constants", "outside",
     ]  # fmt: skip
     contents = [link.get("href") for link in tree(shipped_report("moss")).find(".//nav")]
     assert contents == [f"#{name}" for name in sections(tree(shipped_report("moss")))]
@@ -261,3 +262,16 @@ def test_a_point_without_an_answer_still_has_a_report(plant):
     assert "There is no answer here, so there is no ledger." in visible(page)
     assert {"stages", "tests", "method"} <= set(sections(page))
     assert "results" not in sections(page)
+
+
+def test_the_outside_checks_stand_in_the_report(shipped_report):
+    """Every published case with printed and engine's figure, what is allowed and why, and its source."""
+    heading, *found = rows(tree(shipped_report("amber")), "outside")
+    assert heading == ["Published case", "Printed", "Engine", "Difference", "Allowed", "Reason", "Source"]
+    lines = [row for row in found if len(row) == len(heading)]
+    assert len(lines) == len(outside_checks())
+    for row, check in zip(lines, outside_checks(), strict=True):
+        assert row[0].startswith(check.case) and row[2:] == [
+            check.numbers[1], ("▲ " if check.parts else "") + check.numbers[2], check.numbers[3], check.why,
+            check.source,
+        ]  # fmt: skip
