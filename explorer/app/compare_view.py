@@ -237,7 +237,10 @@ class CompareView(View):
             return node("div", look, node("div", "card", node("p", "nothing", text=HOW)))
         rows = list(self._rows(side_by_side))
         nothing = node("p", "nothing", text="Nothing differs between these.")
-        heading = ["Dial or result", *(self._heading(place, case) for place, case in enumerate(side_by_side.cases))]
+        heading = [
+            "Dial or result",
+            *(self._heading(place, case) for place, case in enumerate(side_by_side.cases)),
+        ]
         drawn = table("Comparison, only what differs", heading, rows, look="wide compared")
         return node("div", look, node("div", "card grow", drawn if rows else nothing))
 

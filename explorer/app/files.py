@@ -34,6 +34,7 @@ SEASON = "all year"
 
 _FIRST_SENTENCE = re.compile(r"[^.?!]*[.?!]?")
 _NAME = re.compile(r"[\w\-]{8,40}")
+_FILE = re.compile(r"[\w][\w .()\-]{0,90}\.json")
 
 
 class Shelf:
@@ -137,7 +138,7 @@ class FileDesk(JSComponent):
             scenario = open_scenario(path)
         except ScenarioError as error:
             return self._refuse(path.name, str(error))
-        self._session.replace(scenario, path.name)
+        self._session.replace(scenario)
         return ""
 
     def new(self) -> None:
@@ -145,11 +146,15 @@ class FileDesk(JSComponent):
         self._session.replace(blank())
 
     def save(self, wanted: str = "") -> None:
-        """Hand the scenario to the browser as a download. wanted: name of the file, else one of the title."""
+        """Hand the scenario to the browser as a download. wanted: name of the file, else the one it was opened
+        or saved as, else one of the title."""
         session = self._session
-        name = file_name(wanted.strip().removesuffix(".json") or session.scenario.title)
+        known = wanted.strip() or session.file_name or session.scenario.title
+        # the name of a file that was opened is kept letter by letter
+        kept = known == session.file_name and _FILE.fullmatch(known)
+        name = known if kept else file_name(known.removesuffix(".json").removesuffix(".html"))
         session.offer(name, dumps(session.scenario), "application/json")
-        session.mark_saved()
+        session.mark_saved(name)
 
     def report(self) -> None:
         """Write the report on the scenario as it stands and hand it to the browser; again: stop writing."""

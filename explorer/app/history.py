@@ -19,6 +19,8 @@ class Step:
     key: str
     before: dict[str, Any]
     at: float
+    file_name: str | None = None
+    """What the file was called before, where the step opened another."""
 
 
 @dataclass
@@ -26,7 +28,8 @@ class Work:
     """The plain record behind a session: what has to survive a reload of the tab."""
 
     scenario: Scenario
-    file_name: str = "scenario.json"
+    file_name: str = ""
+    """Of the file that was opened or saved as; "" while there is none."""
     saved: dict[str, Any] | None = None
     choices: dict[str, Any] = field(default_factory=dict)
     past: list[Step] = field(default_factory=list)

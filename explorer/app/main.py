@@ -48,7 +48,7 @@ def _opened(path: Path | None) -> tuple[Work, str]:
         except ScenarioError as error:
             trouble = f"{path.name} was not opened: {error}"
     start = default_scenario_path()
-    return Work(open_scenario(start), start.name), trouble
+    return Work(open_scenario(start)), trouble
 
 
 def create_app(path: Path | None = None) -> Callable[[], pn.viewable.Viewable | pn.Template]:

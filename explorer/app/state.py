@@ -243,11 +243,14 @@ class Session(param.Parameterized):
 
         return self.edit("Sweep", change, key="sweep", rebuild=False)
 
-    def replace(self, scenario: Scenario, file_name: str = "scenario.json") -> None:
+    def replace(self, scenario: Scenario, file_name: str = "") -> None:
         """Go on with an opened scenario; nothing is unsaved, and undo leads back to the one before."""
-        self._remember(Step(f"Open {file_name}", "", self.scenario.to_dict(), self._clock()))
+        label, before = f"Open {file_name or 'a new scenario'}", self.scenario.to_dict()
+        self._remember(Step(label, "", before, self._clock(), self.work.file_name))
         self.work.file_name = file_name
         self.work.saved = scenario.to_dict()
+        # What was looked at in the scenario before may be of no interest in this one.
+        self.choose(readout=None, family=None)
         self._take(scenario)
 
     def undo(self) -> None:
@@ -267,8 +270,9 @@ class Session(param.Parameterized):
         """Let the user save a text as a file of this name."""
         self.offered = Offer(name, text, kind)
 
-    def mark_saved(self) -> None:
-        """The scenario as it stands has been written to a file."""
+    def mark_saved(self, file_name: str) -> None:
+        """The scenario as it stands has been written to a file of this name."""
+        self.work.file_name = file_name
         self.work.saved = self.scenario.to_dict()
         self._refresh_marks()
 
@@ -338,7 +342,10 @@ class Session(param.Parameterized):
             return
         step = source.pop()
         # No key: a turn right after an undo must not merge into the step that was undone.
-        destination.append(Step(step.label, "", self.scenario.to_dict(), 0.0))
+        back = None if step.file_name is None else self.work.file_name
+        destination.append(Step(step.label, "", self.scenario.to_dict(), 0.0, back))
+        if step.file_name is not None:
+            self.work.file_name = step.file_name
         self._take(Scenario.from_dict(step.before))
 
     def _take(self, scenario: Scenario, rebuild: bool = True) -> None:

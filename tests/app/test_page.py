@@ -303,7 +303,7 @@ def test_save_marks_the_scenario_as_saved(shell: Shell, monkeypatch: pytest.Monk
     monkeypatch.setattr(FileDesk, "_send_msg", lambda self, message: sent.append(message))
     shell.session.turn(WELL, 33)
     shell.files.save()
-    name, kind = "amber-river-and-wellfield.json", "application/json"
+    name, kind = "amber.json", "application/json"
     assert sent == [{"text": dumps(shell.session.scenario), "name": name, "type": kind}]
     assert not shell.session.unsaved
 
@@ -421,11 +421,32 @@ def test_new_scenario_is_one_assumed_water(shell: Shell) -> None:
 
 
 def test_saving_under_another_name(shell: Shell) -> None:
-    """The name is made fit for a file; without one it comes from the title."""
+    """The name is made fit for a file and remembered; a file that was opened keeps its own."""
+    shell.files.save()
+    assert shell.session.offered.name == "amber.json"
     shell.files.save("Board meeting: B.json")
     assert shell.session.offered.name == "board-meeting-b.json"
     shell.files.save()
-    assert shell.session.offered.name == "amber-river-and-wellfield.json"
+    assert shell.session.offered.name == "board-meeting-b.json"
+    shell.files.open_bytes(dumps(shell.session.scenario).encode(), "Moss (summer) 2.json")
+    shell.files.save()
+    assert shell.session.offered.name == "Moss (summer) 2.json"
+    shell.files.open_bytes(dumps(shell.session.scenario).encode(), "../../etc/pass<wd>.json")
+    shell.files.save()
+    assert shell.session.offered.name == "etc-pass-wd.json"
+
+
+def test_what_is_no_file_of_the_users_is_named_by_its_title(shell: Shell) -> None:
+    """An example, and a new scenario; undo brings the name back too."""
+    shell.files.open_example("moss")
+    shell.files.save()
+    assert shell.session.offered.name == "moss-soft-coloured-upland-water.json"
+    shell.files.new()
+    shell.files.save()
+    assert shell.session.offered.name == "new-scenario.json"
+    shell.session.undo()
+    shell.session.undo()
+    assert shell.session.file_name == "amber.json"
 
 
 def test_keys_open_views_and_move_the_operating_point(shell: Shell) -> None:

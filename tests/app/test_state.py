@@ -157,7 +157,7 @@ def test_season_is_a_step_and_changes_the_point(session: Session) -> None:
 def test_saving_clears_the_mark_and_undo_brings_it_back(session: Session) -> None:
     """Unsaved means: other than the file."""
     session.turn(WELL, 60)
-    session.mark_saved()
+    session.mark_saved("plant.json")
     assert not session.unsaved
     session.undo()
     assert session.unsaved
