@@ -42,10 +42,12 @@ def dial_picker(
     title: str,
     label: str = "Choose a dial ▾",
 ) -> list[Node]:
-    """A button with the chosen dial on it, else the ``label``, and the searchable list of all dials."""
+    """A button with the chosen dial on it, else the ``label``, and the searchable list of all dials; those
+    that are held are marked."""
     groups: dict[str, list[Choice]] = {}
     for dial in session.dials.values():
-        line = Choice(dial.address, plain(dial.label, 90), unit_text(dial.unit), dial.address)
+        held = " · held" if dial.address in session.held else ""
+        line = Choice(dial.address, plain(dial.label, 90), f"{unit_text(dial.unit)}{held}", dial.address)
         groups.setdefault(plain(dial.group, 60), []).append(line)
     shown = f"{plain(chosen.label, 60)} ▾" if chosen else label
     return picker(key, shown, groups, choose, look="button", hint="Search dials", title=title)

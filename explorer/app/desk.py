@@ -9,14 +9,15 @@ import numpy as np
 
 from explorer.app.choosers import default_range
 from explorer.app.entry import Entries, message, show_number
+from explorer.app.hold_panel import settled
 from explorer.app.live_view import Node, node
 from explorer.app.other_units import Originals
 from explorer.app.state import Change, Session
 from explorer.app.text import unit_text
 from explorer.chemistry import System
 from explorer.scenario import editing
-from explorer.scenario.dials import Dial, fine_step
-from explorer.scenario.model import Analysis, Scenario
+from explorer.scenario.dials import Dial, fine_step, is_share
+from explorer.scenario.model import Analysis, Scenario, Water
 from explorer.scenario.operations import Dose
 from explorer.scenario.own_parts import own_parts
 from explorer.scenario.readouts import MINUS, READOUTS, format_value
@@ -43,6 +44,7 @@ class Desk:
     row that shows its note. naming: key of the card being renamed. originals: entries as they were before
     their unit was changed. pasting: the laboratory sheet being taken over (``paste_panel.Pasting``), or None.
     defining: the substance of the user's own being defined (``own_substance.Definition``), or None.
+    holding: the hold whose form is open (``holding.Holding``), or None. reached: ends of sliders by address.
     """
 
     def __init__(self, session: Session) -> None:
@@ -52,7 +54,8 @@ class Desk:
         self.originals = Originals()
         self.pasting: Any = None
         self.defining: Any = None
-        self._reach: dict[str, float] = {}
+        self.holding: Any = None
+        self.reached: dict[str, float] = {}
         self._examined: tuple[Any, Examination] | None = None
 
     @property
@@ -105,6 +108,13 @@ class Desk:
             if math.isfinite(use):
                 found[dose.chemical.name] = found.get(dose.chemical.name, 0.0) + use
         return list(found.items())
+
+    def part(self, water: Water) -> float:
+        """Part (0 to 1) of a water in the blend, as computed where shares are held."""
+        point = self.session.point
+        if point is not None and any(map(is_share, self.session.held)):
+            return float(point.parts.get(water.id, 0.0))
+        return self.scenario.fractions()[water.id]
 
     def flow_text(self, flow: float | None) -> str:
         """A flow [m³/h] in the unit in which flow was entered; "" where none was."""
@@ -172,6 +182,7 @@ class Desk:
             self.opened = ""
         if self.naming not in standing:
             self.naming = ""
+        self.holding = settled(self)
         if self.defining is not None and self.defining.id not in {
             "",
             *(part.id for part in own_parts(self.scenario)),
@@ -200,15 +211,20 @@ class Desk:
         colour: str | None = None,
         span: tuple[float, float] | None = None,
         digits: int | None = None,
+        beside: Node | None = None,
     ) -> Node:
-        """A dial as slider and exact number with its unit.
+        """A dial as slider and exact number with its unit; both at rest while it is computed.
 
         what: a word on what the number is, behind the unit. span: ends of the slider, where they are not to
-        follow from the dial. digits: decimals shown, those of the slider's step where None.
+        follow from the dial. digits: decimals shown, those of the slider's step where None. beside: what
+        stands at the end of the row.
         """
+        reason = self.session.fixed(dial.address)
+        value = self.session.value(dial.address) if reason else dial.value
         low, high = span or (dial.low, self._reached(dial))
         step = fine_step(100 * (high - low) / POSITIONS)
-        shown = show_number(dial.value, step if digits is None else 10.0**-digits)
+        shown = show_number(value, step if digits is None else 10.0**-digits)
+        hint = f"{dial.label} {reason}" if reason else None
 
         def slide(value: Any) -> None:
             self.entries.refuse(
@@ -217,16 +233,17 @@ class Desk:
 
         slider = node(
             "input", "slider", key=f"{dial.address}:slider", on=slide, type="range", min=low, max=high,
-            step=step, value=dial.value, colour=colour, aria_label=dial.label,
-            aria_valuetext=f"{shown} {dial.unit}".strip(),
+            step=step, value=value if math.isfinite(value) else low, colour=colour, aria_label=dial.label,
+            aria_valuetext=f"{shown} {dial.unit}".strip(), disabled=bool(reason), title=hint,
         )  # fmt: skip
         number, refusal = self.entries.number(
             dial.address, dial.label, shown, lambda value: self.turn(dial.address, value),
-            low=dial.low, high=dial.high, unit=dial.unit,
+            low=dial.low if dial.bounded else None, high=dial.high, unit=dial.unit,
+            disabled=bool(reason), hint=hint, placeholder="–" if reason else "",
         )  # fmt: skip
         words = f"{unit_text(dial.unit)} {what}".strip()
         unit = node("span", "unit", text=words, title=dial.label) if words else None
-        return node("div", "row", slider, number, unit, refusal)
+        return node("div", "row fixed" if reason else "row", slider, number, unit, beside, refusal)
 
     def _reached(self, dial: Dial) -> float:
         """Right end of a dial's slider: its limit, or a round number near its value where that is far off.
@@ -234,14 +251,14 @@ class Desk:
         The end stays where it is while the value is inside, so that the handle does not slip while dragged.
         """
         wide = dial.high is None or dial.high - dial.low > _COARSE * max(abs(dial.value), 10 * dial.step)
-        if not wide and dial.address not in self._reach:
+        if not wide and dial.address not in self.reached:
             return dial.high
-        end = self._reach.get(dial.address, -math.inf)
+        end = self.reached.get(dial.address, -math.inf)
         if dial.value > end:
             span = max(2.2 * (dial.value - dial.low), 50 * dial.step)
             end = dial.low + 5 * nice_step(span, 5)
         end = end if dial.high is None else min(end, dial.high)
-        self._reach[dial.address] = end
+        self.reached[dial.address] = end
         return end
 
     def name_field(self, key: str, part_id: str, shown: str) -> list[Node]:

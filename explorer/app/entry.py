@@ -110,11 +110,13 @@ class Entries:
         empty: Callable[[], str] | None = None,
         placeholder: str = "",
         look: str = "number",
+        disabled: bool = False,
+        hint: str | None = None,
     ) -> tuple[Node, Node]:
         """A field for a number and the place for its message.
 
         shown: the text of the present value. take: gets the number read, returns "" or a refusal.
-        empty: what an emptied field does (None: a number is needed).
+        empty: what an emptied field does (None: a number is needed). hint: shown at the pointer.
         """
 
         def read(text: str) -> str:
@@ -122,9 +124,10 @@ class Entries:
                 return empty()
             return take(parse_number(text, low, high, unit))
 
-        hint = f"{label}, {unit}" if unit else label
+        name = f"{label}, {unit}" if unit else label
         extras = {"placeholder": placeholder or None, "inputmode": "decimal", "maxlength": 40}
-        return self.text(key, hint, shown, read, look=look, **extras)
+        extras |= {"disabled": True} if disabled else {}
+        return self.text(key, name, shown, read, look=look, hint=hint, **extras)
 
     def text(
         self,
@@ -135,6 +138,7 @@ class Entries:
         *,
         look: str = "words",
         cancel: Callable[[], object] | None = None,
+        hint: str | None = None,
         **properties: Any,
     ) -> tuple[Node, Node]:
         """A field for a text and the place for its message.
@@ -171,7 +175,7 @@ class Entries:
             autocomplete="off",
             aria_label=label,
             aria_invalid="true" if refusal else None,
-            title=shown if len(shown) > 12 else None,
+            title=hint or (shown if len(shown) > 12 else None),
             data_asks=cancel is not None,
             **properties,
         )

@@ -82,6 +82,8 @@ class Strip(LiveView):
         scenario, dials = self.session.scenario, self.session.dials
         ids = [water.id for water in scenario.waters if water.on]
         amounts = [f"waters.{name}.{part}" for name in ids for part in ("share", "flow")]
+        held = self.session.held
+        amounts += [held[address].goal for address in amounts if address in held]
         swept = self.session.swept
         return [
             address

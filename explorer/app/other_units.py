@@ -2,7 +2,7 @@
 
 The number is converted without rounding. What was entered is remembered, so that changing the unit back shows
 it again digit for digit; it is forgotten as soon as the entry is changed in any other way. Whatever else is
-stated in the unit of the entry, its tolerance and a sweep over it, is converted with it.
+stated in the unit of the entry is converted with it: its tolerance, a sweep over it, the limits of its hold.
 """
 
 from collections.abc import Callable
@@ -53,10 +53,13 @@ def in_unit(measured: Measured, unit: str, quantity: str | Units) -> Measured:
 
 
 def take_along(scenario: Scenario, address: str, convert: Conversion) -> None:
-    """Convert the tolerance of a dial and a sweep over it, in place, when the unit of the dial changes."""
+    """Convert what is stated in the unit of a dial, in place, when that changes: tolerance, sweep, hold."""
     sweep = scenario.sweep
     if sweep is not None and sweep.dial == address:
         sweep.start, sweep.stop = convert(sweep.start), convert(sweep.stop)
+    hold = scenario.holds.get(address)
+    if hold is not None:
+        hold.low, hold.high = _each(convert, hold.low), _each(convert, hold.high)
     tolerance = scenario.tolerances.get(address)
     if tolerance is not None and tolerance.unit != "%":
         width = width_of(convert)

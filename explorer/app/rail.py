@@ -3,12 +3,14 @@
 from typing import Any, ClassVar
 
 from explorer.app.desk import Desk, facts, heading
+from explorer.app.hold_panel import dial_part
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.own_substance import own_section
 from explorer.app.paste_panel import Pasting, paste_panel
 from explorer.app.pickers import Choice, picker
 from explorer.app.state import Session
 from explorer.app.step_card import train_list
+from explorer.app.step_form import own_dial
 from explorer.app.water_card import water_card
 from explorer.scenario import editing
 from explorer.scenario.evaluate import Outcome
@@ -24,6 +26,7 @@ PASTED = "paste:"
 
 def asked(point: Outcome) -> None:
     """Everything the rail reads from the operating point, asked once so that it is there when it is read."""
+    _ = point.held
     for stage in point.stages:
         keys = ["ph", "alkalinity"]
         if stage.kind == "water":
@@ -57,6 +60,7 @@ class Rail(LiveView):
             "div", "rail stale" if self.desk.session.stale else "rail",
             node("section", "", *self._waters(), aria_label="Source waters"),
             node("section", "", *self._treatment(), aria_label="Treatment, in order of flow"),
+            self._held_elsewhere(),
             own_section(self.desk),
             node("section", "", *self._cost(), key="cost", aria_label="Running cost"),
         )  # fmt: skip
@@ -104,6 +108,31 @@ class Rail(LiveView):
         line = train_list(desk, desk.scenario.train, "", "blend", blend)
         line.children.append(finished)
         return [heading("Treatment, in order of flow"), line]
+
+    def _held_elsewhere(self) -> Node | None:
+        """Dials that are held and stand on no card: settings of products, measured values, …"""
+        desk = self.desk
+        cards = self._card_dials() if desk.scenario.holds else set()
+        lines = []
+        for address in desk.scenario.holds:
+            dial = desk.session.dials.get(address)
+            if dial is not None and address not in cards:
+                head = node("div", "head", node("span", "name still", text=dial.label, title=dial.label))
+                lines.append(node("li", "card held", head, *dial_part(desk, dial), key=f"held:{address}"))
+        if not lines:
+            return None
+        title = "Held by other dials"
+        return node("section", "", heading(title), node("ul", "waters", *lines), key="held", aria_label=title)
+
+    def _card_dials(self) -> set[str]:
+        """Dials that have a row on the card of their water or step."""
+        desk = self.desk
+        found = {f"waters.{water.id}.{part}" for water in desk.scenario.waters for part in ("share", "flow")}
+        for prefix, owner in editing.trains(desk.scenario):
+            for step in owner.train:
+                dial = own_dial(desk, step, f"{prefix}train.{step.id}")
+                found |= {dial.address} if dial is not None else set()
+        return found
 
     def _blend_state(self) -> str:
         temperature = f"{self.desk.words('temperature', 'blend')} °C"

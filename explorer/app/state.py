@@ -29,10 +29,12 @@ from typing import Any
 import param
 
 from explorer.app.calculation import Immediate, Results, Runner, Wanted, solve
+from explorer.app.held import computed, fixed, is_computed
 from explorer.app.history import MOST_STEPS, Step, Work
 from explorer.scenario.dials import Dial, dials, turn
 from explorer.scenario.editing import tidy
 from explorer.scenario.evaluate import Outcome
+from explorer.scenario.holding import Holding, holdings, resting
 from explorer.scenario.model import Scenario, SweepSetting
 from explorer.scenario.outcome import FINISHED
 
@@ -94,6 +96,7 @@ class Session(param.Parameterized):
         self._wanted: dict[str, tuple[Wanted, ...]] = {}
         self._questions: dict[str, Callable[[Outcome], None]] = {}
         self._dials: dict[str, Dial] | None = None
+        self._held: tuple[dict[str, Holding], dict[str, Holding]] | None = None
         self._curve = self._shown_curve = 0
         if record.saved is None:
             record.saved = record.scenario.to_dict()
@@ -124,17 +127,42 @@ class Session(param.Parameterized):
             self._dials = dials(self.scenario)
         return self._dials
 
+    @property
+    def holdings(self) -> dict[str, Holding]:
+        """Every hold, by the address of the dial that it is about."""
+        return self._every_hold()[0]
+
+    @property
+    def held(self) -> dict[str, Holding]:
+        """The holds in force: their dials are computed."""
+        return self._every_hold()[1]
+
+    def _every_hold(self) -> tuple[dict[str, Holding], dict[str, Holding]]:
+        if self._held is None:
+            every, rests = holdings(self.scenario), resting(self.scenario)
+            self._held = every, {key: hold for key, hold in every.items() if key not in rests}
+        return self._held
+
     def value(self, address: str) -> float:
-        """Current value of the dial at ``address``, as entered. Raises KeyError for an unknown one."""
+        """Current value of the dial at ``address``: as entered, or as computed where it is held or a share
+        beside a held one (nan without a result). Raises KeyError for an unknown one."""
+        if is_computed(self.held, address):
+            return computed(self.point, address)
         return self.dials[address].value
+
+    def fixed(self, address: str) -> str:
+        """Why a dial cannot be turned by hand now, as the end of a sentence about it; "" where it can."""
+        return fixed(self.scenario, self.held, address)
 
     # ---- changing ------------------------------------------------------------------------------------
 
     def turn(self, address: str, value: float) -> str:
         """Turn one dial and recalculate; "" or the sentence that says why the value is refused."""
+        label = self.dials[address].label if address in self.dials else address
+        if reason := self.fixed(address):
+            return f"{label} {reason}"
         merge, keeps_curve = self._merges(address), self._keeps_curve(address, value)
         before = None if merge else self.scenario.to_dict()
-        label = self.dials[address].label if address in self.dials else address
         try:
             turn(self.scenario, address, value)
         except ValueError as error:
@@ -144,7 +172,7 @@ class Session(param.Parameterized):
             self.work.future.clear()
         else:
             self._remember(Step(label, address, before, self._clock()))
-        self._dials = None
+        self._dials = self._held = None
         self.param.update(unsaved=True, can_undo=True, can_redo=False, values=self.values + 1)
         self.calculate(keeps_curve)
         return ""
@@ -350,7 +378,7 @@ class Session(param.Parameterized):
 
     def _take(self, scenario: Scenario, rebuild: bool = True) -> None:
         self.work.scenario = scenario
-        self._dials = None
+        self._dials = self._held = None
         with param.parameterized.batch_call_watchers(self):
             self.scenario = scenario
             self.structure += int(rebuild)

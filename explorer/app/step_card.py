@@ -1,20 +1,17 @@
 """Treatment steps on the rail: a train as a line of cards, each with its setting and what it did."""
 
-import math
 from dataclasses import replace
 
 from explorer.app.desk import Desk, facts
+from explorer.app.hold_panel import SPANS, dial_part, hold_act
 from explorer.app.live_view import Node, node
 from explorer.app.own_substance import KINDS, Definition, own_choices, own_panel
 from explorer.app.pickers import Act, Choice, menu, picker
-from explorer.app.step_form import chemical_choices, main_dial, step_form
-from explorer.app.text import in_sentence, unit_text
+from explorer.app.step_form import chemical_choices, main_dial, own_dial, step_form
 from explorer.scenario import editing
 from explorer.scenario.dials import Dial, step_name
 from explorer.scenario.model import DoseStep, Scenario, SideStreamStep, Step
-from explorer.scenario.readouts import READOUTS, format_value
 from explorer.scenario.steps import STEP_KINDS
-from explorer.scenario.words import number_text
 
 SETTING_WORDS = {
     "approach": "approach",
@@ -23,9 +20,6 @@ SETTING_WORDS = {
     "cycles": "cycles",
 }
 """What the number on a card is, behind its unit, where the unit does not say it."""
-
-HOLD_SPANS = {"ph": (5.0, 11.0)}
-"""Ends of the slider of a held readout, where 0 to a round number would be no use."""
 
 
 def train_list(desk: Desk, train: list[Step], prefix: str, before: str = "", *ends: Node) -> Node:
@@ -49,16 +43,17 @@ def step_card(desk: Desk, step: Step, prefix: str, position: int, count: int, be
     body = [
         node("div", "head", *_head(desk, step, key, position, count)),
         desk.refusal(key),
-        _state(desk, step),
+        None if step.on else node("div", "state", node("span", "tag quiet", text="out of service")),
         _effect(desk, step, before) if step.on else None,
-        _setting(desk, step, key),
+        *_setting(desk, step, key),
     ]
     if opened:
         body.append(node("div", "details", *step_form(desk, step, key), data_reveal=True))
     if isinstance(step, SideStreamStep):
         inner = train_list(desk, step.train, f"{key}.", before)
         body.append(node("div", "inner", node("h3", text="In the side stream"), inner))
-    held = isinstance(step, DoseStep) and step.hold is not None
+    dial = own_dial(desk, step, key)
+    held = dial is not None and dial.address in desk.session.held
     look = "card" + (" opened" if opened else "") + (" held" if held else "") + ("" if step.on else " off")
     card = node("div", look, *body)
     return node("li", "" if step.on else "idle", _grip(desk, step, key), card, key=key, data_reveal=opened)
@@ -90,23 +85,6 @@ def _head(desk: Desk, step: Step, key: str, position: int, count: int) -> list[N
     return [title, aside, *menu(key, f"More for {name}", acts)]
 
 
-def _state(desk: Desk, step: Step) -> Node | None:
-    """What the step holds and the dose that takes, or that it is out of service."""
-    if not step.on:
-        return node("div", "state", node("span", "tag quiet", text="out of service"))
-    if not isinstance(step, DoseStep) or step.hold is None:
-        return None
-    readout = READOUTS[step.hold.readout]
-    held = f"holds {in_sentence(readout.short)} {format_value(step.hold.value, readout)}"
-    dosing = desk.dosing(step.id)
-    words, look = "▲ no dose found", "poor"
-    if dosing is not None and math.isfinite(dose := float(dosing.value)):
-        amount = f"doses {number_text(dose, 2 if abs(dose) < 10 else 1)} {unit_text(step.hold.ceiling.unit)}"
-        words, look = (amount, "strong") if bool(dosing.met) else (f"▲ not met, {amount}", "poor")
-    tag = node("span", "tag", text=held, title=readout.label)
-    return node("div", "state", tag, node("span", look, text=words))
-
-
 def _acts(desk: Desk, step: Step, key: str, name: str, position: int, count: int) -> list[Act]:
     step_id = step.id
     switch = "Take out of service" if step.on else "Put into service"
@@ -119,7 +97,8 @@ def _acts(desk: Desk, step: Step, key: str, name: str, position: int, count: int
     remove = desk.act(key, f"Remove {name}", lambda scenario: editing.remove_step(scenario, step_id))
     return [
         Act("details", "Close" if desk.opened == key else "Open the settings", lambda: desk.open(key)),
-        Act("sweep", "Sweep this", (lambda: desk.sweep(dial, _span(step, dial))) if dial else None),
+        Act("sweep", "Sweep this", (lambda: desk.sweep(dial, _span(dial))) if dial else None),
+        hold_act(desk, own_dial(desk, step, key)),
         Act("rename", "Rename", lambda: desk.rename(key)),
         Act("up", "Move up", moved(-1)),
         Act("down", "Move down", moved(1)),
@@ -147,19 +126,17 @@ def _effect(desk: Desk, step: Step, before: str) -> Node:
     return facts(*words, hint="What the step did; alkalinity in mg/L as CaCO₃")
 
 
-def _setting(desk: Desk, step: Step, key: str) -> Node | None:
+def _setting(desk: Desk, step: Step, key: str) -> list[Node]:
     """The one dial of a step that is turned most, on its card."""
-    dial = main_dial(desk, step, key)
+    dial = own_dial(desk, step, key)
     if dial is None:
-        return None
-    digits = READOUTS[step.hold.readout].digits if dial.address == f"{key}.hold.value" else None
-    what = SETTING_WORDS.get(dial.address.rpartition(".")[2], "")
-    return desk.dial_row(dial, what=what, span=_span(step, dial), digits=digits)
+        return []
+    return dial_part(desk, dial, what=SETTING_WORDS.get(dial.address.rpartition(".")[2], ""))
 
 
-def _span(step: Step, dial: Dial) -> tuple[float, float] | None:
-    held = dial.address.endswith(".hold.value")
-    return HOLD_SPANS.get(step.hold.readout) if held else None
+def _span(dial: Dial) -> tuple[float, float] | None:
+    """Range of a sweep over a held pH."""
+    return SPANS["ph"] if dial.address.endswith(".hold.value") and dial.label.startswith("pH") else None
 
 
 def add_step(desk: Desk, prefix: str) -> list[Node]:

@@ -5,6 +5,7 @@ from typing import Any
 
 from explorer.app.desk import Desk, facts
 from explorer.app.entry import show_number
+from explorer.app.hold_panel import step_dial
 from explorer.app.live_view import Node, node
 from explorer.app.other_units import Conversion, conversion, take_along
 from explorer.app.pickers import Choice, picker
@@ -15,9 +16,8 @@ from explorer.scenario.dials import Dial
 from explorer.scenario.entity import Entity
 from explorer.scenario.fields import Choice as OneOf
 from explorer.scenario.fields import Choices, Flag, Number, Text
-from explorer.scenario.model import DoseStep, Hold, Quantity, Scenario, Step
+from explorer.scenario.model import DoseStep, Quantity, Scenario, Step
 from explorer.scenario.quantity import Amount
-from explorer.scenario.readouts import READOUTS
 from explorer.scenario.words import number_text
 from explorer.treatment.catalogue import SETTINGS
 from explorer.treatment.chemicals import Chemical, dose_in, dose_moles, pump_rate
@@ -161,11 +161,20 @@ class Form:
         return lambda dose: float(dose_in(product, dose_moles(product, dose, old, strength), new, strength))
 
 
-def main_dial(desk: Desk, step: Step, key: str) -> Dial | None:
-    """The dial on a step's card: the held value of a hold, else the first number of the step."""
+def own_dial(desk: Desk, step: Step, key: str) -> Dial | None:
+    """The dial on a step's card: the dose, else the first number of the step; None where it has no number."""
+    held = desk.session.held.get(f"{key}.dose")
+    if held is not None and held.step:
+        return step_dial(held)
     dials = desk.session.dials
-    names = ["hold.value", *step.fields()] if isinstance(step, DoseStep) else list(step.fields())
-    return next((dials[f"{key}.{name}"] for name in names if f"{key}.{name}" in dials), None)
+    return next((dials[f"{key}.{name}"] for name in step.fields() if f"{key}.{name}" in dials), None)
+
+
+def main_dial(desk: Desk, step: Step, key: str) -> Dial | None:
+    """The dial of a step that is turned: its own, or the held value where that is computed."""
+    own = own_dial(desk, step, key)
+    held = None if own is None else desk.session.held.get(own.address)
+    return own if held is None else desk.session.dials.get(held.goal)
 
 
 def step_form(desk: Desk, step: Step, key: str) -> list[Node]:
@@ -174,12 +183,10 @@ def step_form(desk: Desk, step: Step, key: str) -> list[Node]:
     dosing = isinstance(step, DoseStep)
     if dosing:
         _chemical(form, step)
-    if step.either:
+    elif step.either:
         _which(form, step)
-    if dosing and step.hold is not None:
-        _held(form, step.hold)
     usual = _usual(form) if dosing else {}
-    dial = main_dial(desk, step, key)
+    dial = own_dial(desk, step, key)
     for name in step.fields():
         given = name not in step.either or getattr(step, name) is not None
         owned = name not in usual or usual[name] is not None
@@ -212,44 +219,20 @@ def _chemical(form: Form, step: DoseStep) -> None:
 
 def _unit_of(form: Form, name: str) -> None:
     """The unit of the setting whose number stands on the card."""
-    value = getattr(form.step, name)
+    caption, value, part = f"{form.step.fields()[name].label} is given in", getattr(form.step, name), ""
+    if value is None:
+        # A dose that holds a readout: its limit has the unit.
+        name, value, part = "ceiling", form.step.hold.ceiling, "hold"
     if isinstance(value, Quantity):
-        key = f"{form.key}.{name}"
-        caption = f"{form.step.fields()[name].label} is given in"
-        form.line(caption, form.unit_choice(name, value, key), form.desk.refusal(f"{key}.unit"))
-
-
-def _held(form: Form, hold: Hold) -> None:
-    """Which readout a dose holds, and how far the dose may go."""
-    groups: dict[str, str] = {name: readout.label for name, readout in READOUTS.items()}
-    key = f"{form.key}.hold.readout"
-    step_id = form.step.id
-
-    def take(name: str) -> None:
-        now = form.desk.reading(name, step_id)
-
-        def change(scenario: Scenario) -> None:
-            held = scenario.step(step_id).hold
-            held.readout = name
-            if math.isfinite(now):
-                # The old number means nothing in the new unit: start from the water as it is.
-                held.value = round(now, READOUTS[name].digits)
-
-        form.desk.entries.refuse(key, refusal=form.desk.edit("Held readout", change))
-
-    form.line(
-        "Holds",
-        form.desk.entries.choice(key, "Held readout", groups, hold.readout, take),
-        form.desk.refusal(key),
-    )
-    form.declared(hold, "ceiling", "hold")
+        key = f"{form.key}.{part}.{name}" if part else f"{form.key}.{name}"
+        form.line(caption, form.unit_choice(name, value, key, part), form.desk.refusal(f"{key}.unit"))
 
 
 def _which(form: Form, step: Step) -> None:
     """Which of the settings of which exactly one is given."""
     desk, key = form.desk, f"{form.key}:which"
     given = next(name for name in step.either if getattr(step, name) is not None)
-    words = {name: WAYS.get((step.kind, name), step.fields()[name].label) for name in step.either}
+    words = {name: step.fields()[name].label for name in step.either}
 
     def take(name: str) -> None:
         start = _start(form, name)
@@ -264,23 +247,10 @@ def _which(form: Form, step: Step) -> None:
     form.line("Set by", desk.entries.choice(key, "Set by", words, given, take), desk.refusal(key))
 
 
-WAYS = {("dose", "dose"): "a fixed dose", ("dose", "hold"): "holding a readout"}
-"""How the either-or settings of a kind of step are offered, where the label of the field says too little."""
-
-
 def _start(form: Form, name: str) -> Any:
     """What a setting starts from when it takes over: the state of the water, where that says something."""
-    desk, step = form.desk, form.step
-    if name == "dose":
-        held = desk.dose(step.id)
-        unit = step.hold.ceiling.unit
-        return Quantity(float(f"{held:.3g}") if math.isfinite(held) else 0.0, unit)
-    if name == "hold":
-        ph = desk.reading("ph", step.id)
-        ceiling = Quantity(max(4 * step.dose.value, 1.0), step.dose.unit)
-        return Hold(readout="ph", value=round(ph, 1) if math.isfinite(ph) else 8.0, ceiling=ceiling)
     if name == "co2":
-        co2 = desk.reading("co2", step.id)
+        co2 = form.desk.reading("co2", form.step.id)
         return float(f"{co2:.2g}") if math.isfinite(co2) else 1.0
     return 80
 

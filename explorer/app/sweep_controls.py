@@ -118,8 +118,10 @@ class SweepControls(LiveView):
         return range_fields(self.entries, "", "the sweep", ends, dial, take)
 
     def _rule(self) -> str:
-        """How the other waters follow when a share is swept."""
+        """How a held dial is swept, and how the other waters follow a share."""
         scenario, dial = self.session.scenario, self._swept_dial()
+        if dial is not None and dial.address in self.session.held:
+            return "· held at the operating point, turned by hand along the sweep"
         if dial is None or not dial.address.endswith(".share") or len(scenario.waters) < 2:
             return ""
         names = {water.id: water.name for water in scenario.waters}

@@ -34,6 +34,7 @@ EMPTY = (
     " half-widths and edit them."
 )
 OFF_NOTE = "out of service here"
+HELD_NOTE = "held: its controller makes up for it"
 TOGETHER_HINT = "Dials with the same word are off together: one tank, one meter, one method"
 NORMAL_HINT = "The ends of a normal error lie at two standard deviations"
 
@@ -46,6 +47,12 @@ class Line:
     tolerance: Tolerance
     dial: Dial | None
     live: bool
+    held: bool
+
+    @property
+    def note(self) -> str:
+        """Why it counts for nothing here, "" where it counts."""
+        return "" if self.live else HELD_NOTE if self.held else OFF_NOTE
 
     @property
     def label(self) -> str:
@@ -85,7 +92,13 @@ class ToleranceTable(LiveView):
         scenario, dials = self.session.scenario, self.session.dials
         moved = spread_of(scenario).moved
         return [
-            Line(address, tolerance, dials.get(address), address in moved or not any(tolerance.sides))
+            Line(
+                address,
+                tolerance,
+                dials.get(address),
+                address in moved or not any(tolerance.sides),
+                address in self.session.held,
+            )
             for address, tolerance in scenario.tolerances.items()
         ]
 
@@ -113,7 +126,8 @@ class ToleranceTable(LiveView):
         kind = SAME if minus == plus and tolerance.minus is None and tolerance.plus is None else SIDES
         name = node(
             "span", "", node("span", text=line.label),
-            None if line.live else node("small", "aside", text=OFF_NOTE), message(self.entries.refusal(key)),
+            node("small", "aside", text=line.note) if line.note else None,
+            message(self.entries.refusal(key)),
         )  # fmt: skip
         together, refused = self.entries.text(
             f"{key}:shared", f"Together as, {line.label}", tolerance.shared,

@@ -4,6 +4,8 @@ import math
 
 from explorer.app.analysis_editor import analysis_editor
 from explorer.app.desk import Desk, facts
+from explorer.app.held import is_computed
+from explorer.app.hold_panel import dial_part, hold_act
 from explorer.app.live_view import Node, node
 from explorer.app.look import water_colour
 from explorer.app.pickers import Act, menu
@@ -25,7 +27,7 @@ def water_card(desk: Desk, water: Water, position: int) -> Node:
         desk.refusal(key),
         _state(desk, water),
         _facts(desk, water),
-        _amount(desk, water, colour),
+        *_amount(desk, water, colour),
     ]
     if opened:
         body.append(node("div", "details", *analysis_editor(desk, water), data_reveal=True))
@@ -38,7 +40,8 @@ def water_card(desk: Desk, water: Water, position: int) -> Node:
                 train_list(desk, water.train, f"{key}.", water.id),
             )
         )
-    look = "card" + (" opened" if opened else "") + ("" if water.on else " off")
+    held = f"{key}.share" in desk.session.held or f"{key}.flow" in desk.session.held
+    look = "card" + (" opened" if opened else "") + (" held" if held else "") + ("" if water.on else " off")
     return node("li", look, *body, key=key, data_reveal=opened)
 
 
@@ -51,7 +54,7 @@ def _head(desk: Desk, water: Water, key: str, colour: str) -> list[Node]:
         on=lambda value: desk.open(key), aria_expanded=str(desk.opened == key).lower(), title=water.title,
     )  # fmt: skip
     total = desk.scenario.total_flow()
-    flow = desk.flow_text(None if total is None else total * desk.scenario.fractions()[water.id])
+    flow = desk.flow_text(None if total is None else total * desk.part(water))
     return [
         title,
         node("span", "aside", text=flow),
@@ -67,6 +70,7 @@ def _acts(desk: Desk, water: Water, key: str) -> list[Act]:
     return [
         Act("details", "Close" if desk.opened == key else "Open the analysis", lambda: desk.open(key)),
         Act("sweep", "Sweep this", (lambda: desk.sweep(dial)) if dial else None),
+        hold_act(desk, dial),
         Act("rename", "Rename", lambda: desk.rename(key)),
         Act(
             "duplicate", "Duplicate",
@@ -109,8 +113,16 @@ def _facts(desk: Desk, water: Water) -> Node:
         f"alk {desk.words('alkalinity', stage)}",
         f"Ca {desk.words('calcium', stage)}",
         _balance(desk, stage),
+        _of_the_blend(desk, water),
         hint="Alkalinity in mg/L as CaCO₃, calcium in mg/L",
     )
+
+
+def _of_the_blend(desk: Desk, water: Water) -> str:
+    """How much of the blend it is, where a held share makes that another than its entered share."""
+    address = f"waters.{water.id}.share"
+    moved = is_computed(desk.session.held, address) and not desk.session.fixed(address)
+    return f"{number_text(100 * desk.part(water), 1)} % of the blend" if moved and water.on else ""
 
 
 def _balance(desk: Desk, stage: str) -> tuple[str, str]:
@@ -122,10 +134,10 @@ def _balance(desk: Desk, stage: str) -> tuple[str, str]:
     return (words, "") if balance.acceptable else (f"{words} ▲ poor", "poor")
 
 
-def _amount(desk: Desk, water: Water, colour: str) -> Node | None:
+def _amount(desk: Desk, water: Water, colour: str) -> list[Node]:
     """Share or flow of the water as slider and number; nothing to set for a single water with a share."""
     dial = _dial(desk, water)
-    return desk.dial_row(dial, colour=colour) if dial else None
+    return dial_part(desk, dial, colour=colour) if dial else []
 
 
 def _dial(desk: Desk, water: Water) -> Dial | None:

@@ -173,7 +173,7 @@ class WindowView(View):
             self.head.refresh()
         setting = self.choices.setting()
         if setting is not None:
-            self.plot.set_point(setting.x.value, setting.y.value)
+            self.plot.set_point(*(self.session.value(dial.address) for dial in (setting.x, setting.y)))
         if changed & {"point", "choices"}:
             self._calculate(rest=0.0 if "choices" in changed else REST)
         self._dim()
@@ -184,6 +184,10 @@ class WindowView(View):
         if setting is None:
             return
 
+        for dial in (setting.x, setting.y):
+            if reason := self.session.fixed(dial.address):
+                self.session.message = f"{dial.label} {reason}"
+                return
         sides = ((setting.x, x), (setting.y, y))
         values = {dial.address: dial.nearest(place) for dial, place in sides}
 

@@ -67,7 +67,7 @@ def _small(text: str) -> Markup | None:
 
 def figures(case: Case, keys: Sequence[str], family: str, spread: Tolerances) -> Iterator[Markup]:
     """One figure a readout, and that of the species after the first."""
-    here = case.swept.dial.value
+    here = float(case.outcome.stands(case.swept.address))
     options = _options(case)
     for number, key in enumerate(keys):
         picture = picture_of(case.swept, key, case.scenario.targets)
@@ -115,7 +115,8 @@ def along_table(case: Case) -> Markup | None:
     swept = case.swept
     x = np.linspace(swept.x[0], swept.x[-1], ABREAST)
     columns = [case.outcome, swept.at(x)]
-    heading = ["", f"now, {case.along.at(swept.dial.value)}", *(case.along.at(value) for value in x)]
+    now = float(case.outcome.stands(swept.address))
+    heading = ["", f"now, {case.along.at(now)}", *(case.along.at(value) for value in x)]
     rows: list[Row | Group] = []
     for key in case.results(RESULTS):
         readout = READOUTS[key]

@@ -12,7 +12,7 @@ from numpy.typing import ArrayLike
 from explorer.chemistry import System
 from explorer.scenario import shares
 from explorer.scenario.compile import Plan, Source, compiled
-from explorer.scenario.dials import no_dial
+from explorer.scenario.dials import is_share, no_dial
 from explorer.scenario.errors import ScenarioError
 from explorer.scenario.held_dials import DialGoal, distance, find_dials
 from explorer.scenario.model import Scenario
@@ -47,9 +47,18 @@ def evaluate(
 def follow(plan: Plan, dials: Mapping[str, ArrayLike] = MappingProxyType({})) -> Outcome:
     """:func:`evaluate` for a scenario that is compiled already; the plan does not change with it."""
     turned = _turned(plan, dials)
-    # A dial that is turned by hand is not held.
-    goals = tuple(goal for goal in plan.holds if goal.address not in turned)
+    goals = _in_force(plan, turned)
     return _followed(plan, turned | _held(plan, goals, turned) if goals else turned, goals)
+
+
+def _in_force(plan: Plan, turned: Mapping[str, np.ndarray]) -> tuple[DialGoal, ...]:
+    """Holds that count: a dial that is turned by hand is not held, nor the shares that a turned share leaves
+    nothing to choose."""
+    goals = tuple(goal for goal in plan.holds if goal.address not in turned)
+    given = {*filter(is_share, turned), *(goal.address for goal in goals)}
+    if any(map(is_share, turned)) and not {*filter(is_share, plan.dials)} - given:
+        goals = tuple(goal for goal in goals if not is_share(goal.address))
+    return goals
 
 
 def _held(plan: Plan, goals: Sequence[DialGoal], turned: Mapping[str, np.ndarray]) -> dict[str, np.ndarray]:

@@ -81,6 +81,18 @@ class Outcome:
         """Why a point has no equilibrium (or no such readout), "" where it has; in the outcome's shape."""
         return np.broadcast_to(self.stage(stage).reasons(readout), self.shape)
 
+    def stands(self, address: str) -> np.ndarray:
+        """Where a dial stands [its entered unit], in the outcome's shape: as entered or turned, as computed
+        where it is held, or as the other shares leave it. Raises KeyError for an unknown address."""
+        parts = address.split(".")
+        if parts[-1] == "share" and parts[1] in self.parts:
+            value = 100 * self.parts[parts[1]]
+        elif address not in self.inputs and parts[-1] == "dose":
+            value = self.dosing[parts[-2]].value
+        else:
+            value = self.inputs[address]
+        return np.broadcast_to(value, self.shape)
+
     @property
     def doses(self) -> dict[str, tuple[np.ndarray, str, bool]]:
         """By step: dose in its entered unit, the unit, and whether it is held."""

@@ -12,6 +12,7 @@ from explorer.scenario.entity import Child, Children
 from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import Outcome, evaluate
 from explorer.scenario.fields import Flag, Number
+from explorer.scenario.holding import holdings
 from explorer.scenario.model import DoseStep, Scenario, Step
 from explorer.scenario.quantity import Amount
 from explorer.scenario.readouts import MINUS, NO_VALUE, READOUTS, Readout, format_value, in_words, status
@@ -21,7 +22,7 @@ from explorer.studies.sweep import Sweep, sweep
 CURRENT, OPTION, SEASON, SOURCE_OFF = "current", "option", "season", "source off"
 """Kinds of cases."""
 
-INPUTS, DOSES, READOUTS_SECTION = "Inputs", "Held doses", "Finished water"
+INPUTS, HELD, READOUTS_SECTION = "Inputs", "Computed to hold", "Finished water"
 """Sections of a comparison."""
 
 LETTERS = "ABCDEFGHIJKLMNOPQRSTUVWXYZ"
@@ -183,7 +184,7 @@ def compare(cases: Sequence[Case], readouts: Sequence[str] | None = None) -> Com
             problems.append(str(error))
     rows = [
         *_input_rows(cases),
-        *_dose_rows(cases, outcomes),
+        *_held_rows(cases, outcomes),
         *_readout_rows(cases, outcomes, READOUTS if readouts is None else readouts),
     ]
     return Comparison(tuple(cases), tuple(rows), tuple(problems))
@@ -227,7 +228,10 @@ def _input_rows(cases: Sequence[Case]) -> Iterator[Row]:
             yield Row(INPUTS, key, label, "", texts, (None,) * len(cases))
     yield from _order_row(cases)
     every = [dials(case.scenario, case.season) for case in cases]
+    held_dials = {address for case in cases for address in case.scenario.holds}
     for address in _union(every):
+        if address in held_dials:
+            continue
         found = [held.get(address) for held in every]
         minor = address.rpartition(".")[2] in MINOR
         if _differ([dial for dial in found if dial is not None] if minor else found):
@@ -293,6 +297,9 @@ def _settings(scenario: Scenario) -> Iterator[tuple[str, tuple[str, str]]]:
         if isinstance(step, DoseStep):
             held = "fixed dose" if step.hold is None else READOUTS[step.hold.readout].label
             yield f"{step.id}.hold", (f"{name}: holds", held)
+    for hold in holdings(scenario).values():
+        if not hold.step:
+            yield f"{hold.address}.hold", (f"{hold.label} holds", READOUTS[hold.readout].label)
 
 
 def _words(scenario: Scenario, step: Step, key: str) -> str:
@@ -308,23 +315,38 @@ def _yes(flag: bool) -> str:
     return "yes" if flag else "no"
 
 
-def _dose_rows(cases: Sequence[Case], outcomes: Sequence[Outcome | None]) -> Iterator[Row]:
-    """Doses that are computed, wherever at least one case holds them."""
-    dosing = [{} if outcome is None else outcome.dosing for outcome in outcomes]
+def _held_rows(cases: Sequence[Case], outcomes: Sequence[Outcome | None]) -> Iterator[Row]:
+    """Doses and other dials that are computed, wherever at least one case holds them."""
+    dosing = [{} if outcome is None else outcome.doses for outcome in outcomes]
     for step in _union(dosing):
         doses = [held.get(step) for held in dosing]
-        if not any(dose is not None and dose.held for dose in doses):
-            continue
-        units = {dose.unit for dose in doses if dose is not None}
-        unit = units.pop() if len(units) == 1 else ""
-        values = tuple(None if dose is None else known(dose.value) for dose in doses)
-        texts = tuple(
-            NO_VALUE if value is None else f"{value:.4g}" + ("" if unit else f" {dose.unit}")
-            for value, dose in zip(values, doses, strict=True)
-        )
-        if len(set(texts)) > 1:
+        if any(dose is not None and dose[2] for dose in doses):
             label = next(o.stage(step).name for o in outcomes if o is not None and step in o.dosing)
-            yield Row(DOSES, step, f"Dose of {label}", unit, texts, values)
+            found = [None if dose is None else (known(dose[0]), dose[1]) for dose in doses]
+            yield from _held_row(step, f"Dose of {label}", found)
+    every = [dials(case.scenario, case.season) for case in cases]
+    for address in dict.fromkeys(address for case in cases for address in case.scenario.holds):
+        if address.endswith(".dose"):
+            continue
+        found = [
+            None if o is None or address not in held else (known(o.stands(address)), held[address].unit)
+            for o, held in zip(outcomes, every, strict=True)
+        ]
+        label = next((held[address].label for held in every if address in held), address)
+        yield from _held_row(address, label, found)
+
+
+def _held_row(key: str, label: str, found: Sequence[tuple[float | None, str] | None]) -> Iterator[Row]:
+    """Line of what is computed, where it differs; ``found``: value and unit, None where there is no such."""
+    units = {part[1] for part in found if part is not None}
+    unit = units.pop() if len(units) == 1 else ""
+    values = tuple(None if part is None else part[0] for part in found)
+    texts = tuple(
+        NO_VALUE if part is None or part[0] is None else f"{part[0]:.4g}" + ("" if unit else f" {part[1]}")
+        for part in found
+    )
+    if len(set(texts)) > 1:
+        yield Row(HELD, key, label, unit, texts, values)
 
 
 def _readout_rows(

@@ -167,6 +167,10 @@ def allowed_tolerance(
     for address in addresses:
         if address not in plan.dials:
             raise ScenarioError("dials", no_dial(address, plan.dials))
+        if any(goal.address == address for goal in plan.holds):
+            raise ScenarioError(
+                "dials", f"{address} is held: its controller makes up for errors; allowed dials that are not"
+            )
     turned = [plan.dials[address] for address in addresses]
     around = {address: np.asarray(value, float) for address, value in overrides.items()}
     nominal = float(follow(plan, around).readout(readout))

@@ -174,22 +174,33 @@ def tolerance(
     if samples * (len(x) + 1) > MOST_CELLS:
         most = f"allowed {MOST_CELLS:,} together".replace(",", " ")
         raise ScenarioError("samples", f"{samples} of {len(x)} points are too many; {most}")
-    # The operating point is the last column.
+    # The operating point is the last column. A dial that is held there is turned by hand along the sweep, so
+    # that the two are calculated apart.
+    apart = swept.address not in overrides and any(g.address == swept.address for g in spread.plan.holds)
     here = np.asarray(overrides.get(swept.address, swept.value), float)
-    around = others | {swept.address: np.append(x, here)}
+    around = [others | {swept.address: x if apart else np.append(x, here)}, *([others] if apart else [])]
+    widths = [len(x), 1] if apart else [len(x) + 1]
 
     def pictures() -> Iterator[ToleranceStudy]:
         parts = chances(len(spread), samples, seed)
         columns = len(x) + 1
-        nominal = _kept(follow(spread.plan, around), keys, (columns,))
+        nominal = _joined(
+            [
+                _kept(follow(spread.plan, place), keys, (width,))
+                for place, width in zip(around, widths, strict=True)
+            ]
+        )
         parts_done: list[Results] = []
         done, wanted = 0, min(FIRST_SAMPLES, parts.shape[1])
         while True:
             while done < wanted:
                 watch.done(done / parts.shape[1])
                 some = parts[:, done : min(wanted, done + max(1, batch(spread.plan) // columns)), None]
-                outcome = follow(spread.plan, spread.sampled(some, around))
-                parts_done.append(_kept(outcome, keys, (some.shape[1], columns)))
+                found = [
+                    _kept(follow(spread.plan, spread.sampled(some, place)), keys, (some.shape[1], width))
+                    for place, width in zip(around, widths, strict=True)
+                ]
+                parts_done.append(_joined(found))
                 done += some.shape[1]
             values = {key: np.concatenate([part.values[key] for part in parts_done]) for key in keys}
             met = np.concatenate([part.met for part in parts_done], axis=1)
@@ -219,6 +230,14 @@ def chances(inputs: int, samples: int, seed: int) -> np.ndarray:
     """
     exponent = max(0, int(np.ceil(np.log2(samples))))
     return np.ascontiguousarray(qmc.Sobol(inputs, rng=np.random.default_rng(seed)).random_base2(exponent).T)
+
+
+def _joined(parts: Sequence[Results]) -> Results:
+    """Columns beside each other."""
+    if len(parts) == 1:
+        return parts[0]
+    values = {key: np.concatenate([part.values[key] for part in parts], axis=-1) for key in parts[0].values}
+    return Results(values, np.concatenate([part.met for part in parts], axis=-1), {})
 
 
 def _kept(outcome: Outcome, keys: Sequence[str], shape: tuple[int, ...]) -> Results:

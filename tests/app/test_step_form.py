@@ -139,50 +139,6 @@ def test_another_chemical() -> None:
     assert "chlorine gas" in rail.shown(key).words()
 
 
-def test_dose_that_holds_the_ph() -> None:
-    """A dose becomes a hold at the pH the water has; its card tells what is held and with which dose."""
-    rail, key = opened("train:add:dose:sodium_hydroxide")
-    ph = rail.desk.reading("ph", step_of(rail, key).id)
-    rail.report(f"{key}:which", "hold")
-    assert step_of(rail, key).hold.value == pytest.approx(ph, abs=0.051)
-    rail.report(f"{key}.hold.ceiling", "60")
-    rail.report(f"{key}.hold.value", "8,2")
-    card = rail.shown(key).words()
-    assert "holds pH 8.20" in card
-    assert "doses" in card
-    assert rail.desk.reading("ph", step_of(rail, key).id) == pytest.approx(8.2, abs=0.001)
-
-
-def test_hold_out_of_reach_is_told() -> None:
-    """Where the ceiling does not suffice the card says so instead of showing a dose as if it held."""
-    rail, key = opened("train:add:dose:sodium_hydroxide")
-    rail.report(f"{key}:which", "hold")
-    rail.report(f"{key}.hold.value", "11")
-    rail.report(f"{key}.hold.ceiling", "2")
-    assert "▲ not met, doses 2.00 mg/L" in rail.shown(key).words()
-
-
-def test_hold_turned_into_a_fixed_dose() -> None:
-    """The fixed dose starts from the dose the hold came to."""
-    rail, key = opened("train:add:dose:sodium_hydroxide")
-    rail.report(f"{key}:which", "hold")
-    rail.report(f"{key}.hold.ceiling", "60")
-    rail.report(f"{key}.hold.value", "8")
-    held = rail.desk.dose(step_of(rail, key).id)
-    rail.report(f"{key}:which", "dose")
-    assert step_of(rail, key).dose.value == pytest.approx(held, rel=0.01)
-
-
-def test_another_held_readout_starts_from_the_water() -> None:
-    """Held at another readout, the value is that of the water, not the old number in a new meaning."""
-    rail, key = opened("train:add:dose:sodium_hydroxide")
-    rail.report(f"{key}:which", "hold")
-    ccpp = rail.desk.reading("ccpp", step_of(rail, key).id)
-    rail.report(f"{key}.hold.readout", "ccpp")
-    assert step_of(rail, key).hold.readout == "ccpp"
-    assert step_of(rail, key).hold.value == pytest.approx(ccpp, abs=0.051)
-
-
 def test_product_use_of_a_dose() -> None:
     """An open dose tells kg a day, t a year and L/h of product: 1 mg/L alum at 20 ML/d is 20 kg/d of salt."""
     rail, key = opened(ALUM)

@@ -9,7 +9,7 @@ from explorer.scenario.evaluate import evaluate
 from explorer.scenario.files import open_scenario
 from explorer.scenario.shipped import shipped
 from explorer.studies.compare import (
-    DOSES,
+    HELD,
     INPUTS,
     READOUTS_SECTION,
     all_cases,
@@ -181,7 +181,7 @@ def test_held_doses_are_results_not_inputs(plant):
     """The dose that holds pH 8 in the blend and without the well."""
     scenario = plant({"river": 60, "well": 40}, [plant.held("c", "sodium_hydroxide", "ph", 8.0, 80, "mg/L")])
     made = compare(all_cases(scenario))
-    (row,) = made.section(DOSES)
+    (row,) = made.section(HELD)
     doses = [float(evaluate(case.scenario).dosing["c"].value) for case in made.cases]
     assert row.values == pytest.approx(doses)
     assert "train.c.dose" not in rows(made)
