@@ -51,7 +51,8 @@ def dial_part(desk: Desk, dial: Dial, *, span: tuple[float, float] | None = None
     button = _button(desk, dial, held) if held is not None or not desk.session.fixed(dial.address) else None
     parts = [desk.dial_row(dial, span=span, beside=button, **look)]
     if held is not None:
-        parts += [_state(desk, held, inside), *_goal(desk, held)]
+        goal = goal_row(desk, held)
+        parts += [_state(desk, held, inside), *([goal] if goal is not None else [])]
     if desk.holding is not None and desk.holding.address == dial.address:
         parts.append(_form(desk, dial, held))
     return parts
@@ -130,13 +131,12 @@ def _state(desk: Desk, held: Holding, inside: bool) -> Node:
     return node("div", "state", tag, node("span", look, text=words))
 
 
-def _goal(desk: Desk, held: Holding) -> list[Node]:
-    """The held value, to be turned."""
+def goal_row(desk: Desk, held: Holding) -> Node | None:
+    """The held value, to be turned; None where the dial it is about is not there now."""
     dial = desk.session.dials.get(held.goal)
     if dial is None:
-        return []
-    readout = READOUTS[held.readout]
-    return [desk.dial_row(dial, span=_span(desk, dial, held), digits=readout.digits)]
+        return None
+    return desk.dial_row(dial, span=_span(desk, dial, held), digits=READOUTS[held.readout].digits)
 
 
 def _span(desk: Desk, dial: Dial, held: Holding) -> tuple[float, float] | None:

@@ -9,11 +9,15 @@ from panel.custom import JSComponent
 
 from explorer.app.choosers import dial_picker
 from explorer.app.desk import Desk
+from explorer.app.hold_panel import goal_row
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES, styles, water_colour
 from explorer.app.state import Session
-from explorer.app.text import plain
+from explorer.app.text import in_sentence, plain
 from explorer.scenario.dials import Dial
+from explorer.scenario.holding import Holding
+from explorer.scenario.readouts import READOUTS
+from explorer.scenario.words import brief_label
 
 MOST_PICKED = 4
 """Dials a user may add to the strip."""
@@ -110,13 +114,22 @@ class Strip(LiveView):
             )  # fmt: skip
         swatch = node("span", "swatch", colour=colour) if colour else None
         head = node("div", "caption", swatch, node("span", text=name, title=name), away)
-        return node("div", "dial", head, self.desk.dial_row(dial, colour=colour), key=f"strip:{address}")
+        goal = self._goals().get(address)
+        row = self.desk.dial_row(dial, colour=colour) if goal is None else goal_row(self.desk, goal)
+        return node("div", "dial", head, row, key=f"strip:{address}")
+
+    def _goals(self) -> dict[str, Holding]:
+        """Holds by the address of the held value."""
+        return {hold.goal: hold for hold in self.session.held.values()}
 
     def _named(self, dial: Dial) -> tuple[str, str | None]:
         """What a dial is called on the strip, and the colour of its water if it is a share."""
         for place, water in enumerate(self.session.scenario.waters):
             if dial.address in (f"waters.{water.id}.share", f"waters.{water.id}.flow"):
                 return plain(water.title, 60), water_colour(place)
+        if dial.address in self._goals():
+            hold = self._goals()[dial.address]
+            return f"{brief_label(READOUTS[hold.readout])}, held by {in_sentence(plain(hold.label, 60))}", None
         return plain(dial.label, 60), None
 
     def _add(self) -> list[Node]:

@@ -121,7 +121,7 @@ class SweepControls(LiveView):
         """How a held dial is swept, and how the other waters follow a share."""
         scenario, dial = self.session.scenario, self._swept_dial()
         if dial is not None and dial.address in self.session.held:
-            return "· held at the operating point, turned by hand along the sweep"
+            return "· held; along the sweep by hand"
         if dial is None or not dial.address.endswith(".share") or len(scenario.waters) < 2:
             return ""
         names = {water.id: water.name for water in scenario.waters}
