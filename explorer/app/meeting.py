@@ -13,7 +13,7 @@ from explorer.app.hold_panel import goal_row
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import VIEW_STYLES, styles, water_colour
 from explorer.app.state import Session
-from explorer.app.text import in_sentence, plain
+from explorer.app.text import plain
 from explorer.scenario.dials import Dial
 from explorer.scenario.holding import Holding
 from explorer.scenario.readouts import READOUTS
@@ -128,8 +128,7 @@ class Strip(LiveView):
             if dial.address in (f"waters.{water.id}.share", f"waters.{water.id}.flow"):
                 return plain(water.title, 60), water_colour(place)
         if dial.address in self._goals():
-            hold = self._goals()[dial.address]
-            return f"{brief_label(READOUTS[hold.readout])}, held by {in_sentence(plain(hold.label, 60))}", None
+            return f"{brief_label(READOUTS[self._goals()[dial.address].readout])}, held", None
         return plain(dial.label, 60), None
 
     def _add(self) -> list[Node]:
