@@ -47,7 +47,7 @@ class DistributionPlot:
             line_alpha=0.6, line_width=0.6,
         )  # fmt: skip
         self.mark = fig.segment(
-            x0="x", x1="x", y0="base", y1="top", source=self.marks, line_width=1.3, line_dash=[5, 3]
+            x0="x", x1="x", y0="base", y1="top", source=self.marks, line_width=1.3, line_dash="5 3"
         )
         self.nominal = Span(dimension="height", line_width=LINE_WIDTH, level="overlay", visible=False)
         fig.add_layout(self.nominal)
