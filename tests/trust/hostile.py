@@ -286,8 +286,8 @@ def nested(random: Random, tree: Any) -> Any:
 def many(random: Random, tree: Any) -> Any:
     """A list or object with thousands of parts."""
     owner, key = random.choice(list(places(tree, (list, dict))))
-    count = random.choice((60, 500, 5000))
     part = text_of(anything(random))
+    count = min(random.choice((60, 500, 5000)), 6_000_000 // len(part))
     if isinstance(owner[key], list):
         owner[key] = Raw("[" + ", ".join([part] * count) + "]")
     else:

@@ -159,10 +159,14 @@ def inhibitor(outcome: "Outcome") -> Iterator[Finding]:
 def warm(outcome: "Outcome") -> Iterator[Finding]:
     finished, temperature = outcome.stage(), outcome.readout("temperature")
     points = temperature > WARM
+    if not points.any():
+        return
+    hot = finished.system.solve(finished.totals, np.full(np.shape(finished.temperature), HEATER))
+    potential = from_base(precipitation_potential(hot), "mg/L as CaCO3", "ccpp")
+    # What is no water at all has no potential, here or there, and nothing is to be said of it.
+    points = points & np.isfinite(potential) & np.isfinite(outcome.readout("ccpp"))
     if points.any():
-        hot = finished.system.solve(finished.totals, np.full(np.shape(finished.temperature), HEATER))
-        potential = from_base(precipitation_potential(hot), "mg/L as CaCO3", "ccpp")
-        then = in_words(np.nanmax(np.broadcast_to(potential, points.shape)[points]), READOUTS["ccpp"])
+        then = in_words(np.max(np.broadcast_to(potential, points.shape)[points]), READOUTS["ccpp"])
         text = (
             f"{worst(finished, 'temperature', points)}: calcium carbonate is less soluble in warm water; the"
             f" water {worst(finished, 'ccpp', points)} here, {then} at {HEATER:g} °C: judge heaters and"
