@@ -132,7 +132,9 @@ def test_shares_and_flows_are_not_mixed() -> None:
 
 def test_side_streams_may_not_stand_in_each_other_without_end() -> None:
     """Four side streams may stand in each other, five may not."""
-    raw = json.loads(EVERYTHING)
+    raw = {
+        part: value for part, value in json.loads(EVERYTHING).items() if part not in ("holds", "tolerances")
+    }
     train: list[dict[str, Any]] = []
     for level in range(5):
         train = [{"id": f"level_{level}", "step": "side_stream", "fraction": 50, "train": train}]

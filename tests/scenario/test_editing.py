@@ -77,7 +77,7 @@ def test_removing_a_water_lets_the_others_grow_in_proportion(juniper: Scenario) 
 
 
 def test_what_hung_on_a_removed_water_goes_with_it(scenario: Scenario) -> None:
-    """Tolerances, the sweep, the balance water."""
+    """Holds, tolerances, measured points, the sweep, the balance water."""
     scenario.balance_water = "well"
     editing.remove_water(scenario, "well")
     assert saved(scenario).sweep is None
@@ -86,7 +86,12 @@ def test_what_hung_on_a_removed_water_goes_with_it(scenario: Scenario) -> None:
         "train.coagulant.dose",
         "train.waterglass.dose",
         "waters.river.share",
+        "train.coagulant.strength",
+        "waters.river.analysis.temperature",
+        "train.contactor.fraction.hold.value",
     ]
+    assert list(scenario.holds) == ["train.contactor.fraction", "train.magic.dose"]
+    assert [part.name for part in scenario.measured] == ["Jar test"]
     assert shares(scenario) == {"river": 100}
 
 
