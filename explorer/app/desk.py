@@ -178,7 +178,7 @@ class Desk:
         standing = {f"waters.{water.id}" for water in self.scenario.waters}
         for prefix, owner in editing.trains(self.scenario):
             standing |= {f"{prefix}train.{step.id}" for step in owner.train}
-        if self.opened not in standing:
+        if self.opened not in {*standing, "about"}:
             self.opened = ""
         if self.naming not in standing:
             self.naming = ""

@@ -15,6 +15,7 @@ from typing import Any
 import param
 from panel.custom import JSComponent
 
+from explorer.app.about_card import first_sentence
 from explorer.app.errand import Errand
 from explorer.app.file_names import file_name
 from explorer.app.history import Work
@@ -32,7 +33,6 @@ _KEPT_COPIES = 64
 SEASON = "all year"
 """The season a new scenario begins with."""
 
-_FIRST_SENTENCE = re.compile(r"[^.?!]*[.?!]?")
 _NAME = re.compile(r"[\w\-]{8,40}")
 _FILE = re.compile(r"[\w][\w .()\-]{0,90}\.json")
 
@@ -80,7 +80,7 @@ def examples() -> dict[str, Example]:
         except ScenarioError:
             found[name] = Example(name)
             continue
-        found[name] = Example(scenario.title, _FIRST_SENTENCE.match(scenario.note)[0].strip())
+        found[name] = Example(scenario.title, first_sentence(scenario.note))
     return found
 
 

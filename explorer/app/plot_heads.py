@@ -24,14 +24,20 @@ DEFAULT_FAMILY, DEFAULT_READOUT = "carbonate", "ccpp"
 
 def family_choice(session: Session) -> str:
     """Family of species shown; one of an acid that is gone falls back to the default."""
-    family = session.choices.get("family", DEFAULT_FAMILY)
+    family = session.choices.get("family") or _planned(session, "family", DEFAULT_FAMILY)
     return family if family in family_names(session) else DEFAULT_FAMILY
 
 
 def readout_choice(session: Session) -> str:
     """Readout of the fourth plot."""
-    key = session.choices.get("readout", DEFAULT_READOUT)
+    key = session.choices.get("readout") or _planned(session, "readout", DEFAULT_READOUT)
     return key if key in READOUTS else DEFAULT_READOUT
+
+
+def _planned(session: Session, what: str, usual: str) -> str:
+    """What the scenario wants to be shown of its sweep, the usual where it says nothing."""
+    sweep = session.scenario.sweep
+    return (getattr(sweep, what) if sweep is not None else None) or usual
 
 
 def stage_choice(session: Session, plot: str) -> str:

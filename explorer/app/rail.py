@@ -2,6 +2,7 @@
 
 from typing import Any, ClassVar
 
+from explorer.app.about_card import about_card
 from explorer.app.desk import Desk, facts, heading
 from explorer.app.hold_panel import dial_part
 from explorer.app.live_view import LiveView, Node, node
@@ -58,6 +59,7 @@ class Rail(LiveView):
     def describe(self) -> Node:
         return node(
             "div", "rail stale" if self.desk.session.stale else "rail",
+            about_card(self.desk),
             node("section", "", *self._waters(), aria_label="Source waters"),
             node("section", "", *self._treatment(), aria_label="Treatment, in order of flow"),
             self._held_elsewhere(),

@@ -24,14 +24,14 @@ def report_html(
     *,
     season: str | None = None,
     figures: Sequence[str] = (),
-    family: str = "carbonate",
+    family: str | None = None,
     written: datetime | None = None,
 ) -> str:
     """The report on a scenario as it stands.
 
     season: whose analyses count, the scenario's own where None; the scenario in the page is set to it.
     figures: readouts drawn along the sweep; the usual ones and those with targets where empty. family: of the
-    species drawn. written: time of the report, now where None.
+    species drawn, that of the scenario's sweep where None. written: time of the report, now where None.
 
     Raises ScenarioError where the scenario cannot be evaluated, and for an unknown season, readout or family.
     """
@@ -44,7 +44,8 @@ def report_html(
         scenario = scenario.copy()
         scenario.season = season
     written = datetime.now().astimezone() if written is None else written
-    return page(Case(scenario), figures, family, written)
+    wanted = scenario.sweep.family if scenario.sweep is not None else None
+    return page(Case(scenario), figures, family or wanted or "carbonate", written)
 
 
 def write_report(scenario: Scenario, path: str | os.PathLike[str], *, season: str | None = None) -> None:

@@ -58,9 +58,13 @@ def page(case: Case, figures: Sequence[str], family: str, written: datetime) -> 
 
 
 def usual_figures(case: Case) -> list[str]:
-    """The usual figures, then targets, those that are missed first, as far as there is room."""
+    """The usual figures, what the scenario shows of its sweep, then targets, missed ones first; as many as
+    there is room for."""
+    sweep = case.scenario.sweep
+    wanted = [sweep.readout] if sweep is not None and sweep.readout else []
     aimed = sorted(case.outcome.targets(), key=lambda found: bool(found[2]))
-    return list(dict.fromkeys([*USUAL_FIGURES, *(target.readout for target, *_ in aimed)]))[:MOST_FIGURES]
+    drawn = [*USUAL_FIGURES, *wanted, *(target.readout for target, *_ in aimed)]
+    return list(dict.fromkeys(drawn))[:MOST_FIGURES]
 
 
 def _style(title: str) -> str:

@@ -122,6 +122,8 @@ class SweepSetting(Entity):
     start = Number(None, required=True, label="From", doc="In the unit of the dial.")
     stop = Number(None, required=True, label="To", doc="In the unit of the dial.")
     points = Number(101, whole=True, bounds=(2, 2001), label="Points", doc="Evenly spaced, ends included.")
+    readout = Text(None, label="Readout", doc="Drawn beside pH and buffer; ccpp where none is given.")
+    family = Text(None, label="Species", doc="Family of species shown; carbonate where none is given.")
 
 
 class Option(Entity):

@@ -8,6 +8,7 @@ from collections.abc import Callable, Iterable
 from typing import Any
 
 from explorer.chemistry import COMPONENTS
+from explorer.chemistry.components import FAMILIES
 from explorer.scenario.dials import Dial, dials, no_dial
 from explorer.scenario.errors import ScenarioError, join, listed, shown, unknown
 from explorer.scenario.fields import Faults, object_fault, outside, span
@@ -256,6 +257,16 @@ def _dials(scenario: Scenario) -> Faults:
             yield f"{path}.unit", unknown(tolerance.unit, "a unit here", allowed, similar=False)
     if scenario.sweep is not None:
         yield from _sweep(scenario.sweep, known)
+        yield from _shown(scenario, scenario.sweep)
+
+
+def _shown(scenario: Scenario, sweep: SweepSetting) -> Faults:
+    """What the plots show of a sweep."""
+    if sweep.readout is not None and sweep.readout not in READOUTS:
+        yield "sweep.readout", unknown(sweep.readout, "a readout", READOUTS)
+    families = [*FAMILIES, *(acid.id for acid in scenario.acids)]
+    if sweep.family is not None and sweep.family not in families:
+        yield "sweep.family", unknown(sweep.family, "a family of species", families)
 
 
 def _sweep(sweep: SweepSetting, known: dict[str, Dial]) -> Faults:

@@ -3,10 +3,12 @@
 import numpy as np
 import pytest
 
+from explorer.chemistry import System
 from explorer.scenario.evaluate import evaluate
 from explorer.scenario.files import open_scenario
 from explorer.scenario.model import Scenario
 from explorer.scenario.shipped import shipped
+from explorer.treatment.analysis import examine
 
 PATHS = shipped()
 
@@ -121,3 +123,43 @@ def test_juniper_the_other_coagulant_raises_chloride_over_sulfate() -> None:
     alum, iron = evaluate(opened("juniper")), evaluate(option("juniper"))
     assert iron.readout("ph") == pytest.approx(float(alum.readout("ph")), abs=1e-3)
     assert iron.readout("chloride_sulfate_ratio") > alum.readout("chloride_sulfate_ratio") + 0.2
+
+
+def test_the_faulty_analyses_are_found_and_the_others_are_not() -> None:
+    """Two do not balance, and their likely cause is said; the two that are easily misread balance, with their
+    calcium partly paired and their alkalinity partly not carbonate."""
+    scenario = opened("faulty_analyses")
+    found = {
+        water.id: examine(water.analyses[scenario.season].entries, System()) for water in scenario.waters
+    }
+    wrong = {name: made.likely_cause for name, made in found.items() if not made.balance.acceptable}
+    assert set(wrong) == {"granite", "cobble"}
+    assert "calcium 290 may be mg/L as CaCO3" in wrong["granite"] and "sulfate" in wrong["cobble"]
+    outcome = evaluate(scenario)
+    gypsum, mixed = (outcome.stage(name).solution for name in ("gypsum_well", "mixed"))
+    paired = 1 - gypsum.concentration("Ca+2") / gypsum.totals[System().index["calcium"]]
+    assert 0.2 < paired < 0.3
+    held = outcome.readout("carbonate_alkalinity", "mixed") / outcome.readout("alkalinity", "mixed")
+    assert held < 0.8 and mixed.ph > 8.5
+
+
+def test_every_plant_that_doses_has_prices_with_their_date() -> None:
+    """Cost per ML is a number in every season, in a currency that is named."""
+    for name in PATHS:
+        scenario = opened(name)
+        outcome = evaluate(scenario)
+        if outcome.dosing:
+            assert scenario.currency and scenario.price_date, name
+            assert np.isfinite(outcome.readout("cost")), name
+            assert all(np.isfinite(dose.price) for dose in outcome.dosing.values()), name
+
+
+def test_the_readout_a_scenario_shows_is_one_that_its_sweep_moves() -> None:
+    """Nobody opens an example on a flat line."""
+    for name in PATHS:
+        scenario = opened(name)
+        plan = scenario.sweep
+        shown = plan.readout or "ccpp"
+        values = evaluate(scenario, {plan.dial: np.linspace(plan.start, plan.stop, 21)}).readout(shown)
+        assert np.isfinite(values).sum() > 15, name
+        assert np.ptp(values[np.isfinite(values)]) > 0.05 * np.nanmax(np.abs(values)), name
