@@ -119,7 +119,7 @@ def diagram_picture(found: Diagram, families: Collection[str]) -> Picture:
     own = number_text(found.own_ph, 2)
     return Picture(
         title="Species against pH",
-        note=f"log₁₀ of mol/L · own pH {own}",
+        note=f"own pH {own} · log mol/L",
         x=found.ph,
         lines=lines,
         limits=(LOWEST, _top(lines)),
