@@ -14,6 +14,7 @@ from explorer.app.step_card import train_list
 from explorer.app.step_form import own_dial
 from explorer.app.water_card import water_card
 from explorer.scenario import editing
+from explorer.scenario.amounts import by_flow, give_flows, give_shares
 from explorer.scenario.evaluate import Outcome
 from explorer.scenario.model import Scenario
 from explorer.scenario.readouts import MINUS, NO_VALUE, READOUTS, format_value
@@ -76,7 +77,25 @@ class Rail(LiveView):
     def _waters(self) -> list[Node]:
         desk = self.desk
         cards = [water_card(desk, water, place) for place, water in enumerate(desk.scenario.waters)]
-        return [heading("Source waters"), node("ul", "waters", *cards), *self._add_water()]
+        titled = node("div", "titled", heading("Source waters"), self._other_amounts())
+        refused = desk.refusal("waters:amounts")
+        return [titled, refused, node("ul", "waters", *cards), *self._add_water()]
+
+    def _other_amounts(self) -> Node | None:
+        """From shares to flows and back; an only water has nothing to be shared."""
+        desk = self.desk
+        if len(desk.scenario.waters) < 2:
+            return None
+        words, change, hint = (
+            ("Give shares", give_shares, "Shares of the blend instead of a flow for each water")
+            if by_flow(desk.scenario)
+            else ("Give flows", give_flows, "A flow for each water instead of shares of the blend")
+        )
+        act = desk.act("waters:amounts", words, change)
+        return node(
+            "button", "link", text=words, key="waters:amounts", type="button", on=lambda value: act(),
+            title=hint,
+        )  # fmt: skip
 
     def _add_water(self) -> list[Node]:
         desk = self.desk

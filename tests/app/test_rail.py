@@ -333,3 +333,19 @@ def test_results_that_are_out_of_date_are_dimmed(amber: Rail) -> None:
     assert amber.nodes[0].properties["class"] == "rail stale"
     amber.desk.session.stale = False
     assert amber.nodes[0].properties["class"] == "rail"
+
+
+def test_waters_are_given_by_flow_and_back_by_share(amber: Rail) -> None:
+    """The blend stays; one undo each."""
+    session = amber.desk.session
+    before, ph = session.scenario.to_dict(), float(session.point.readout("ph"))
+    amber.report("waters:amounts")
+    assert list(shares(amber).values()) == [None, None]
+    assert float(session.point.readout("ph")) == pytest.approx(ph, abs=1e-9)
+    assert "waters.well.flow" in session.dials
+    assert words(amber, "waters:amounts") == "Give shares"
+    amber.report("waters:amounts")
+    assert float(session.point.readout("ph")) == pytest.approx(ph, abs=1e-9)
+    session.undo()
+    session.undo()
+    assert session.scenario.to_dict() == before
