@@ -151,7 +151,7 @@ def outside_checks() -> Iterator[Markup | None]:
     yield element("ul", [element("li", text) for text in OUTSIDE_CHECKS])
     rows = [line for topic, found in by_topic() for line in (Group(topic), *map(_check, found))]
     heading = ["Published case", "Printed", "Engine", "Difference", "Allowed", "Reason", "Source"]
-    yield table("outside checks", heading, rows, left=(0, 5, 6), look="dense")
+    yield table("outside checks", heading, rows, left=(0, 5, 6), look="dense checks")
 
 
 def _check(one: OutsideCheck) -> Row:

@@ -137,7 +137,7 @@ def _compared(case: Case, cases: Sequence[Compared]) -> list[Part]:
     """Cases beside the one as it stands; nothing where there are none. The CSV has all that differs."""
     if len(cases) < 2:
         return []
-    made, whole = compare(cases, case.results(results.RESULTS)), compare(cases)
+    made, whole = compare(cases, [*case.results(results.RESULTS), "cost"]), compare(cases)
     return [results.comparison(cases[1].kind, made, whole)]
 
 

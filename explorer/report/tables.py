@@ -12,6 +12,9 @@ from explorer.scenario.words import unit_text
 
 Row = Sequence[Part]
 
+SHORT = 12
+"""Rows of a table that is not broken between two pages."""
+
 _TAGS = re.compile(r"<[^<>]*>")
 
 
@@ -56,7 +59,8 @@ def table(
         for row in rows
     ]
     drawn = element("table", element("thead", head), element("tbody", body), class_=look or None)
-    return element("div", drawn, _download(name, full or _shown(heading, rows)), class_="table")
+    room = "table short" if len(rows) <= SHORT else "table"
+    return element("div", drawn, _download(name, full or _shown(heading, rows)), class_=room)
 
 
 def _row(row: Row, sides: Sequence[str]) -> Markup:
