@@ -19,7 +19,7 @@ from explorer.scenario.readouts import NO_VALUE, READOUTS, format_value
 from explorer.scenario.version import method
 from explorer.scenario.words import formula_text, number_text
 from explorer.studies.alarms import alarms, place_of
-from explorer.studies.basis import Assumption, Provenance, assumptions, provenance
+from explorer.studies.basis import Assumption, HeldValue, Provenance, assumptions, held_values, provenance
 from explorer.studies.cautions import EXCLUDED, Hazard, Trial, hazards, next_tests, standing_cautions
 from explorer.studies.methods import CONVENTIONS, METHOD, OUTSIDE_CHECKS, STUDIES, VALIDITY, Method
 from explorer.studies.outside_checks import outside_checks
@@ -28,7 +28,7 @@ from explorer.treatment.analysis import Balance
 from explorer.treatment.notes import Note
 
 GLYPHS = {"error": "✕", "caution": "▲", "info": "i"}
-OPEN = ("assumptions", "data", "notes")
+OPEN = ("assumptions", "holds", "data", "notes")
 """Sections that are unfolded at first."""
 
 
@@ -38,7 +38,9 @@ class Rests:
     the plant, mol/L, nan where there is none."""
 
     outcome: Outcome
+    swept: Sweep | None
     assumptions: Sequence[Assumption]
+    holds: Sequence[HeldValue]
     provenance: Sequence[Provenance]
     notes: Sequence[Note]
     hazards: Sequence[Hazard]
@@ -53,7 +55,9 @@ def gathered(scenario: Scenario, outcome: Outcome, swept: Sweep | None) -> Rests
     strengths = [float(stage.readout("ionic_strength")) for stage in outcome.stages]
     return Rests(
         outcome,
+        swept,
         assumptions(scenario, outcome),
+        held_values(scenario, outcome),
         list(provenance(scenario)),
         sorted(notes, key=lambda note: list(GLYPHS).index(note.level)),
         hazards(scenario, outcome),
@@ -78,6 +82,10 @@ class BasisView(SheetView):
             self.view.refresh()
             return
         scenario, point, swept = session.solved, session.point, session.swept
+        if self.found is not None and self.found.outcome is point and self.found.swept is swept:
+            self.errand.drop()
+            self.view.refresh()
+            return
         # What is there already stays until the dials are at rest: nobody reads it while they move.
         rest = REST if self.found is not None else 0.0
         self.errand.start(lambda watch: iter([gathered(scenario, point, swept)]), self._take, rest)
@@ -113,6 +121,7 @@ class BasisView(SheetView):
         count = f"{serious} caution{'s' * (serious != 1)}, {len(found.notes)} in all"
         return [
             _section("assumptions", "Assumptions", str(len(found.assumptions)), _assumed(found.assumptions)),
+            *([_section("holds", "Holds", _reached(found.holds), _held(found.holds))] if found.holds else []),
             _section("data", "Data and charge balance", _balanced(found.provenance), _data(found.provenance)),
             _section("notes", "Notes and alarms of this case", count, _notes(found)),
             _section("cautions", "Cautions", "", _list(found.cautions)),
@@ -168,6 +177,24 @@ def _assumed(found: Sequence[Assumption]) -> Node:
 def _assumption_rows(found: Sequence[Assumption]) -> list[list[str]]:
     heading = ["Assumption", "Value", "Unit", "Basis", "Source"]
     return [heading, *([part.what, part.value, part.unit, part.basis, part.source] for part in found)]
+
+
+def _reached(found: Sequence[HeldValue]) -> str:
+    missed = sum(not part.met for part in found)
+    return f"{len(found)}, " + (f"▲ {missed} not reached" if missed else "all reached")
+
+
+def _held(found: Sequence[HeldValue]) -> Node:
+    rows = []
+    for part in found:
+        look, glyph = ("ok", "✓") if part.met else ("bad", "▲")
+        state = node("span", f"status {look}", text=f"{glyph} {part.state}")
+        goal = f"{part.readout} {part.goal}"
+        unit = unit_text(part.unit)
+        takes = f"{part.takes} {unit}".rstrip()
+        rows.append(Row([plain(part.dial, 90), takes, part.limits, goal, plain(part.where, 90), state]))
+    heading = ["Computed", "Takes", "Within", "To hold", "Where", "State"]
+    return table("Holds: what is computed, and what it holds", heading, rows, words=range(6), searched=True)
 
 
 def _balanced(found: Sequence[Provenance]) -> str:

@@ -10,13 +10,22 @@ from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
 from explorer.app.entry import message, show_number
-from explorer.app.held import goal_text, met, place_name, place_words, words_of
 from explorer.app.live_view import Node, node
 from explorer.app.pickers import Act, Choice, picker
 from explorer.app.text import compact, in_sentence, plain, unit_text
 from explorer.scenario.dials import Dial, fine_step
 from explorer.scenario.errors import ScenarioError
-from explorer.scenario.holding import Holding, downstream, release, set_hold
+from explorer.scenario.holding import (
+    Holding,
+    downstream,
+    goal_text,
+    met,
+    place_name,
+    place_words,
+    release,
+    set_hold,
+    words_of,
+)
 from explorer.scenario.model import Scenario
 from explorer.scenario.readouts import READOUTS
 from explorer.scenario.stage import FINISHED
@@ -122,8 +131,8 @@ def _state(desk: Desk, held: Holding, inside: bool) -> Node:
     tag = node("span", "tag", text=words_of(held), title=f"{readout.label}, {readout.unit}".rstrip(", "))
     if not inside:
         words, look = "▲ rests: the place is out of service", "poor"
-    elif met(desk.session.point, held):
-        where = "" if held.step else f" · {in_sentence(place_words(desk.scenario, held.stage))}"
+    elif desk.session.point is None or met(desk.session.point, held):
+        where = "" if held.step else f" · {place_words(desk.scenario, held.stage)}"
         words, look = f"computed{where}", "soft"
     else:
         best = goal_text(readout, round(desk.reading(held.readout, held.stage), readout.digits))

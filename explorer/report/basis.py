@@ -11,7 +11,7 @@ from explorer.report.tables import Group, Row, table, unit_cell
 from explorer.scenario.readouts import NO_VALUE, READOUTS, format_value
 from explorer.scenario.version import method
 from explorer.scenario.words import number_text, short_number
-from explorer.studies.basis import assumptions, provenance
+from explorer.studies.basis import assumptions, held_values, provenance
 from explorer.studies.cautions import EXCLUDED, hazards, next_tests, standing_cautions
 from explorer.studies.methods import METHOD, OUTSIDE_CHECKS, VALIDITY, reaction_text
 from explorer.studies.outside_checks import OutsideCheck, by_topic
@@ -60,6 +60,28 @@ def tests(case: Case) -> Markup:
     """What has to be tested before anybody relies on the results."""
     found = next_tests(case.scenario, case.outcome)
     return element("ol", [element("li", f"{test.what} ({test.why}).") for test in found])
+
+
+def holds(case: Case) -> Markup | None:
+    """Every dial that is computed, what it holds, and whether that is reached."""
+    rows = [
+        [
+            found.dial,
+            element("strong", found.takes),
+            unit_cell(found.unit),
+            found.limits,
+            f"{found.readout} {found.goal}",
+            found.where,
+            element(
+                "span",
+                found.state if found.met else f"▲ {found.state}",
+                class_=None if found.met else "missed",
+            ),
+        ]
+        for found in held_values(case.scenario, case.outcome)
+    ]
+    heading = ["Computed", "Takes", "Unit", "Within", "To hold", "Where", "State"]
+    return table("holds", heading, rows, left=(0, 2, 3, 4, 5, 6)) if rows else None
 
 
 def register(case: Case) -> Markup | None:

@@ -105,6 +105,7 @@ def _sections(case: Case, figures: Sequence[str], family: str) -> list[Section]:
     parts: dict[tuple[str, str], Sequence[Part]] = {
         ("targets", "Targets"): [results.targets(case)],
         ("alarms", "What to look at"): [basis.alarms(case)],
+        ("holds", "Computed to hold a value"): [basis.holds(case)],
         ("sweep", f"Along the {dial}"): [
             element("div", plots, class_="figures"),
             element("p", _legend(case, spread), class_="small"),

@@ -14,8 +14,11 @@ from explorer.scenario.dials import dials, neat, step_name, turn
 from explorer.scenario.editing import trains
 from explorer.scenario.entity import Entity
 from explorer.scenario.errors import ScenarioError, unknown
+from explorer.scenario.evaluate import Outcome
 from explorer.scenario.model import DialHold, DoseStep, Hold, Quantity, Scenario, Step
+from explorer.scenario.readouts import READOUTS, Readout, format_value
 from explorer.scenario.stage import BLEND, FINISHED
+from explorer.scenario.words import formula_text, in_sentence, plain, short_number
 
 
 @dataclass(frozen=True)
@@ -71,6 +74,41 @@ def resting(scenario: Scenario, season: str | None = None) -> set[str]:
     if not scenario.holds:
         return set()
     return scenario.holds.keys() - {goal.address for goal in compiled(scenario, season).holds}
+
+
+def met(outcome: Outcome, hold: Holding) -> bool:
+    """Whether a hold is met at an outcome of a single point; one that is not in force there counts as met."""
+    if hold.step:
+        return hold.step not in outcome.dosing or bool(outcome.dosing[hold.step].met)
+    return hold.address not in outcome.held or bool(outcome.held[hold.address].met)
+
+
+def words_of(hold: Holding) -> str:
+    """What a hold does, briefly: "holds pH 8.20"."""
+    readout = READOUTS[hold.readout]
+    return f"holds {in_sentence(formula_text(readout.short))} {goal_text(readout, hold.value)}"
+
+
+def goal_text(readout: Readout, value: float) -> str:
+    """A held value: with the digits of the readout, or more where more were entered."""
+    exact = abs(value - round(value, readout.digits)) < 1e-9
+    return format_value(value, readout) if exact else short_number(value)
+
+
+def place_words(scenario: Scenario, stage: str) -> str:
+    """Where a readout is taken, in a few words inside a sentence."""
+    if stage in (FINISHED, BLEND):
+        return in_sentence(place_name(scenario, stage))
+    name = place_name(scenario, stage)
+    return name if stage in (water.id for water in scenario.waters) else f"behind {name}"
+
+
+def place_name(scenario: Scenario, stage: str) -> str:
+    """Name of a place of the plant."""
+    if stage in (FINISHED, BLEND):
+        return {FINISHED: "Finished water", BLEND: "Blend"}[stage]
+    water = next((water.title for water in scenario.waters if water.id == stage), None)
+    return plain(step_name(scenario, scenario.step(stage)) if water is None else water, 60)
 
 
 def set_hold(scenario: Scenario, address: str, stands: float, **parts: Any) -> None:

@@ -7,12 +7,14 @@ import numpy as np
 
 from explorer.chemistry.constants import solids
 from explorer.scenario.compile import compiled
-from explorer.scenario.dials import step_name, usual_settings
+from explorer.scenario.dials import dials, step_name, usual_settings
 from explorer.scenario.evaluate import Outcome
 from explorer.scenario.fields import Number
+from explorer.scenario.holding import goal_text, holdings, met, place_words, resting
 from explorer.scenario.measured import ENTRY_RULES
 from explorer.scenario.model import AirStep, DoseStep, LimestoneStep, Scenario, SettleStep, Step
-from explorer.scenario.words import in_sentence, short_number
+from explorer.scenario.readouts import NO_VALUE, READOUTS
+from explorer.scenario.words import in_sentence, range_text, short_number
 from explorer.studies.hand_checks import figure
 from explorer.treatment.analysis import CARBONATE_KEYS, Balance, Measured, examine
 from explorer.treatment.chemicals import density
@@ -52,6 +54,48 @@ class Provenance:
     after: Balance
     closed_with: str
     remarks: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class HeldValue:
+    """A dial that is computed: ``dial`` takes ``takes`` ``unit``, within ``limits``, so that ``readout`` has
+    the value ``goal`` at ``where``. ``state``: whether it does, in words."""
+
+    dial: str
+    takes: str
+    unit: str
+    limits: str
+    readout: str
+    goal: str
+    where: str
+    state: str
+    met: bool
+
+
+def held_values(scenario: Scenario, outcome: Outcome) -> list[HeldValue]:
+    """Every hold and what an outcome of a single point made of it: doses in flow order, then other dials."""
+    every, rests, found = dials(scenario, outcome.season), resting(scenario, outcome.season), []
+    for address, hold in holdings(scenario, outcome.season).items():
+        readout, dial = READOUTS[hold.readout], every.get(address)
+        there = dial is not None or (hold.step in outcome.dosing)
+        takes = figure(float(outcome.stands(address))) if there else NO_VALUE
+        low = dial.low if hold.low is None and dial is not None else hold.low
+        high = dial.high if hold.high is None and dial is not None else hold.high
+        is_met = met(outcome, hold)
+        state = "met"
+        if not there or address in rests:
+            state, is_met = "rests: out of service", True
+        elif not is_met:
+            best = round(float(outcome.readout(hold.readout, hold.stage)), readout.digits)
+            state = f"cannot be reached: {goal_text(readout, best)} at best"
+        found.append(
+            HeldValue(
+                hold.label, takes, hold.unit, range_text(low or 0.0, high, ""), readout.label,
+                f"{goal_text(readout, hold.value)}{readout.unit_text}",
+                place_words(scenario, hold.stage), state, is_met,
+            )
+        )  # fmt: skip
+    return found
 
 
 def assumptions(scenario: Scenario, outcome: Outcome) -> list[Assumption]:

@@ -92,6 +92,15 @@ STUDIES = (
         OWN,
     ),
     Method(
+        "Hold",
+        "A dial is computed so that a readout at a place of the plant has a value: a dose that holds the pH"
+        " behind its step by the alkalinity that this takes; any other dial, or up to four together, with the"
+        " whole plant calculated for every try. Where it cannot be met, the dial stands where it comes nearest, and"
+        " the note says so.",
+        "inverse quadratic interpolation in a bracket (Chandrupatla 1997); damped least"
+        " squares (Levenberg 1944, Marquardt 1963, from memory)",
+    ),
+    Method(
         "Window",
         "Two dials are varied over a map. A place is clear where every entered target is met; elsewhere it is"
         " shaded by the first target in the list that is missed. Borders are found to 1/128 of a cell.",
@@ -107,13 +116,21 @@ STUDIES = (
     Method(
         "Extremes",
         "All combinations of the ends of the tolerances are calculated and a search goes on from the worst,"
-        " so that an input whose slope is zero where nothing is off cannot hide.",
+        " so that an input whose slope is zero where nothing is off cannot hide. Anywhere means the whole"
+        " sweep in every season; the place of the extreme stands beside it.",
         OWN,
     ),
     Method(
         "Ranking",
         "The width that an input alone gives a result, and the width that is saved when its tolerance is"
-        " halved: the second says which measurement pays.",
+        " halved: the second says which measurement pays. Both come from the same random numbers, so that"
+        " small differences can be told.",
+        OWN,
+    ),
+    Method(
+        "Largest tolerance",
+        "How far one dial, or several together in all combinations, may be off for a readout to stay within a"
+        " distance of its value, nothing else being off. The first place where it would go beyond is named.",
         OWN,
     ),
     Method(
@@ -124,7 +141,8 @@ STUDIES = (
     ),
     Method(
         "Logarithmic diagram",
-        "All species at the fixed totals of the water against pH, alkalinity being the one total that moves.",
+        "All species at the fixed totals of the water against pH, alkalinity being the one total that moves."
+        " The line of the water's own pH crosses every species at its present concentration.",
         "graphical method of the textbooks of aquatic chemistry",
     ),
     Method(
@@ -136,25 +154,33 @@ STUDIES = (
     Method(
         "Ledger",
         "What sources and doses bring per litre of finished water, with the stoichiometry of solids, gas and"
-        " chlorine reactions; what no line explains is shown as a difference.",
+        " chlorine reactions. What no line explains is shown as a difference.",
         "conservation of mass",
     ),
     Method(
         "Hand checks",
-        "The arithmetic of the present case with figures as printed, beside what the engine has.",
+        "The arithmetic of the present case with figures as printed, beside what the engine has. They need a"
+        " pencil and nothing of this program.",
         OWN,
     ),
     Method(
         "Measured points",
         "Bias is the mean of model less measured, scatter the standard deviation of the differences about it"
-        " (n − 1).",
+        " (n − 1). The points stay in the scenario file and change no result.",
         "definition",
     ),
     Method(
         "Quantities",
         "Doses times flow, by strength and density of the product: pumps, tanks, tonnes a year, dry solids,"
-        " money at the entered prices.",
+        " money at the entered prices. A product without an entered strength has the usual one.",
         OWN,
+    ),
+    Method(
+        "Alarms",
+        "Rules that look for what makes a result misleading: next to no buffer, a coagulant outside its pH,"
+        " a dip of the precipitation potential between two good waters, chemicals that must not meet. Each"
+        " names its place and its source.",
+        "with each alarm",
     ),
 )
 

@@ -7,6 +7,7 @@ from explorer.app.live_view import Node
 from explorer.app.state import Session
 from explorer.chemistry.constants import dissolved, solids
 from explorer.scenario.files import open_scenario
+from explorer.scenario.holding import holdings
 from explorer.scenario.model import Scenario
 from explorer.scenario.readouts import READOUTS
 from explorer.scenario.shipped import shipped
@@ -35,12 +36,13 @@ def rows(view: BasisView, key: str) -> list[str]:
 
 
 def test_every_shipped_scenario_has_all_sections() -> None:
-    """Nothing is missing where there is little to say."""
-    keys = ["assumptions", "data", "notes", "cautions", "hazards", "tests", "validity", "excluded", "method"]
+    """Nothing is missing where there is little to say; holds are listed where there are any."""
+    keys = ["data", "notes", "cautions", "hazards", "tests", "validity", "excluded", "method"]
     keys += ["studies", "conventions", "constants", "left", "readouts", "checks"]
     for name in shipped():
         found = [node.key for node in opened(name).view.nodes if node.key.startswith("section:")]
-        assert found == [f"section:{key}" for key in keys]
+        held = ["holds"] if holdings(open_scenario(shipped()[name])) else []
+        assert found == [f"section:{key}" for key in ("assumptions", *held, *keys)]
 
 
 def test_assumptions_say_what_is_taken_why_and_who_says_so(view: BasisView) -> None:
@@ -147,3 +149,29 @@ def test_every_outside_check_is_a_line_with_its_source(view: BasisView) -> None:
         assert ("▲" in row) == bool(check.parts)
     title = next(part for part in section(view, "checks").walk() if part.tag == "summary").words()
     assert f"{len(outside_checks())} cases" in title
+
+
+def test_holds_are_listed_with_what_they_take_and_whether_they_are_reached() -> None:
+    """Of doses and of other dials; without holds there is no such section."""
+    scenario = open_scenario(shipped()["amber"])
+    raw = scenario.to_dict()
+    raw["holds"] = {"waters.well.share": {"readout": "nitrate", "value": 60}}
+    session = Session(Scenario.from_dict(raw))
+    session.solve_now()
+    view = BasisView(session)
+    view.opened()
+    (line,) = rows(view, "holds")[1:]
+    assert "Share of Granite Wellfield" in line and "Nitrate 60.0 mg/L" in line
+    assert "▲ cannot be reached: 29.0 at best" in line
+    assert "▲ 1 not reached" in section(view, "holds").words()
+    assert "section:holds" not in opened("amber").view
+
+
+def test_a_view_that_is_left_and_come_back_to_is_as_it_was(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Nothing is gathered again until a result is another."""
+    view = opened("amber")
+    found = view.found
+    view.closed()
+    monkeypatch.setattr("explorer.app.basis_view.gathered", lambda *arguments: pytest.fail("gathered again"))
+    view.opened()
+    assert view.found is found

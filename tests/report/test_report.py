@@ -275,3 +275,14 @@ def test_the_outside_checks_stand_in_the_report(shipped_report):
             check.numbers[1], ("▲ " if check.parts else "") + check.numbers[2], check.numbers[3], check.why,
             check.source,
         ]  # fmt: skip
+
+
+def test_holds_say_what_they_take_and_whether_they_are_reached(plant):
+    """The dose in a step and the dial of the scenario in one table."""
+    caustic = plant.held("caustic", "sodium_hydroxide", "ph", 8.2, 0.5, "mg/L")
+    holds = {"waters.well.share": {"readout": "nitrate", "value": 18, "stage": "blend"}}
+    page = tree(report_html(plant({"river": 60, "well": 40}, [caustic], holds=holds)))
+    heading, dose, share = rows(page, "holds")
+    assert heading[:2] == ["Computed", "Takes"]
+    assert dose[0] == "Dose of Sodium hydroxide" and dose[-1].startswith("▲ cannot be reached:")
+    assert share[0] == "Share of Well" and share[4:] == ["Nitrate 18.0 mg/L", "blend", "met"]

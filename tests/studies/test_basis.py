@@ -5,7 +5,7 @@ import pytest
 from explorer.scenario.evaluate import evaluate
 from explorer.scenario.files import open_scenario
 from explorer.scenario.shipped import shipped
-from explorer.studies.basis import ASSUMED, COMMON_PRACTICE, assumptions, provenance
+from explorer.studies.basis import ASSUMED, COMMON_PRACTICE, assumptions, held_values, provenance
 
 
 def register(scenario) -> dict[str, tuple[str, str, str, str]]:
@@ -123,3 +123,41 @@ def test_a_closed_balance_is_shown_before_and_after(plant):
     assert found.before.percent == pytest.approx(-1.0, abs=0.1)
     assert found.after.percent == pytest.approx(0.0, abs=1e-6)
     assert any("to close the charge balance" in remark for remark in found.remarks)
+
+
+# ---- holds -------------------------------------------------------------------------------------------------
+
+
+def held(plant, holds, train=()):
+    scenario = plant({"river": 60, "well": 40}, list(train), holds=holds)
+    outcome = evaluate(scenario)
+    return outcome, held_values(scenario, outcome)
+
+
+def test_every_hold_says_what_it_takes_within_which_limits(plant):
+    """Doses of steps and other dials alike, doses first."""
+    caustic = plant.held("caustic", "sodium_hydroxide", "ph", 8.2, 40, "mg/L")
+    share = {"waters.well.share": {"readout": "nitrate", "value": 18, "stage": "blend", "low": 10}}
+    outcome, (dose, blend) = held(plant, share, [caustic])
+    assert (dose.dial, dose.unit, dose.limits) == ("Dose of Sodium hydroxide", "mg/L", "0 to 40")
+    assert (dose.readout, dose.goal, dose.where) == ("pH", "8.20", "behind Sodium hydroxide")
+    assert float(dose.takes) == pytest.approx(float(outcome.dosing["caustic"].value), rel=1e-3)
+    assert (blend.dial, blend.limits, blend.where) == ("Share of Well", "10 to 100", "blend")
+    assert (blend.goal, blend.state, blend.met) == ("18.0 mg/L", "met", True)
+    assert float(blend.takes) == pytest.approx(float(outcome.stands("waters.well.share")), rel=1e-3)
+
+
+def test_a_hold_that_cannot_be_reached_names_the_best_that_can(plant):
+    """The value where the dial comes nearest."""
+    share = {"waters.well.share": {"readout": "nitrate", "value": 90}}
+    outcome, (hold,) = held(plant, share)
+    assert not hold.met
+    assert hold.state == f"cannot be reached: {float(outcome.readout('nitrate')):.1f} at best"
+
+
+def test_a_hold_whose_place_is_out_of_service_rests(plant):
+    """The dial stands as entered."""
+    tower = {"id": "tower", "step": "air", "approach": 50, "on": False}
+    share = {"waters.well.share": {"readout": "ph", "value": 8, "stage": "tower"}}
+    _, (hold,) = held(plant, share, [tower])
+    assert (hold.takes, hold.state) == ("40", "rests: out of service")
