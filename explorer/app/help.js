@@ -42,14 +42,27 @@ export function render({ model }) {
       model.send_msg({ steps: (event.key === "ArrowLeft" ? -1 : 1) * (event.shiftKey ? 10 : 1) })
     }
   }
-  // Plots keep the size they have on the screen; the paper is told how wide that is.
+  // Plots keep the size they have on the screen; the paper is told how wide that is. Texts and tables without a plot
+  // beside them flow over as many pages as they need, in their whole width.
   const PAPER = [1030, 700]   // A4 landscape between its margins, CSS pixels
+  function* seen(root) {
+    for (const part of root.querySelectorAll("*")) {
+      if (!part.checkVisibility()) continue
+      yield part
+      if (part.shadowRoot) yield* seen(part.shadowRoot)
+    }
+  }
   const onPrint = () => {
-    const width = document.querySelector("#main").clientWidth, style = document.documentElement.style
+    const style = document.documentElement.style, parts = [...seen(document.querySelector("#main > .views"))]
+    const flowing = !parts.some((part) => part.localName === "canvas")
+    document.documentElement.toggleAttribute("data-flowing", flowing)
+    const widths = flowing ? parts.map((part) => part.scrollWidth) : []
+    const width = Math.max(document.querySelector("#main").clientWidth, ...widths)
     style.setProperty("--page-width", `${width}px`)
-    style.setProperty("--views-height", `${document.querySelector("#main > .views").clientHeight + 40}px`)
+    const views = document.querySelector("#main > .views").clientHeight + 40
+    style.setProperty("--views-height", flowing ? "auto" : `${views}px`)
     const height = document.querySelector("#main").scrollHeight + 200   // the bar, and one more row of readouts
-    style.setProperty("--paper", Math.min(1, PAPER[0] / width, PAPER[1] / height))
+    style.setProperty("--paper", Math.min(1, PAPER[0] / width, flowing ? 1 : PAPER[1] / height))
   }
   window.addEventListener("beforeprint", onPrint)
   document.addEventListener("keydown", onKey)

@@ -183,7 +183,8 @@ VIEW_STYLES = ("live_view.css", "views.css")
 STUDY_STYLES = (*VIEW_STYLES, "study.css")
 """The same for views of long calculations."""
 
-VIEW_HOST_CSS = ":host { min-height: 0 !important; height: 100%; }"
+VIEW_HOST_CSS = """:host { min-height: 0 !important; height: 100%; }
+@media print { :host { flex: var(--sheet-flex, 1 1 0) !important; } }"""
 """For a view that fills the place under the verdict and shrinks with it."""
 
 PLOT_GRID_CSS = """

@@ -193,3 +193,34 @@ def test_a_plot_is_saved_as_picture_drawing_and_figures(screen: Any, tmp_path: P
         assert path.name == f"amber-river-and-wellfield-sweep-ph.{kind.lower()}"
         arriving.value.save_as(path)
         assert path.read_bytes().startswith(starts)
+
+
+def test_sheets_flow_over_the_pages_of_a_print(screen: Any) -> None:
+    """Ledger and basis are printed whole, their tables neither cut nor scrolled; plots keep one page."""
+    page, shown = screen.page, "() => document.querySelector('#main > .views').scrollHeight"
+    tab(screen, "Basis")
+    screen.until(lambda: page.get_by_text("Constants and their sources").count() == 1, "the basis")
+    page.evaluate("window.dispatchEvent(new Event('beforeprint'))")
+    page.emulate_media(media="print")
+    assert page.evaluate("document.documentElement.hasAttribute('data-flowing')")
+    assert page.evaluate(shown) > 1000
+    clipped = """() => {
+      const found = [], look = (root) => { for (const part of root.querySelectorAll('*')) {
+        if (part.shadowRoot) look(part.shadowRoot)
+        if (!part.checkVisibility() || !part.matches('.scroll, .sections, .pane')) continue
+        const scrolls = getComputedStyle(part).overflowY !== 'visible'
+        if (scrolls && part.scrollHeight > part.clientHeight + 2) found.push(part.className)
+      } }
+      look(document.querySelector('#main > .views'))
+      return found
+    }"""
+    assert page.evaluate(clipped) == []
+    page.emulate_media(media="screen")
+    tab(screen, "Sweep")
+    screen.until(
+        lambda: page.evaluate("""() => {
+          window.dispatchEvent(new Event('beforeprint'))
+          return !document.documentElement.hasAttribute('data-flowing')
+        }"""),
+        "plots, which do not flow",
+    )
