@@ -14,6 +14,7 @@ from explorer.scenario.model import Target
 from explorer.scenario.readouts import MINUS, READOUTS, format_value
 
 if TYPE_CHECKING:
+    from explorer.studies.convergence import Convergence
     from explorer.studies.corners import Extreme
     from explorer.studies.ranking import Allowed, Ranking
     from explorer.studies.tolerance import ToleranceStudy
@@ -50,6 +51,9 @@ def register(command: Command) -> None:
         "--rank", metavar="K", help="readout to rank the inputs for; the least certain target"
     )
     spread.add_argument("--anywhere", action="store_true", help="worst along the dial, in any season, too")
+    spread.add_argument(
+        "--converge", action="store_true", help="percentiles from ten times the samples beside them"
+    )
     spread.add_argument("--samples", type=int, default=2048, metavar="N", help="%(default)s without it")
     spread.add_argument(
         "--seed", type=int, default=20, metavar="N", help="of the random numbers; %(default)s"
@@ -94,6 +98,7 @@ def _window(options: argparse.Namespace) -> None:
 
 
 def _tolerance(options: argparse.Namespace) -> None:
+    from explorer.studies.convergence import convergence
     from explorer.studies.corners import extremes, worst
     from explorer.studies.ranking import ranking
     from explorer.studies.tolerance import tolerance
@@ -113,14 +118,23 @@ def _tolerance(options: argparse.Namespace) -> None:
         key: worst(scenario, key, made.dial.address, made.x[0], made.x[-1], overrides=others)
         for key in (made.here.values if options.anywhere else ())
     }
+    settled = (
+        convergence(
+            scenario, list(made.here.values), options.samples, options.seed, options.season, dials
+        )
+        if options.converge
+        else {}
+    )  # fmt: skip
     rank = ranking(scenario, (ranked or [_least_certain(made)])[0], options.season, dials, options.seed)
     if options.json:
         found = {**made.to_dict(), "extremes": _plain(ends), "ranking": rank.to_dict()}
         if options.anywhere:
             found["anywhere"] = _plain(ends_of_all)
+        if settled:
+            found["convergence"] = {key: part.to_dict() for key, part in settled.items()}
         print(json.dumps(found, ensure_ascii=False))
     else:
-        print("\n".join(_tolerance_text(scenario.title, made, ends, ends_of_all, rank)))
+        print("\n".join(_tolerance_text(scenario.title, made, ends, ends_of_all, settled, rank)))
 
 
 def _plain(ends: Ends) -> dict[str, Any]:
@@ -185,7 +199,12 @@ def _window_text(made: "Window") -> Iterator[str]:
 
 
 def _tolerance_text(
-    title: str, made: "ToleranceStudy", ends: Ends, ends_of_all: Ends, rank: "Ranking"
+    title: str,
+    made: "ToleranceStudy",
+    ends: Ends,
+    ends_of_all: Ends,
+    settled: dict[str, "Convergence"],
+    rank: "Ranking",
 ) -> Iterator[str]:
     season = next(iter(ends.values()))[0].season
     inputs = f"{len(made.inputs)} input" + "s" * (len(made.inputs) != 1)
@@ -197,6 +216,14 @@ def _tolerance_text(
         shown = (made.here.nominal[key][0], *middle, low.value, high.value)
         rows.append([readout.label, readout.unit, *(format_value(value, readout) for value in shown)])
     yield from aligned(rows, right=range(2, 8))
+    if settled:
+        yield ""
+        more = next(iter(settled.values())).more
+        rows = [[f"With {more} samples", "", "2.5 %", "Median", "97.5 %", "moved by at most"]]
+        for key, part in settled.items():
+            shown = [format_value(value, READOUTS[key]) for value in part.many]
+            rows.append([READOUTS[key].label, READOUTS[key].unit, *shown, f"{part.shift:.2g}"])
+        yield from aligned(rows, right=range(2, 6))
     if ends_of_all:
         yield ""
         rows = [["Anywhere along the dial, in any season", "", "Lowest", "at", "", "Highest", "at", ""]]

@@ -76,14 +76,25 @@ class Figures(Card):
         rows = [
             Row(["nothing off", _value(readout, float(here.nominal[readout.key][0])), ""]),
             Row([f"{MOST_PERCENT:g} % of the outcomes", _value(readout, low), _value(readout, high)]),
+            *self._settled(readout, found),
             Row(["everything at its worst, here", *self._pair(readout, found.here, place=False)]),
             Row(["… anywhere on the sweep", *self._pair(readout, found.anywhere, place=True)]),
         ]
         heading = [f"{unit}" if unit else "Where", "lowest", "highest"]
         parts = [node("h3", text=title), table(title, heading, rows, look="loose")]
         if found.here is not None:
-            parts.append(_corner(found.here, study.inputs))
+            parts.append(_corner("What is off here, and which way", found.here, study.inputs))
+        if found.anywhere is not None:
+            parts.append(_corner("What is off at the worst place", found.anywhere, study.inputs))
         return parts
+
+    def _settled(self, readout: Readout, found: Survey) -> list[Row]:
+        """The same from many more samples: whether these have been enough."""
+        settled = found.settled
+        if settled is None:
+            return [Row(["… with ten times the samples", PENDING, PENDING])] if found.study.final else []
+        words = f"… with {settled.more // settled.samples} times the samples"
+        return [Row([words, _value(readout, settled.many[0]), _value(readout, settled.many[-1])])]
 
     def _pair(self, readout: Readout, pair: tuple[Extreme, Extreme] | None, place: bool) -> list[str | Node]:
         if pair is None:
@@ -112,19 +123,20 @@ def _chance(text: str, part: float, look: str = "") -> Node:
     )
 
 
-def _corner(pair: tuple[Extreme, Extreme], inputs: Sequence[Input]) -> Node:
-    """Which way everything is off at both extremes here."""
+def _corner(title: str, pair: tuple[Extreme, Extreme], inputs: Sequence[Input]) -> Node:
+    """Which way everything is off at both extremes; other seasons may have other inputs."""
     low, high = pair
+    labels = {part.name: part.label for part in inputs}
+    names = dict.fromkeys([*labels, *low.places, *high.places])
+    ends = {name: (low.places.get(name, 0.0), high.places.get(name, 0.0)) for name in names}
     lines = [
-        Row([plain(part.label, 90), _end(low.places[part.name]), _end(high.places[part.name])])
-        for part in inputs
-        if low.places[part.name] or high.places[part.name]
+        Row([plain(labels.get(name, name), 90), *map(_end, both)]) for name, both in ends.items() if any(both)
     ]
     inside = "" if low.corner and high.corner else " An extreme lies between the ends."
     return node(
-        "details", "corner", node("summary", text="What is off, and which way"),
+        "details", "corner", node("summary", text=title),
         node("p", "hint", text=f"Between −1 and +1: part of the tolerance.{inside}"),
-        table("What is off at the extremes", ["Input", "lowest", "highest"], lines),
+        table(title, ["Input", "lowest", "highest"], lines),
     )  # fmt: skip
 
 

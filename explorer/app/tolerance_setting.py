@@ -30,8 +30,13 @@ class Setting:
 
     def inputs(self, scenario: Scenario) -> str:
         """Everything the spread depends on, as text."""
-        plant = {key: part for key, part in scenario.to_dict().items() if key not in _ELSEWHERE}
-        return json.dumps([plant, self.readout, self.samples, self.seed], sort_keys=True)
+        return json.dumps([plant_text(scenario), self.readout, self.samples, self.seed], sort_keys=True)
+
+
+def plant_text(scenario: Scenario) -> str:
+    """Everything about a plant on which a spread depends, as text."""
+    plant = {key: part for key, part in scenario.to_dict().items() if key not in _ELSEWHERE}
+    return json.dumps(plant, sort_keys=True)
 
 
 def setting(session: Session) -> Setting:

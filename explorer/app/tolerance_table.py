@@ -13,7 +13,7 @@ from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import STUDY_STYLES
 from explorer.app.state import Session
 from explorer.app.tables import Group, Row, table
-from explorer.app.text import plain, unit_text
+from explorer.app.text import in_sentence, plain, unit_text
 from explorer.scenario.dials import Dial, neat
 from explorer.scenario.model import Scenario, Tolerance
 from explorer.studies.spread import spread_of
@@ -48,11 +48,14 @@ class Line:
     dial: Dial | None
     live: bool
     held: bool
+    along: list[str]
 
     @property
     def note(self) -> str:
-        """Why it counts for nothing here, "" where it counts."""
-        return "" if self.live else HELD_NOTE if self.held else OFF_NOTE
+        """What is off with it, or why it counts for nothing here; "" where there is nothing to say."""
+        if not self.live:
+            return HELD_NOTE if self.held else OFF_NOTE
+        return f"moves along: {'; '.join(map(in_sentence, self.along))}" if self.along else ""
 
     @property
     def label(self) -> str:
@@ -90,7 +93,8 @@ class ToleranceTable(LiveView):
     def lines(self) -> list[Line]:
         """The tolerances of the scenario in their order."""
         scenario, dials = self.session.scenario, self.session.dials
-        moved = spread_of(scenario).moved
+        spread = spread_of(scenario)
+        moved = spread.moved
         return [
             Line(
                 address,
@@ -98,6 +102,7 @@ class ToleranceTable(LiveView):
                 dials.get(address),
                 address in moved or not any(tolerance.sides),
                 address in self.session.held,
+                spread.follows(address),
             )
             for address, tolerance in scenario.tolerances.items()
         ]
@@ -126,7 +131,7 @@ class ToleranceTable(LiveView):
         kind = SAME if minus == plus and tolerance.minus is None and tolerance.plus is None else SIDES
         name = node(
             "span", "", node("span", text=line.label),
-            node("small", "aside", text=line.note) if line.note else None,
+            node("small", "aside", text=plain(line.note, 200)) if line.note else None,
             message(self.entries.refusal(key)),
         )  # fmt: skip
         together, refused = self.entries.text(

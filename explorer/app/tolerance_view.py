@@ -20,6 +20,7 @@ from explorer.app.saving import Plate, save_menu
 from explorer.app.state import Session
 from explorer.app.study_head import StudyHead
 from explorer.app.text import compact
+from explorer.app.tolerance_allowed import AllowedCard
 from explorer.app.tolerance_results import Figures, RankingBars
 from explorer.app.tolerance_table import ToleranceTable
 from explorer.app.view import View
@@ -139,11 +140,12 @@ class ToleranceView(View):
         self.distribution_head = DistributionHead(self)
         self.figures = Figures(session, lambda: self.found)
         self.bars = RankingBars(session, lambda: self.found)
+        self.allowed = AllowedCard(session, lambda: settings.setting(session).readout)
         self.cards = [
             _card(self.head, _plot(self.plots.plots[FAN].figure)),
             _card(self.distribution_head, _plot(self.histogram.figure)),
             _card(self.figures, mode="stretch_width"),
-            _card(self.bars, mode="stretch_width"),
+            _card(self.bars, self.allowed, mode="stretch_width"),
         ]
         grid = pn.Column(*self.cards, sizing_mode="stretch_both", margin=0, stylesheets=[SPREAD_GRID_CSS])
         self.results = pn.Column(grid, sizing_mode="stretch_both", margin=0, stylesheets=[VIEW_HOST_CSS])
@@ -162,6 +164,7 @@ class ToleranceView(View):
     def closed(self) -> None:
         super().closed()
         self.errand.drop()
+        self.allowed.drop()
 
     def again(self) -> None:
         """Begin the survey anew."""
@@ -178,6 +181,7 @@ class ToleranceView(View):
             self.head.refresh()
         if "point" in changed or changed & {"structure", "choices"}:
             self._refresh_table()
+            self.allowed.follow(0.0 if "choices" in changed else REST)
             self._calculate(rest=0.0 if "choices" in changed else REST)
         self._show_fan()
         self._dim()

@@ -95,8 +95,8 @@ STUDIES = (
         "Hold",
         "A dial is computed so that a readout at a place of the plant has a value: a dose that holds the pH"
         " behind its step by the alkalinity that this takes; any other dial, or up to four together, with the"
-        " whole plant calculated for every try. Where it cannot be met, the dial stands where it comes nearest, and"
-        " the note says so.",
+        " whole plant calculated for every try. Where it cannot be met, the dial stands where it comes"
+        " nearest, and a note says so.",
         "inverse quadratic interpolation in a bracket (Chandrupatla 1997); damped least"
         " squares (Levenberg 1944, Marquardt 1963, from memory)",
     ),

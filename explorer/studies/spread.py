@@ -135,6 +135,25 @@ class Spread:
         """Dials with every input off by its place (inputs, *S), −1 and 1 being the ends; 0 is not off."""
         return self._turned(lambda row, move: places[row], around)
 
+    def follows(self, address: str) -> list[str]:
+        """Labels of the other dials that are off when that at an address is: dials that share its error, and
+        the fixed doses that follow a strength or a flow."""
+        moved = next(
+            (input.moves for input in self.inputs if address in (m.address for m in input.moves)), ()
+        )
+        addresses = {move.address for move in moved}
+        every = self.plan.dials
+        labels = [every[other].label for other in every if other in addresses and other != address]
+        for pump in self.pumps:
+            by_strength = pump.strength in addresses and not pump.by_product
+            own = f"waters.{pump.source}.flow" if pump.source else ""
+            by_flow = "flow" in addresses or any(
+                is_flow(moved) and (not own or moved == own) for moved in addresses
+            )
+            if by_strength or by_flow:
+                labels.append(every[pump.dose].label)
+        return list(dict.fromkeys(labels))
+
     def _turned(self, place: Callable[[int, Move], np.ndarray], around: Dials) -> Dials:
         turned = dict(around)
         split, possible = self._split(around)
