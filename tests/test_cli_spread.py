@@ -161,3 +161,14 @@ def test_a_dial_without_limit_says_what_was_tried(run):
 def test_a_mistake_is_one_sentence_and_status_2(run, name, arguments, sentence):
     """On stderr, and nothing on stdout."""
     assert refused(run(name, DUNE, arguments)).startswith(sentence)
+
+
+def test_percentiles_of_ten_times_the_samples_stand_beside(run):
+    """As text with how far they moved, and as numbers."""
+    few = "--points 3 --samples 256 --converge"
+    text = answered(run("tolerance", shipped()["amber"].as_posix(), few))
+    assert "With 4096 samples" in text and "moved by at most" in text
+    found = json.loads(answered(run("tolerance", shipped()["amber"].as_posix(), f"{few} --json")))
+    settled = found["convergence"]["ph"]
+    assert (settled["samples"], settled["more"]) == (256, 4096)
+    assert settled["many"] == pytest.approx(settled["few"], abs=0.01)

@@ -169,9 +169,10 @@ class ToleranceTable(LiveView):
         if kind == SAME:
             return node("span", "widths", *field("plus_minus", "Half-width", plus))
         down, up = field("minus", "Width downwards", minus), field("plus", "Width upwards", plus)
-        return node(
-            "span", "widths", node("span", text="−"), down[0], node("span", text="+"), up[0], down[1], up[1]
+        sides = (
+            node("span", "side", node("span", text=sign), part[0]) for sign, part in (("−", down), ("+", up))
         )
+        return node("span", "widths", *sides, down[1], up[1])
 
     def _beside_values(self) -> Iterator[Row]:
         for dial, width in self._stated():

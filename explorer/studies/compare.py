@@ -29,6 +29,9 @@ LETTERS = "ABCDEFGHIJKLMNOPQRSTUVWXYZ"
 
 IN_SERVICE = ".on"
 
+SAYS_BY_ABSENCE = (IN_SERVICE, ".holds")
+"""Ends of the keys of settings that differ where one case does not have them."""
+
 MINOR = ("strength", "price", "basicity", "ratio", "ceiling", "co2_ppm", "altitude")
 """Dials of a step that say nothing of interest where the step itself is missing from the other case."""
 
@@ -223,7 +226,7 @@ def _input_rows(cases: Sequence[Case]) -> Iterator[Row]:
     settings = [dict(_settings(case.scenario)) for case in cases]
     for key in _union(settings):
         texts = tuple(held[key][1] if key in held else NO_VALUE for held in settings)
-        if len({*texts} - (set() if key.endswith(IN_SERVICE) else {NO_VALUE})) > 1:
+        if len({*texts} - (set() if key.endswith(SAYS_BY_ABSENCE) else {NO_VALUE})) > 1:
             label = next(held[key][0] for held in settings if key in held)
             yield Row(INPUTS, key, label, "", texts, (None,) * len(cases))
     yield from _order_row(cases)
@@ -299,7 +302,7 @@ def _settings(scenario: Scenario) -> Iterator[tuple[str, tuple[str, str]]]:
             yield f"{step.id}.hold", (f"{name}: holds", held)
     for hold in holdings(scenario).values():
         if not hold.step:
-            yield f"{hold.address}.hold", (f"{hold.label} holds", READOUTS[hold.readout].label)
+            yield f"{hold.address}.holds", (f"{hold.label} holds", READOUTS[hold.readout].label)
 
 
 def _words(scenario: Scenario, step: Step, key: str) -> str:

@@ -3,6 +3,7 @@
 from dataclasses import dataclass
 
 from explorer.scenario.dials import Dial, dials, neat
+from explorer.scenario.holding import holdings
 from explorer.scenario.model import DoseStep, LimestoneStep, Measured, Scenario, Tolerance
 from explorer.treatment.units import from_base, to_base
 
@@ -46,6 +47,10 @@ def suggested_tolerance(scenario: Scenario, dial: Dial, season: str | None = Non
     parts = dial.address.split(".")
     if parts[-1] == "flow":
         return _suggestion("flow meter as installed", plus_minus=3, unit="%")
+    if parts[-2] == "hold":
+        held = next((hold for hold in holdings(scenario).values() if hold.goal == dial.address), None)
+        on_line = held is not None and held.readout == "ph"
+        return _suggestion("on-line pH meter", plus_minus=0.1) if on_line else None
     if parts[-1] == "share":
         # A single water has the whole share whatever its meter says.
         if sum(water.on for water in scenario.waters) == 1:
@@ -88,11 +93,7 @@ def _as_calcium_carbonate(alkalinity: Measured) -> float:
 
 
 def _of_step(scenario: Scenario, parts: list[str]) -> Suggestion | None:
-    held = parts[-2] == "hold"
-    step = scenario.step(parts[-3] if held else parts[-2])
-    if held:
-        on_line = parts[-1] == "value" and isinstance(step, DoseStep) and step.hold.readout == "ph"
-        return _suggestion("on-line pH meter", plus_minus=0.1) if on_line else None
+    step = scenario.step(parts[-2])
     if parts[-1] == "fraction":
         return _suggestion("flow meters of the split", plus_minus=2)
     if parts[-1] == "approach" and isinstance(step, LimestoneStep):

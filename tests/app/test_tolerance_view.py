@@ -8,7 +8,9 @@ from explorer.app.look import DARK
 from explorer.app.main import build
 from explorer.app.shell import Shell
 from explorer.app.tolerance_view import ToleranceView
+from explorer.scenario.model import DialHold
 from explorer.scenario.shipped import shipped
+from explorer.studies.ranking import allowed_tolerance
 from explorer.studies.suggestions import suggested_tolerances
 
 WELL, WELL_PH, HYPO = "waters.well.share", "waters.well.analysis.ph", "train.hypo.dose"
@@ -280,3 +282,53 @@ def test_removing_the_last_tolerance_brings_the_table_back(shell: Shell, view: T
     shell.session.undo()
     assert view.results.visible and view.found is not None
     assert np.isfinite(view.found.ranking.width)
+
+
+# ---- what goes along, and how far a dial may be off --------------------------------------------------------
+
+
+def test_shared_errors_say_what_they_move(shell: Shell, view: ToleranceView, table) -> None:
+    """A strength moves the doses of its tank, the flow those that are paced on it."""
+    table.report("add:train.hypo.strength")
+    table.report("add:flow")
+    for address in ("train.hypo.strength", "flow"):
+        assert "moves along: dose of Sodium hypochlorite" in table.shown(f"tolerance:{address}").words()
+
+
+def test_a_tolerance_of_a_held_dial_counts_for_nothing_and_says_why(shell: Shell, table) -> None:
+    """Its controller makes up for it."""
+
+    def change(scenario) -> None:
+        scenario.holds = {HYPO: DialHold(readout="ph", value=7.6, high=5)}
+
+    assert shell.session.edit("Hold", change) == ""
+    assert "held: its controller makes up for it" in table.shown(f"tolerance:{HYPO}").words()
+
+
+def test_the_largest_tolerance_of_a_dial_is_told(shell: Shell, view: ToleranceView) -> None:
+    """Of the first dose at first; the answer is that of the study."""
+    card = view.allowed
+    asked = card.question()
+    assert asked.dial == "train.hypo.dose"
+    card.report(f"allowed:dial:{WELL_PH}")
+    card.report("allowed:within", "2")
+    found = allowed_tolerance(shell.session.scenario, [WELL_PH], asked.readout, 2.0)
+    assert card.answer[1].half_width == found.half_width
+    assert f"± {found.half_width:.3g} keeps it within" in card.nodes[0].words()
+
+
+def test_a_distance_that_is_none_is_refused_beside_its_field(view: ToleranceView) -> None:
+    """The last answer stays."""
+    card = view.allowed
+    before = card.answer
+    card.report("allowed:within", "0")
+    assert card.entries.refusal("allowed:within") == "0 is no distance; allowed above 0"
+    assert card.answer is before
+
+
+def test_many_more_samples_stand_beside_the_percentiles(view: ToleranceView) -> None:
+    """Sixteen times as many, and the ends from them."""
+    settled = view.found.settled
+    words = view.figures.nodes[0].words()
+    assert f"… with {settled.more // settled.samples} times the samples" in words
+    assert "What is off at the worst place" in words

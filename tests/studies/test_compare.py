@@ -252,3 +252,18 @@ def test_the_sweeps_of_all_cases_share_one_axis():
         assert swept.x == pytest.approx(np.linspace(0, 100, 11))
     summer = evaluate(scenario, {"waters.well.share": 50.0}, "summer").readout("ph")
     assert found[1][1].outcome.readout("ph")[5] == pytest.approx(float(summer), abs=1e-9)
+
+
+def test_a_held_dial_is_compared_by_what_it_came_to(plant):
+    """Not by where it was entered; what it holds is an input like others."""
+    fixed = plant(THREE)
+    held = plant(THREE, holds={"waters.well.share": {"readout": "nitrate", "value": 12}})
+    keep_option(held, "Now")
+    fixed.options = held.options
+    made = compare([current_case(fixed), *option_cases(fixed)])
+    (row,) = made.section(HELD)
+    assert row.key == "waters.well.share" and row.values[0] == 30
+    assert row.values[1] == pytest.approx(float(evaluate(held).stands("waters.well.share")))
+    inputs = {row.key: row.texts for row in made.section(INPUTS)}
+    assert inputs["waters.well.share.holds"][1] == "Nitrate"
+    assert "waters.well.share" not in inputs

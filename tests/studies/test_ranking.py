@@ -149,3 +149,11 @@ def test_what_cannot_be_asked_is_refused(moss, addresses, readout, within, sente
     with pytest.raises(ScenarioError) as error:
         allowed_tolerance(moss, addresses, readout, within)
     assert str(error.value).startswith(sentence)
+
+
+def test_a_held_dial_has_no_allowed_tolerance(moss):
+    """Its controller makes up for what it is off."""
+    raw = moss.to_dict()
+    raw["holds"] = {CAUSTIC: {"readout": "ph", "value": 8, "high": 40}}
+    with pytest.raises(ScenarioError, match="is held: its controller makes up for errors"):
+        allowed_tolerance(type(moss).from_dict(raw), [CAUSTIC], "ph", 0.2)

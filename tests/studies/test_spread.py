@@ -390,3 +390,28 @@ def test_distribution_and_shared_are_kept_in_the_file(plant):
     raw["tolerances"]["waters.river.analysis.ph"]["distribution"] = "norm"
     with pytest.raises(ValueError, match=r'distribution: "norm" is not a distribution \(perhaps normal\)'):
         Scenario.from_dict(raw)
+
+
+# ---- what goes along ---------------------------------------------------------------------------------------
+
+
+def test_it_is_told_what_is_off_along_with_a_dial(plant):
+    """The doses of a tank with its strength, the doses paced on a flow with it, and dials of one word."""
+    train = [
+        plant.dosed("pre", "sodium_hydroxide", 4, "mg/L"),
+        plant.dosed("post", "sodium_hydroxide", 2, "mg/L"),
+    ]
+    tolerances = {
+        "train.pre.strength": {"plus_minus": 5, "unit": "%"},
+        "flow": {"plus_minus": 3, "unit": "%"},
+        "waters.river.analysis.ph": {"plus_minus": 0.1, "shared": "meter"},
+        "waters.well.analysis.ph": {"plus_minus": 0.1, "shared": "meter"},
+        "train.post.dose": {"plus_minus": 2, "unit": "%"},
+    }
+    spread = spread_of(plant({"river": 60, "well": 40}, train, tolerances=tolerances))
+    doses = ["Dose of Sodium hydroxide"]
+    assert set(doses) < set(spread.follows("train.pre.strength"))
+    assert "Product strength of Sodium hydroxide" in spread.follows("train.pre.strength")
+    assert spread.follows("flow") == doses
+    assert spread.follows("waters.river.analysis.ph") == ["pH of Well"]
+    assert spread.follows("train.post.dose") == []

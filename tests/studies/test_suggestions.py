@@ -115,3 +115,14 @@ def test_suggestions_can_be_taken_over(name):
     assert Scenario.from_dict(raw).tolerances.keys() == found.keys()
     assert {suggestion.source for suggestion in found.values()} == {"common practice"}
     assert all(suggestion.reason for suggestion in found.values())
+
+
+def test_a_held_ph_is_as_good_as_its_meter_whatever_holds_it(plant):
+    """Of other held readouts nothing is usual."""
+    holds = {
+        "waters.well.share": {"readout": "ph", "value": 7.8},
+        "waters.river.analysis.nitrate": {"readout": "nitrate", "value": 15, "high": 60},
+    }
+    found = widths(plant({"river": 60, "well": 40}, holds=holds))
+    assert found["waters.well.share.hold.value"] == {"plus_minus": 0.1}
+    assert "waters.river.analysis.nitrate.hold.value" not in found

@@ -253,3 +253,15 @@ def test_a_histogram_counts_every_answer(blend):
     """Counts over edges, at the operating point."""
     counts, edges = last(blend, samples=256).histogram("ph", bins=12)
     assert (counts.sum(), len(edges)) == (256, 13)
+
+
+def test_a_held_dial_is_swept_by_hand_and_held_at_the_operating_point(plant):
+    """There its readout does not spread; along the sweep it does."""
+    off = {"waters.well.analysis.chloride": {"plus_minus": 10, "unit": "%"}}
+    holds = {"waters.well.share": {"readout": "chloride", "value": 25}}
+    scenario = plant({"river": 60, "well": 40}, tolerances=off, holds=holds)
+    *_, study = tolerance(scenario, "waters.well.share", 0, 100, 5, ["chloride"], samples=64)
+    assert study.here.values["chloride"][:, 0] == pytest.approx(np.full(64, 25.0), abs=1e-6)
+    assert study.here.nominal["chloride"] == pytest.approx([25.0], abs=1e-6)
+    assert np.ptp(study.fan.values["chloride"][:, -1]) > 5
+    assert study.fan.values["chloride"].shape == (64, 5)
