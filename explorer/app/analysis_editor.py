@@ -17,6 +17,7 @@ from explorer.scenario.measured import ENTRY_RULES
 from explorer.scenario.model import Analysis, Measured, Scenario, Water
 from explorer.scenario.words import number_text
 from explorer.treatment.analysis import AnalysisError, entry_units
+from explorer.treatment.analysis.intake import ASSUMED
 from explorer.treatment.units import Units, from_base, units_for
 
 LEVELS = {"info": "", "caution": "caution", "error": "error"}
@@ -303,9 +304,11 @@ def _findings(sheet: Sheet) -> list[Node]:
         for caption, words, look in lines
         for part in (node("span", text=caption), node("span", look, text=words))
     ]
+    # What is assumed is marked in the table below, where it can be changed.
+    said = [note for note in found.notes if note.text != ASSUMED]
     notes = [
         node("li", LEVELS[note.level], text=f"{note.where}: {note.text}", key=f"{sheet.key}:note-{place}")
-        for place, note in enumerate(found.notes)
+        for place, note in enumerate(said)
     ]
     return [node("div", "balance", *grid), node("ul", "findings", *notes)]
 

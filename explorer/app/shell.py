@@ -36,8 +36,8 @@ class Shell:
         self.theme = ThemeSwitch()
         self.options = Options(session, Conflate(pn.state.curdoc))
         self.files = FileDesk(session, tab=tab)
-        self.bar = Bar(session, examples(), self.files.open_example, self.files.new)
         self.rail = Rail(session)
+        self.bar = Bar(session, examples(), self.files.open_example, self._new)
         self.tiles = Tiles(session)
         self.summary = Summary(session)
         self.message = Message(session)
@@ -69,6 +69,12 @@ class Shell:
             "views": self.views.view,
             "foot": self.foot,
         }
+
+    def _new(self) -> None:
+        """A scenario with one water, whose analysis is open to be filled in."""
+        self.files.new()
+        self.rail.desk.open(f"waters.{self.session.scenario.waters[0].id}")
+        self.rail.refresh()
 
     def _meet(self, *events: Any) -> None:
         """In the meeting view the sweep is open, and its plots are large."""

@@ -25,6 +25,9 @@ CLOSING_IONS: dict[str, float] = {"sodium": 1.0, "chloride": -1.0}
 AGREEMENT: dict[str, float] = {"alkalinity": 0.05, "dic": 0.10, "co2": 0.20, "total_hardness": 0.05}
 """Relative difference beyond which a redundant entry contradicts the others (common practice)."""
 
+ASSUMED = "assumed, not measured"
+"""What is noted of an assumed entry."""
+
 READING_TEMPERATURE = "reading_temperature"
 """Key of the alarm for a pH that does not say at which temperature it was read."""
 
@@ -138,7 +141,7 @@ def _read(
         if entry.below is not None and key not in overrides:
             notes.append(Note("info", key, f"below {entry.below:g} {entry.unit}: half the limit is used"))
         if entry.assumed:
-            notes.append(Note("info", key, "assumed, not measured"))
+            notes.append(Note("info", key, ASSUMED))
     if "temperature" not in amounts:
         raise AnalysisError("temperature", "the temperature of the water is missing")
     given = [key for key in CARBONATE_KEYS if key in amounts]
