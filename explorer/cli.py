@@ -19,7 +19,7 @@ from explorer.cli_parts import UsageError, aligned, entered, number, opened, sce
 from explorer.scenario.csv_text import csv_text
 from explorer.scenario.errors import ScenarioError, unknown
 from explorer.scenario.evaluate import Outcome, Stage, evaluate
-from explorer.scenario.files import open_scenario
+from explorer.scenario.files import open_scenario, write_text
 from explorer.scenario.model import Scenario, Target
 from explorer.scenario.readouts import MINUS, READOUTS, format_value, in_words, status
 from explorer.treatment.notes import Note
@@ -169,7 +169,7 @@ def _sweep(options: argparse.Namespace) -> None:
     if options.csv == "-":
         sys.stdout.write(text)
     else:
-        Path(options.csv).write_text(text, encoding="utf-8", newline="")
+        write_text(text, options.csv)
 
 
 def _check(options: argparse.Namespace) -> None:

@@ -14,7 +14,7 @@ import panel as pn
 import param
 
 from explorer.app.live_view import Node, node
-from explorer.app.runner import on_page, page_is_there
+from explorer.app.runner import on_page, page_is_there, when_gone
 from explorer.studies.progress import Stopped, Watch
 
 logger = logging.getLogger(__name__)
@@ -79,6 +79,7 @@ class Errand(param.Parameterized):
         self._order: _Order | None = None
         self._known = ""
         self._tasks: set[asyncio.Task[None]] = set()
+        when_gone(self._document, self._leave)
 
     @property
     def under_way(self) -> bool:
@@ -114,6 +115,12 @@ class Errand(param.Parameterized):
             self._order.unwanted.set()
             self._order = None
         self.param.update(busy=False, stopped=False)
+
+    def _leave(self) -> None:
+        """The page has gone: nothing is wanted any longer, and there is nobody to tell."""
+        if self._order is not None:
+            self._order.unwanted.set()
+            self._order = None
 
     def forget(self) -> None:
         """What is under way is wanted no longer, and what was shown is shown no longer."""

@@ -33,7 +33,6 @@ _KEPT_COPIES = 64
 SEASON = "all year"
 """The season a new scenario begins with."""
 
-_NAME = re.compile(r"[\w\-]{8,40}")
 _FILE = re.compile(r"[\w][\w .()\-]{0,90}\.json")
 
 
@@ -57,9 +56,9 @@ class Shelf:
             self._copies.popitem(last=False)
 
 
-def tab_name(asked: str = "") -> str:
-    """The name a tab asked for if it is one of ours, else a new one that cannot be guessed."""
-    return asked if _NAME.fullmatch(asked) else secrets.token_urlsafe(12)
+def tab_name() -> str:
+    """A new name for a working copy, which cannot be guessed."""
+    return secrets.token_urlsafe(12)
 
 
 @dataclass(frozen=True)
@@ -146,8 +145,8 @@ class FileDesk(JSComponent):
         self._session.replace(blank())
 
     def save(self, wanted: str = "") -> None:
-        """Hand the scenario to the browser as a download. wanted: name of the file, else the one it was opened
-        or saved as, else one of the title."""
+        """Hand the scenario to the browser as a download. wanted: name of the file, else the one it was
+        opened or saved as, else one of the title."""
         session = self._session
         known = wanted.strip() or session.file_name or session.scenario.title
         # the name of a file that was opened is kept letter by letter

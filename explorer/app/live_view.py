@@ -9,6 +9,7 @@ markup: a name from a file cannot become HTML.
 import json
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass, field
+from functools import cache
 from pathlib import Path
 from typing import Any, ClassVar
 
@@ -20,6 +21,13 @@ from explorer.app.text import plain
 FOLDER = Path(__file__).parent
 LONGEST_TEXT = 400
 """Characters of one text on the page; longer ones end in an ellipsis."""
+
+
+@cache
+def style(name: str) -> str:
+    """Content of a style file beside this module; one text for all views of all pages."""
+    return (FOLDER / name).read_text(encoding="utf-8")
+
 
 Handler = Callable[[Any], None]
 """What a node does with the value the page reports: a text, a number, a truth value, or None for a press."""
@@ -110,8 +118,7 @@ class LiveView(JSComponent):
         self._changes: dict[int, dict[str, Any]] = {}
         self._handlers: dict[str, Handler] = {}
         self._serial = self._heard = 0
-        styles = [(FOLDER / name).read_text(encoding="utf-8") for name in self.css]
-        super().__init__(**({"stylesheets": styles} | settings))
+        super().__init__(**({"stylesheets": [style(name) for name in self.css]} | settings))
 
     def describe(self) -> Node:
         """The tree to show now; subclasses say what it is."""

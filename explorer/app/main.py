@@ -29,8 +29,9 @@ def build(path: Path | None = None, asked: str = "", shelf: Shelf = SHELF) -> Sh
     for; unknown names start afresh. A file that cannot be read is said so on the page, which then shows the
     shipped demo.
     """
-    tab = tab_name(asked)
-    work, trouble = shelf.take(tab), ""
+    work, trouble = shelf.take(asked), ""
+    # a name that is not known is not taken over: whoever made a link with it would know the copy
+    tab = tab_name() if work is None else asked
     if work is None:
         work, trouble = _opened(path)
     session = Session(work, runner=Conflate(pn.state.curdoc))

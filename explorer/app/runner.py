@@ -11,6 +11,7 @@ from collections.abc import Callable, Iterator
 from concurrent.futures import ThreadPoolExecutor
 from contextlib import contextmanager
 from typing import Any
+from weakref import WeakSet
 
 from bokeh.document import Document
 from panel.io.document import hold
@@ -22,6 +23,9 @@ POOL = ThreadPoolExecutor(max_workers=2, thread_name_prefix="solve")
 """Shared by all tabs of the server; NumPy lets two calculations overlap."""
 
 LOADING_SECONDS = 60.0
+
+_GONE: WeakSet[Document] = WeakSet()
+"""Documents of pages that have gone for good; nothing may be changed in them."""
 
 
 @contextmanager
@@ -35,21 +39,30 @@ def on_page(document: Document | None) -> Iterator[None]:
         yield
 
 
+def when_gone(document: Document | None, act: Callable[[], None]) -> None:
+    """Call ``act`` once the page of ``document`` has gone for good; never where it is not served."""
+    if document is not None:
+        document.on_session_destroyed(lambda session_context: act())
+
+
 async def page_is_there(document: Document | None) -> bool:
     """Wait until the browser has the page: what changes while it is under way never arrives there.
 
-    False when nobody has come for it.
+    False when nobody has come for it, or it has gone again.
     """
     if document is None:
         return True
+    if document in _GONE:
+        return False
     there = asyncio.Event()
+    when_gone(document, there.set)
     with set_curdoc(document):
         state.onload(there.set)
     try:
         await asyncio.wait_for(there.wait(), LOADING_SECONDS)
     except TimeoutError:
         return False
-    return True
+    return document not in _GONE
 
 
 class Conflate:
@@ -63,6 +76,7 @@ class Conflate:
         self._pool = pool
         self._next: tuple[Callable[[], Any], Callable[[Any], None]] | None = None
         self._task: asyncio.Task[None] | None = None
+        when_gone(document, self._leave)
 
     @property
     def busy(self) -> bool:
@@ -78,6 +92,10 @@ class Conflate:
         self._next = (compute, apply)
         if not self.busy:
             self._task = loop.create_task(self._work_off())
+
+    def _leave(self) -> None:
+        self._next = None
+        _GONE.add(self._document)
 
     async def _work_off(self) -> None:
         while self._next is not None:

@@ -39,6 +39,7 @@ _OS_WORDS = {
     errno.EISDIR: "it is a folder",
     errno.ENOTDIR: "a part of the path is not a folder",
     errno.ENOSPC: "the disk is full",
+    errno.EFBIG: "it would be too large for the disk",
     errno.EDQUOT: "the disk quota is used up",
     errno.EROFS: "the disk is read-only",
     errno.ENAMETOOLONG: "the name is too long",

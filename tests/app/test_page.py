@@ -12,7 +12,7 @@ from bokeh.document import Document
 from bokeh.models import Span
 
 from explorer.app.choosers import default_range
-from explorer.app.files import FileDesk, Shelf, blank, examples, file_name, tab_name
+from explorer.app.files import FileDesk, Shelf, blank, examples, file_name
 from explorer.app.history import Work
 from explorer.app.look import DARK
 from explorer.app.main import build
@@ -289,12 +289,6 @@ def test_shelf_keeps_the_newest_working_copies() -> None:
     assert shelf.take("a") is None
     taken = shelf.take("c")
     assert taken is not works["c"] and taken.scenario.same_as(works["c"].scenario)
-
-
-def test_tab_names_are_ours_or_new() -> None:
-    """A name from an address is taken only if it could be one of ours."""
-    assert tab_name("abcdefgh12345678") == "abcdefgh12345678"
-    assert tab_name("../x") != "../x" and len(tab_name()) >= 12
 
 
 def test_save_marks_the_scenario_as_saved(shell: Shell, monkeypatch: pytest.MonkeyPatch) -> None:

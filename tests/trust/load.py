@@ -2,8 +2,8 @@
 
 Each of many pages, over a websocket of its own, moves a slider again and again: on to a new value, wait for
 the curves of that value, rest. What is told: errors, the time from a move to its curves as the server gives
-them (what a browser needs to draw comes on top), memory of the server, and whether it grows. Linux only: memory
-is read from the process's status.
+them (what a browser needs to draw comes on top), memory of the server, and whether it grows. Only for Linux,
+where memory is read from the process's status.
 """
 
 import argparse
