@@ -1,5 +1,6 @@
 """Invented waters and a builder of scenarios, shared by the specifications of the upper floors."""
 
+import asyncio
 import os
 from collections.abc import Callable, Iterator
 from copy import deepcopy
@@ -133,5 +134,22 @@ def browser() -> Iterator[Any]:
         pytest.skip(f"no browser at {CHROMIUM}")
     with playwright.sync_playwright() as driver:
         chromium = driver.chromium.launch(executable_path=CHROMIUM, args=list(FLAGS))
+        loop = asyncio._get_running_loop()
         yield chromium
+        asyncio._set_running_loop(loop)
         chromium.close()
+
+
+@pytest.hookimpl(wrapper=True)
+def pytest_runtest_protocol(item: pytest.Item) -> Iterator[None]:
+    """The browser's driver keeps an event loop of its own in this thread, which counts as running between two
+    tests as well. A test without a browser is given a thread without one, whatever came before it."""
+    loop = asyncio._get_running_loop()
+    if loop is None or "browser" in getattr(item, "fixturenames", ()):
+        return (yield)
+    asyncio._set_running_loop(None)
+    try:
+        return (yield)
+    finally:
+        # the driver's last word may have been said in the teardown of this very test
+        asyncio._set_running_loop(loop if loop.is_running() else None)
