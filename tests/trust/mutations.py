@@ -187,6 +187,8 @@ def tried(mutants: Iterable[Mutant], progress: bool = False) -> Tally:
                 except Exception as error:  # whatever it is, it is what is looked for
                     tally.outcomes[one.kind]["defect"] += 1
                     tally.defects.append(f"seed {one.seed} ({one.kind}): {type(error).__name__}: {error}")
+                    if progress:
+                        print(tally.defects[-1], file=sys.stderr, flush=True)
                     desk = Desk()
                 tally.seconds.append((time.perf_counter() - began, one.seed))
                 tally.growth.append((peak_memory() - before, one.seed))
