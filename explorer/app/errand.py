@@ -14,7 +14,7 @@ import panel as pn
 import param
 
 from explorer.app.live_view import Node, node
-from explorer.app.runner import on_page, page_is_there, when_gone
+from explorer.app.runner import give_way, on_page, page_is_there, when_gone
 from explorer.studies.progress import Stopped, Watch
 
 logger = logging.getLogger(__name__)
@@ -171,6 +171,7 @@ class Errand(param.Parameterized):
 
     async def _patiently(self, order: _Order, step: Callable[[], _T]) -> _T:
         """The result of ``step``, calculated elsewhere; meanwhile the page is told how far it is."""
+        await give_way()
         future = asyncio.get_running_loop().run_in_executor(self._pool, step)
         while not (await asyncio.wait({future}, timeout=LOOK))[0]:
             if order is self._order and time.monotonic() - order.began > PATIENCE:

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import asyncio
 import logging
+import time
 from collections.abc import Callable, Iterator
 from concurrent.futures import ThreadPoolExecutor
 from contextlib import contextmanager
@@ -23,6 +24,12 @@ POOL = ThreadPoolExecutor(max_workers=2, thread_name_prefix="solve")
 """Shared by all tabs of the server; NumPy lets two calculations overlap."""
 
 LOADING_SECONDS = 60.0
+
+LONGEST_WAY = 2.0
+"""Seconds a step of a long calculation gives way to live ones at most."""
+
+_LIVE: set[Conflate] = set()
+"""Pages whose live calculation is under way or waits for its turn."""
 
 _GONE: WeakSet[Document] = WeakSet()
 """Documents of pages that have gone for good; nothing may be changed in them."""
@@ -65,6 +72,13 @@ async def page_is_there(document: Document | None) -> bool:
     return document not in _GONE
 
 
+async def give_way() -> None:
+    """Wait while live calculations of any page are asked for: they are short, and somebody is at a slider."""
+    end = time.monotonic() + LONGEST_WAY
+    while _LIVE and time.monotonic() < end:
+        await asyncio.sleep(0.01)
+
+
 class Conflate:
     """Runner for one tab, whose results are applied to ``document``.
 
@@ -101,7 +115,11 @@ class Conflate:
         while self._next is not None:
             (compute, apply), self._next = self._next, None
             try:
-                result = await asyncio.get_running_loop().run_in_executor(self._pool, compute)
+                _LIVE.add(self)
+                try:
+                    result = await asyncio.get_running_loop().run_in_executor(self._pool, compute)
+                finally:
+                    _LIVE.discard(self)
                 if not await page_is_there(self._document):
                     return
                 with on_page(self._document):

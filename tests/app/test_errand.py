@@ -8,6 +8,7 @@ import pytest
 
 from explorer.app import errand as errands
 from explorer.app.errand import UNFORESEEN, Errand, progress
+from explorer.app.runner import Conflate
 from explorer.studies.progress import Watch
 
 
@@ -187,3 +188,30 @@ def test_unforeseen_error_is_a_sentence_and_not_a_traceback(caplog: pytest.LogCa
 
     driven(drive)
     assert "secret" in caplog.text
+
+
+def test_long_calculations_give_way_to_live_ones() -> None:
+    """A study begins its next step once the sliders have their answers, of whatever page."""
+    told: list[str] = []
+    held = threading.Event()
+
+    def live() -> None:
+        held.wait()
+        told.append("live")
+
+    def study(watch: Watch) -> Iterator[str]:
+        told.append("study")
+        yield "done"
+
+    async def story() -> None:
+        errand, shown = Errand(), asyncio.Event()
+        Conflate().submit(live, lambda result: None)
+        await asyncio.sleep(0)
+        errand.start(study, lambda result: shown.set(), rest=0.0)
+        await asyncio.sleep(0.1)
+        assert told == []
+        held.set()
+        await shown.wait()
+
+    asyncio.run(story())
+    assert told == ["live", "study"]
