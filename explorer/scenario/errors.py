@@ -9,7 +9,7 @@ from typing import Any
 SHOWN_LENGTH = 40
 """Characters of a foreign text that are quoted in a sentence."""
 
-LISTED_LENGTH = 150
+LISTED_LENGTH = 140
 """Characters of a list of allowed words: beyond, nobody reads it to its end."""
 
 
@@ -29,7 +29,8 @@ def join(path: str, key: str | int) -> str:
     """Path of the part ``key`` (a name, or a position in a list) of what is at ``path``."""
     if isinstance(key, int):
         return f"{path}[{key}]"
-    return f"{path}.{clipped(key)}" if path else clipped(key)
+    name = clipped(key) if key.strip() else f'"{clipped(key)}"'
+    return f"{path}.{name}" if path else name
 
 
 def cleaned(text: str) -> str:

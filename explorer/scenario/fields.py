@@ -197,7 +197,7 @@ class Amounts(Number):
             yield "", fault
             return
         for name, number in value.items():
-            if fault := self.single_fault(number):
+            if fault := text_fault(name, NAME_LENGTH) or self.single_fault(number):
                 yield f".{clipped(name)}", fault
 
 

@@ -283,7 +283,8 @@ def _additions(data: Mapping[str, Any], extra_components: Mapping[str, float]) -
         elif key in extra_components:
             charge += moles * extra_components[key]
         else:
-            allowed = ", ".join([*COMPONENT, *extra_components])
+            some = ", ".join(list(COMPONENT)[:6])
+            allowed = f"{some} and the other components of a water, own acids by their id"
             raise ChemicalError(f"adds.{key}", f"is nothing a water can hold; allowed: {allowed}")
     if abs(totals.get("alkalinity", charge) - charge) > _CHARGE_TOLERANCE:
         raise ChemicalError("adds.alkalinity", f"does not fit the charge of the rest; allowed: {charge:g}")

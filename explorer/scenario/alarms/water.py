@@ -71,8 +71,9 @@ def charge_balance(outcome: "Outcome") -> Iterator[Finding]:
 
 def not_carbonate(outcome: "Outcome") -> Iterator[Finding]:
     for stage in blended(outcome):
-        other = 1 - stage.readout("carbonate_alkalinity") / stage.readout("alkalinity")
-        points = (other > NOT_CARBONATE) & (stage.readout("alkalinity") > 0)
+        alkalinity = stage.readout("alkalinity")
+        other = 1 - stage.readout("carbonate_alkalinity") / np.where(alkalinity > 0, alkalinity, np.nan)
+        points = other > NOT_CARBONATE
         if points.any():
             text = (
                 f"{100 * np.max(other[points]):.0f} % of the alkalinity is not carbonate (silicate, borate,"
