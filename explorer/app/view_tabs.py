@@ -4,42 +4,48 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
-from importlib import import_module
 from typing import Any
 
 import panel as pn
 
+from explorer.app.basis_view import BasisView
+from explorer.app.compare_view import CompareView
+from explorer.app.ledger_view import LedgerView
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import LIGHT, VIEW_HOST_CSS, VIEW_STYLES, Palette
+from explorer.app.quantities_view import QuantitiesView
 from explorer.app.state import Session
+from explorer.app.sweep_view import SweepView
+from explorer.app.titration_view import TitrationView
+from explorer.app.tolerance_view import ToleranceView
 from explorer.app.view import View
+from explorer.app.window_view import WindowView
 
 
 @dataclass(frozen=True)
 class Kind:
-    """A view there is: its key and title, and where its class is found (imported when it is first opened)."""
+    """A view there is: its key and title, and what makes it."""
 
     key: str
     title: str
-    module: str
-    name: str
-
-    def build(self, session: Session) -> View:
-        """A new view of this kind."""
-        return getattr(import_module(f"explorer.app.{self.module}"), self.name)(session)
+    build: Callable[[Session], View]
 
 
 KINDS = (
-    Kind("sweep", "Sweep", "sweep_view", "SweepView"),
-    Kind("window", "Window", "window_view", "WindowView"),
-    Kind("tolerance", "Tolerance", "tolerance_view", "ToleranceView"),
-    Kind("titration", "Titration", "titration_view", "TitrationView"),
-    Kind("compare", "Compare", "compare_view", "CompareView"),
-    Kind("ledger", "Ledger", "ledger_view", "LedgerView"),
-    Kind("quantities", "Quantities", "quantities_view", "QuantitiesView"),
-    Kind("basis", "Basis", "basis_view", "BasisView"),
-)  # fmt: skip
-"""Views in the order of their tabs; the first is open at first."""
+    Kind("sweep", "Sweep", SweepView),
+    Kind("window", "Window", WindowView),
+    Kind("tolerance", "Tolerance", ToleranceView),
+    Kind("titration", "Titration", TitrationView),
+    Kind("compare", "Compare", CompareView),
+    Kind("ledger", "Ledger", LedgerView),
+    Kind("quantities", "Quantities", QuantitiesView),
+    Kind("basis", "Basis", BasisView),
+)
+"""Views in the order of their tabs; the first is open at first.
+
+Their modules are loaded with this one: a component whose class is made while a page is connected is sent to
+it with its class, which that page cannot send back.
+"""
 
 
 class TabBar(LiveView):
