@@ -231,7 +231,8 @@ class CompareView(View):
         look = "pane stale" if self.session.stale else "pane"
         side_by_side = self.table
         if side_by_side is None:
-            words = "There is no result yet." if self.session.point is None else ""
+            none = "There is no result yet."
+            words = none if self.session.point is None else "The cases are being calculated …"
             return node("div", look, node("p", "nothing", text=words))
         if len(side_by_side.cases) < 2:
             return node("div", look, node("div", "card", node("p", "nothing", text=HOW)))

@@ -14,6 +14,7 @@ from explorer.app.live_view import Node, node
 from explorer.app.pickers import Act, Choice, picker
 from explorer.app.text import compact, in_sentence, plain, unit_text
 from explorer.scenario.dials import Dial, fine_step
+from explorer.scenario.editing import tidy
 from explorer.scenario.errors import ScenarioError
 from explorer.scenario.holding import (
     Holding,
@@ -289,6 +290,7 @@ def _trial(desk: Desk, draft: Holding, stands: float) -> str:
     trial = desk.scenario.copy()
     try:
         _apply(trial, draft, stands)
+        tidy(trial)
         Scenario.from_dict(trial.to_dict())
     except ScenarioError as error:
         return error.message

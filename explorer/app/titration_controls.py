@@ -25,7 +25,7 @@ NOTHING = ""
 class TitrationControls(LiveView):
     """Changes what the titration view shows; nothing of it belongs to the scenario.
 
-    now: what is shown, None without a result. keep: takes another setting.
+    now: what is shown, None without a result. keep: takes another setting. waiting: nothing is shown yet.
     """
 
     css = (*VIEW_STYLES, "measured.css")
@@ -41,6 +41,7 @@ class TitrationControls(LiveView):
         self.session, self.measured = session, measured
         self.now, self.keep = now, keep
         self.refusal = ""
+        self.waiting = True
         self.entries = Entries()
         super().__init__(sizing_mode="stretch_width", **settings)
 
@@ -54,6 +55,7 @@ class TitrationControls(LiveView):
             node("div", "group", node("span", text="+"), *self._chemical(now)),
             node("div", "group", node("span", text=MINUS), *self._opposite(now)),
             *self._range(now), self._unit(now),
+            node("span", text="The curve is being calculated …" if self.waiting else "", role="status"),
             node("span", "push"), *self.measured.nodes(),
             node("span", "gap", text=self.refusal, role="status"),
         )  # fmt: skip

@@ -131,7 +131,7 @@ class TitrationView(View):
     def show(self) -> None:
         """Bring the plots to what was found last; after a refusal they stay as they are."""
         found = self.found
-        self.controls.refusal = found.refusal
+        self.controls.refusal, self.controls.waiting = found.refusal, False
         self.controls.refresh()
         if found.curve is None or found.species is None:
             return

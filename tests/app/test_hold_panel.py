@@ -271,6 +271,15 @@ def test_a_dose_may_hold_a_readout_further_on() -> None:
     assert rail.desk.scenario.step(step).hold.value == 8.3 and not rail.desk.scenario.holds
 
 
+def test_a_dose_with_a_tolerance_is_held_too() -> None:
+    """The tolerance of its pump goes: a held dose is what it takes, whatever the pump does."""
+    rail = rail_of()
+    assert "train.hypo.dose" in rail.desk.scenario.tolerances
+    hold(rail, "train.hypo.dose", value="7.5")
+    assert rail.desk.scenario.step("hypo").hold.value == 7.5
+    assert "train.hypo.dose" not in rail.desk.scenario.tolerances
+
+
 def test_a_dose_needs_a_limit() -> None:
     """It has none of its own."""
     rail, dose = with_caustic()

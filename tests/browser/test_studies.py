@@ -1,9 +1,15 @@
 """Tabs, window, tolerances and band in a real browser."""
 
+import json
+import re
 from collections.abc import Callable
+from importlib import import_module
+from pathlib import Path
 from typing import Any
 
 import pytest
+
+from explorer.scenario.shipped import shipped
 
 pytestmark = pytest.mark.browser
 
@@ -34,12 +40,23 @@ def tip(screen: Any) -> str:
     return screen.page.evaluate(TIP)
 
 
+LOCATION = """() => {
+  for (const model of Bokeh.documents[0]._all_models.values())
+    if (model.type === "Span" && model.editable) return model.location
+}"""
+
+
+def location(screen: Any) -> float:
+    """Where the operating point stands on the x axis."""
+    return screen.page.evaluate(LOCATION)
+
+
 def tab(screen: Any, title: str) -> Any:
     return screen.page.get_by_role("tab", name=title, exact=True)
 
 
 def share(screen: Any) -> Any:
-    return screen.page.get_by_role("textbox", name="Share of Granite Wellfield")
+    return screen.page.get_by_role("textbox", name=re.compile("^Share of Granite Wellfield"))
 
 
 def mapped(screen: Any) -> None:
@@ -227,3 +244,181 @@ def test_band_lies_around_the_curves_and_can_be_switched_off(screen: Any) -> Non
         screen.until(lambda plot=plot: len(column(screen, plot, "Patches", "xs")) == 1, f"a band in {plot}")
     screen.page.get_by_label("Band of outcomes around the curves").select_option("0")
     screen.until(lambda: column(screen, "ph", "Patches", "xs") == [], "no band")
+
+
+def test_view_that_another_page_opened_first_opens_here_too(new_screen: Callable[..., Any]) -> None:
+    """Both pages were loaded before either opened it."""
+    first, second = new_screen(), new_screen()
+    for screen in (second, first):
+        tab(screen, "Window").click()
+        mapped(screen)
+
+
+# ---- left and come back to ---------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize(
+    ("title", "there"),
+    [
+        ("Window", lambda screen: len(column(screen, "window", "MultiPolygons", "hatch")) == 2),
+        ("Tolerance", lambda screen: screen.page.get_by_text("16 times the samples").count() == 1),
+        ("Titration", lambda screen: screen.curves("titration-ph")),
+        ("Compare", lambda screen: screen.curves("overlay")),
+        ("Basis", lambda screen: screen.page.get_by_text("Data and charge balance").count() == 1),
+    ],
+)
+def test_study_that_is_come_back_to_is_not_calculated_again(
+    screen: Any,
+    title: str,
+    there: Callable[[Any], Any],
+    monkeypatch: pytest.MonkeyPatch,
+    tmp_path: Path,
+) -> None:
+    """What it showed stands at once; in another season it is calculated anew."""
+    runs: list[str] = []
+    few_tolerances(screen, tmp_path)
+    counted(monkeypatch, runs)
+    tab(screen, title).click()
+    screen.until(lambda: there(screen), "the study")
+    screen.page.wait_for_timeout(800)
+    before = len(runs)
+    assert before > 0
+    for _ in range(2):
+        tab(screen, "Ledger").click()
+        screen.page.get_by_text("The lines add up").wait_for()
+        tab(screen, title).click()
+        screen.until(lambda: there(screen), "the study as it was")
+    screen.page.wait_for_timeout(900)
+    assert len(runs) == before
+    tab(screen, "Ledger").click()
+    summer = screen.page.get_by_role("button", name="summer", exact=True)
+    summer.click()
+    screen.until(lambda: summer.get_attribute("aria-pressed") == "true", "summer")
+    tab(screen, title).click()
+    screen.until(lambda: len(runs) > before, "a new calculation")
+    screen.until(lambda: there(screen), "the study of the summer")
+
+
+def few_tolerances(screen: Any, folder: Path) -> None:
+    """Open the shipped demo with two tolerances alone, whose study is soon done."""
+    raw = json.loads(shipped()["amber"].read_text(encoding="utf-8"))
+    raw["title"] = "Few"
+    raw["tolerances"] = {f"waters.{water}.analysis.ph": {"plus_minus": 0.1} for water in ("river", "well")}
+    path = folder / "few.json"
+    path.write_text(json.dumps(raw), encoding="utf-8")
+    screen.page.locator("input[type=file]").first.set_input_files(path)
+    screen.until(lambda: "Few" in screen.page.title(), "the opened file")
+
+
+def counted(monkeypatch: pytest.MonkeyPatch, runs: list[str]) -> None:
+    """Note every calculation of a study that a view begins."""
+    for module, name in (
+        ("window_view", "window"),
+        ("tolerance_view", "survey"),
+        ("titration_view", "worked_out"),
+        ("compare_view", "compare"),
+        ("basis_view", "gathered"),
+    ):
+        place = import_module(f"explorer.app.{module}")
+        monkeypatch.setattr(place, name, noting(getattr(place, name), runs))
+
+
+def noting(original: Callable[..., Any], runs: list[str]) -> Callable[..., Any]:
+    """The same function, which notes that it was called."""
+
+    def noted(*arguments: Any, **more: Any) -> Any:
+        runs.append(original.__name__)
+        return original(*arguments, **more)
+
+    return noted
+
+
+# ---- holds -------------------------------------------------------------------------------------------------
+
+
+def test_share_is_held_seen_and_released(screen: Any) -> None:
+    """The mark beside the dial opens the form; held, the dial is at rest and the plots stay with it."""
+    page = screen.page
+    page.get_by_role("button", name="Hold a readout with this dial: Share of Granite Wellfield").click()
+    held = page.get_by_role("textbox", name="Held calcium carbonate precipitation potential")
+    held.fill("much")
+    held.press("Enter")
+    screen.until(lambda: page.get_by_text("“much” is not a number").count() == 1, "the refusal")
+    page.get_by_role("button", name="Hold", exact=True).click()
+    screen.until(lambda: page.get_by_text("a field above has to be mended first").count() == 1, "no hold yet")
+    held.fill("-7")
+    held.press("Enter")
+    page.get_by_role("button", name="Hold", exact=True).click()
+    page.get_by_text("holds CCPP −7.0").wait_for()
+    screen.until(lambda: screen.tile("Calcium carbonate") == "−7.0", "the held potential")
+    assert share(screen).is_disabled()
+    part = float(share(screen).input_value()) / 100
+    place = location(screen)
+    assert place == pytest.approx(100 * part, abs=0.01)
+    screen.drag("ph", part, 0.8)
+    page.get_by_text("release the hold to set it by hand").wait_for()
+    screen.until(lambda: location(screen) == pytest.approx(place, abs=0.01), "the point back in its place")
+    page.get_by_role("button", name="This dial holds CCPP").click()
+    page.get_by_role("button", name="Release").click()
+    screen.until(lambda: not share(screen).is_disabled(), "the dial by hand")
+    assert float(share(screen).input_value()) == pytest.approx(100 * part, abs=0.01)
+    page.get_by_role("button", name="Undo").click()
+    page.get_by_text("holds CCPP −7.0").wait_for()
+    page.get_by_role("button", name="Undo").click()
+    screen.until(lambda: share(screen).input_value().startswith("40"), "the share as it was")
+    assert page.get_by_text("holds CCPP").count() == 0
+
+
+def test_dose_and_share_are_held_by_the_same_form(screen: Any) -> None:
+    """Both together; what cannot be reached is told with the best that can; the basis lists both."""
+    page = screen.page
+    for dial, value in (("Share of Granite Wellfield", "-6"), ("Dose of Sodium hypochlorite", "9.5")):
+        page.get_by_role("button", name=f"Hold a readout with this dial: {dial}").click()
+        held = page.get_by_role("textbox", name=re.compile("^Held "))
+        held.fill(value)
+        held.press("Enter")
+        page.get_by_role("button", name="Hold", exact=True).click()
+        page.get_by_role("button", name="Hold", exact=True).wait_for(state="detached")
+    page.get_by_text("▲ cannot be reached").first.wait_for()
+    assert page.get_by_role("textbox", name=re.compile("^Dose of Sodium hypochlorite")).is_disabled()
+    tab(screen, "Basis").click()
+    table = page.get_by_role("region", name="Holds: what is computed, and what it holds")
+    table.wait_for()
+    rows = table.get_by_role("row").all_inner_texts()
+    assert any("Dose of Sodium hypochlorite" in row and "pH 9.50" in row for row in rows)
+    assert any("Share of Granite Wellfield" in row and "−6.0 mg/L as CaCO3" in row for row in rows)
+
+
+# ---- tolerances that are more than a half-width ------------------------------------------------------------
+
+
+def test_distribution_sides_unit_and_common_cause_are_entered_in_the_table(screen: Any) -> None:
+    """Each in its column; the picture follows; errors that move others say so."""
+    page = screen.page
+    tab(screen, "Tolerance").click()
+    page.get_by_role("button", name="The tolerances themselves").click()
+    line = page.get_by_role("row", name="pH of Granite Wellfield")
+    line.get_by_label("Distribution").select_option("normal")
+    line.get_by_label("One or both sides").select_option("sides")
+    upwards = line.get_by_role("textbox", name="Width upwards")
+    upwards.fill("0.3")
+    upwards.press("Enter")
+    line.get_by_label("Unit").select_option("%")
+    screen.until(lambda: upwards.input_value().startswith("4.1"), "the widths in percent of 7.25")
+    for label in ("pH of Granite Wellfield", "pH of Fern River"):
+        word = page.get_by_role("textbox", name=f"Together as, {label}")
+        word.fill("one meter")
+        word.press("Enter")
+    screen.until(lambda: page.get_by_text("moves along: pH of Fern River").count() == 1, "the common cause")
+    adder = page.get_by_role("button", name="+ Add a dial")
+    adder.click()
+    page.keyboard.type("flow of the blend")
+    page.keyboard.press("Enter")
+    moved = page.get_by_role("row", name="Flow of the blend").get_by_text("moves along: dose of Sodium")
+    moved.wait_for()
+    page.get_by_role("button", name="What the tolerances do").click()
+    screen.until(lambda: len(column(screen, "fan", "Patches", "xs")) == 2, "a fan")
+    asked = page.get_by_role("textbox", name="How near ")
+    asked.fill("0.5")
+    asked.press("Enter")
+    screen.until(lambda: page.get_by_text("(now −8.5)").count() == 1, "how far a dial may be off")
