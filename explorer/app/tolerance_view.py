@@ -181,7 +181,7 @@ class ToleranceView(View):
             self.head.refresh()
         if "point" in changed or changed & {"structure", "choices"}:
             self._refresh_table()
-            self.allowed.follow(0.0 if "choices" in changed else REST)
+            self.allowed.follow()
             self._calculate(rest=0.0 if "choices" in changed else REST)
         self._show_fan()
         self._dim()

@@ -1,15 +1,11 @@
 """Tabs, window, tolerances and band in a real browser."""
 
-import json
 import re
 from collections.abc import Callable
 from importlib import import_module
-from pathlib import Path
 from typing import Any
 
 import pytest
-
-from explorer.scenario.shipped import shipped
 
 pytestmark = pytest.mark.browser
 
@@ -261,7 +257,6 @@ def test_view_that_another_page_opened_first_opens_here_too(new_screen: Callable
     ("title", "there"),
     [
         ("Window", lambda screen: len(column(screen, "window", "MultiPolygons", "hatch")) == 2),
-        ("Tolerance", lambda screen: screen.page.get_by_text("16 times the samples").count() == 1),
         ("Titration", lambda screen: screen.curves("titration-ph")),
         ("Compare", lambda screen: screen.curves("overlay")),
         ("Basis", lambda screen: screen.page.get_by_text("Data and charge balance").count() == 1),
@@ -272,11 +267,9 @@ def test_study_that_is_come_back_to_is_not_calculated_again(
     title: str,
     there: Callable[[Any], Any],
     monkeypatch: pytest.MonkeyPatch,
-    tmp_path: Path,
 ) -> None:
     """What it showed stands at once; in another season it is calculated anew."""
     runs: list[str] = []
-    few_tolerances(screen, tmp_path)
     counted(monkeypatch, runs)
     tab(screen, title).click()
     screen.until(lambda: there(screen), "the study")
@@ -299,22 +292,10 @@ def test_study_that_is_come_back_to_is_not_calculated_again(
     screen.until(lambda: there(screen), "the study of the summer")
 
 
-def few_tolerances(screen: Any, folder: Path) -> None:
-    """Open the shipped demo with two tolerances alone, whose study is soon done."""
-    raw = json.loads(shipped()["amber"].read_text(encoding="utf-8"))
-    raw["title"] = "Few"
-    raw["tolerances"] = {f"waters.{water}.analysis.ph": {"plus_minus": 0.1} for water in ("river", "well")}
-    path = folder / "few.json"
-    path.write_text(json.dumps(raw), encoding="utf-8")
-    screen.page.locator("input[type=file]").first.set_input_files(path)
-    screen.until(lambda: "Few" in screen.page.title(), "the opened file")
-
-
 def counted(monkeypatch: pytest.MonkeyPatch, runs: list[str]) -> None:
     """Note every calculation of a study that a view begins."""
     for module, name in (
         ("window_view", "window"),
-        ("tolerance_view", "survey"),
         ("titration_view", "worked_out"),
         ("compare_view", "compare"),
         ("basis_view", "gathered"),
