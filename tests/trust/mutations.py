@@ -113,10 +113,10 @@ class Desk:
         return refused.removeprefix("hostile.json was not opened: ")
 
 
-def evaluated(scenario: Scenario, season: str) -> str:
-    """Why a season has no answer, "" where it has one. Raises what an evaluation must not raise."""
+def evaluated(scenario: Scenario) -> str:
+    """Why a scenario has no answer, "" where it has one. Raises what an evaluation must not raise."""
     try:
-        outcome = evaluate(scenario, season=season)
+        outcome = evaluate(scenario)
     except ScenarioError as error:
         return str(error)
     for key in READOUTS:
@@ -124,40 +124,31 @@ def evaluated(scenario: Scenario, season: str) -> str:
         if np.isinf(value) or (np.isnan(value) and not str(outcome.reasons(readout=key))):
             raise Defect(f"{key} is {value} without a reason")
     _ = outcome.notes, outcome.held, outcome.targets()
-    sweep(scenario, points=3, season=season).outcome.readout("ph")
+    sweep(scenario, points=3).outcome.readout("ph")
     return ""
 
 
 def judged(content: bytes, desk: Desk, folder: Path) -> tuple[str, str]:
     """What becomes of a file, and the sentence. Raises Defect where that is not as it must be."""
-    try:
-        scenario: Scenario | None = read_scenario(content)
-        refused = ""
-    except ScenarioError as error:
-        scenario, refused = None, str(error)
     status, told = check(content, folder)
-    opened = desk.open(content)
-    if scenario is None:
+    if fault := told and clear_sentence(told):
+        raise Defect(f"{fault}: {told}")
+    if refused := desk.open(content):
         # the page refuses what is too large before it arrives, in its own words
-        agree = opened == refused or len(content) > LARGEST_FILE
-        if status != cli.USER_ERROR or told != " ".join(refused.split()) or not (opened and agree):
-            raise Defect(f"check says {told!r}, the page {opened!r}, the reader {refused!r}")
-        if fault := clear_sentence(refused):
-            raise Defect(f"{fault}: {refused}")
+        agree = " ".join(refused.split()) == told or len(content) > LARGEST_FILE
+        if status != cli.USER_ERROR or not agree or clear_sentence(refused):
+            raise Defect(f"check says {told!r}, the page {refused!r}")
         return REFUSED, refused
-    if opened:
-        raise Defect(f"the page refuses what check takes: {opened}")
+    scenario = desk.session.scenario
     text = dumps(scenario)
     again = read_scenario(text)
     if dumps(again) != text or again.to_dict() != scenario.to_dict():
         raise Defect("it is not written as it was read")
-    missing = {season: evaluated(scenario, season) for season in scenario.seasons}
-    first = next(filter(None, missing.values()), "")
-    if told != first or bool(status) != bool(first) or desk.session.message != missing[scenario.season]:
-        raise Defect(f"check says {told!r}, the page {desk.session.message!r}, the evaluation {missing}")
-    if first and (fault := clear_sentence(first)):
-        raise Defect(f"{fault}: {first}")
-    return (NO_ANSWER if first else TAKEN), first
+    missing = evaluated(scenario)
+    # check looks at every season, the page at the one it shows
+    if desk.session.message != missing or (missing and not status):
+        raise Defect(f"check says {told!r}, the page {desk.session.message!r}, the evaluation {missing!r}")
+    return (NO_ANSWER if status else TAKEN), told
 
 
 @dataclass
