@@ -37,6 +37,7 @@ from explorer.scenario.evaluate import Outcome
 from explorer.scenario.holding import Holding, holdings, resting
 from explorer.scenario.model import Scenario, SweepSetting
 from explorer.scenario.outcome import FINISHED
+from explorer.studies.sweep import Sweep
 
 MERGE_SECONDS = 0.8
 """Turns of one dial that follow each other faster than this are one undo step."""
@@ -143,6 +144,12 @@ class Session(param.Parameterized):
             self._held = every, {key: hold for key, hold in every.items() if key not in rests}
         return self._held
 
+    @property
+    def swept_here(self) -> Sweep | None:
+        """The sweep, None while there is none or only that of a scenario whose dial is no longer there: the
+        results of an opened scenario are on their way."""
+        return self.swept if self.swept is not None and self.swept.address in self.dials else None
+
     def value(self, address: str) -> float:
         """Current value of the dial at ``address``: as entered, or as computed where it is held or a share
         beside a held one (nan without a result). Raises KeyError for an unknown one."""
@@ -180,16 +187,17 @@ class Session(param.Parameterized):
     def turn_along(self, x: float) -> None:
         """The operating point was moved to ``x`` of a plot over the swept dial: turn the dial to the nearest
         step within its bounds."""
-        if self.swept is None:
+        swept = self.swept_here
+        if swept is None:
             return
-        refused = self.turn(self.swept.address, self.swept.dial.nearest(x))
+        refused = self.turn(swept.address, swept.dial.nearest(x))
         if refused:
             self.message = refused
 
     def step_along(self, steps: int) -> None:
         """Move the operating point along the sweep by hundredths of its range, or steps of its dial."""
-        swept = self.swept
-        if swept is not None and swept.address in self.dials:
+        swept = self.swept_here
+        if swept is not None:
             one = max(abs(float(swept.x[-1] - swept.x[0])) / 100, swept.dial.step)
             self.turn_along(self.value(swept.address) + steps * one)
 

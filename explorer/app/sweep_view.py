@@ -83,9 +83,9 @@ class SweepView(View):
 
     def show(self) -> None:
         """Bring the plots to the session's sweep."""
-        swept = self.session.swept
-        if swept is None or swept.address not in self.session.dials:
-            return  # another scenario: its sweep is on the way
+        swept = self.session.swept_here
+        if swept is None:
+            return
         pictures, along = self.pictures()
         self.plots.set_axis(along)
         self.plots.show(pictures, along)

@@ -216,7 +216,7 @@ class ToleranceView(View):
 
     def _show_fan(self) -> None:
         """The curve of the session's sweep with the fan that is known of it."""
-        swept = self.session.swept
+        swept = self.session.swept_here
         if swept is None:
             return
         picture, along = self.picture(), swept_axis(swept)

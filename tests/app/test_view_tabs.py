@@ -78,3 +78,32 @@ def test_view_built_in_the_dark_is_dark(shell: Shell) -> None:
     """The palette reaches views that come later."""
     shell.views.restyle(DARK)
     assert shell.views["window"].palette is DARK
+
+
+class Later:
+    """A runner that waits until it is told to work, as the page's does while a calculation runs."""
+
+    def __init__(self) -> None:
+        self.waiting = []
+
+    def submit(self, compute, apply) -> None:
+        self.waiting = [(compute, apply)]
+
+    def work(self) -> None:
+        for compute, apply in self.waiting:
+            apply(compute())
+        self.waiting = []
+
+
+@pytest.mark.parametrize("key", KEYS)
+def test_a_view_is_opened_while_the_results_of_an_opened_file_are_on_their_way(key: str) -> None:
+    """The results still there are of a scenario whose dials have gone; the view waits for its own."""
+    shell = build(shipped()["amber"], shelf=Shelf())
+    runner = shell.session.runner = Later()
+    shell.session.replace(open_scenario(shipped()["moss"]), "moss.json")
+    shell.views.open(key)
+    before = shell.session.scenario.to_dict()
+    shell.session.turn_along(50)
+    assert shell.session.scenario.to_dict() == before
+    runner.work()
+    assert shell.views.shown == key and shell.session.swept_here is shell.session.swept
