@@ -45,7 +45,7 @@ class QuantitiesView(SheetView):
             "div", look,
             node("div", "controls", *self._settings(), node("span", "push"),
                  csv_button(self.session, "quantities", found.table)),
-            node("div", "sections", *cards),
+            node("div", "sections grow", *cards),
         )  # fmt: skip
 
     def _found(self) -> Quantities | str:
@@ -157,7 +157,7 @@ class QuantitiesView(SheetView):
                 )
                 for solid in solids
             ]
-            heading = ["", over("In the water", "mg/L"), over("A day", "kg/d"), over("A year", "t/year")]
+            heading = ["Solid", over("In the water", "mg/L"), over("A day", "kg/d"), over("A year", "t/year")]
             yield _card("Dry solids formed", table("Dry solids formed", heading, rows))
         if found.notes:
             said = [plain(note.text, 200) for note in found.notes]
@@ -167,7 +167,7 @@ class QuantitiesView(SheetView):
     def _chemicals(self, found: Quantities) -> Node:
         money = plain(found.currency, 12) or "cost"
         heading: list[Cell] = [
-            "", over("Dose", "as entered"), over("Active", "kg/d"), over("Product", "kg/d"),
+            "Step", over("Dose", "as entered"), over("Active", "kg/d"), over("Product", "kg/d"),
             over("Product", "t/year"), over("Price", f"{money} per kg"), over("Cost", f"{money} per ML"),
             over("Cost", f"{money} per year"),
         ]  # fmt: skip
@@ -187,7 +187,7 @@ class QuantitiesView(SheetView):
 
     def _pumps(self, found: Quantities) -> Node:
         heading: list[Cell] = [
-            "", over("Strength", "% by mass"), over("Density", "kg/L"), over("Least", "L/h"),
+            "Step", over("Strength", "% by mass"), over("Density", "kg/L"), over("Least", "L/h"),
             over("Now", "L/h"), over("Most", "L/h"), over("Turndown", "most to least"), over("Tank", "m³"),
             over("Lasts", "days"),
         ]  # fmt: skip

@@ -19,7 +19,7 @@ from explorer.scenario.model import Scenario, Tolerance
 from explorer.studies.spread import spread_of
 from explorer.studies.suggestions import SOURCE, Suggestion, suggested_tolerance, suggested_tolerances
 
-HEADING = ("What may be off", "Stands at", "", "By", "Unit", "Distribution", "Together as", "")
+HEADING = ("What may be off", "Stands at", "Sides", "By", "Unit", "Distribution", "Together as", "Remove")
 WORDS = (0, 2, 3, 4, 5, 6, 7)
 
 SAME, SIDES = "same", "sides"
