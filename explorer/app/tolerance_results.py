@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from typing import Any
 
 import numpy as np
 
+from explorer.app.errand import Errand, progress
 from explorer.app.live_view import LiveView, Node, node
 from explorer.app.look import STUDY_STYLES
 from explorer.app.state import Session
@@ -14,11 +15,14 @@ from explorer.app.tables import Row, csv_button, table
 from explorer.app.text import compact, in_sentence, plain, unit_text
 from explorer.scenario.readouts import READOUTS, Readout, format_value
 from explorer.scenario.words import brief_label, number_text, range_text
+from explorer.studies.convergence import MORE, Convergence, convergence
 from explorer.studies.corners import Extreme
+from explorer.studies.progress import Watch
 from explorer.studies.ranking import Rank, Ranking
 from explorer.studies.spread import Input
 from explorer.studies.spread_pictures import MOST_PERCENT, chance_text
 from explorer.studies.spread_survey import Survey
+from explorer.studies.tolerance import ToleranceStudy
 
 PENDING = "…"
 NO_TARGETS = "No targets are entered. Press a readout tile above to enter its target."
@@ -40,7 +44,13 @@ class Card(LiveView):
 
 
 class Figures(Card):
-    """Chances of meeting the targets, and extremes."""
+    """Chances of meeting the targets, and extremes; when asked, what many more samples would say."""
+
+    def __init__(self, session: Session, found: Found, **settings: Any) -> None:
+        self.errand = Errand()
+        self._settled: tuple[ToleranceStudy, Convergence] | None = None
+        super().__init__(session, found, **settings)
+        self.errand.param.watch(lambda *events: self.refresh(), ["busy", "part", "stopped", "refusal"])
 
     def describe(self) -> Node:
         found = self.found()
@@ -76,7 +86,7 @@ class Figures(Card):
         rows = [
             Row(["nothing off", _value(readout, float(here.nominal[readout.key][0])), ""]),
             Row([f"{MOST_PERCENT:g} % of the outcomes", _value(readout, low), _value(readout, high)]),
-            *self._settled(readout, found),
+            *self._many_more(readout, found),
             Row(["everything at its worst, here", *self._pair(readout, found.here, place=False)]),
             Row(["… anywhere on the sweep", *self._pair(readout, found.anywhere, place=True)]),
         ]
@@ -88,13 +98,32 @@ class Figures(Card):
             parts.append(_corner("What is off at the worst place", found.anywhere, study.inputs))
         return parts
 
-    def _settled(self, readout: Readout, found: Survey) -> list[Row]:
-        """The same from many more samples: whether these have been enough."""
-        settled = found.settled
-        if settled is None:
-            return [Row(["… with ten times the samples", PENDING, PENDING])] if found.study.final else []
-        words = f"… with {settled.more // settled.samples} times the samples"
-        return [Row([words, _value(readout, settled.many[0]), _value(readout, settled.many[-1])])]
+    def _many_more(self, readout: Readout, found: Survey) -> list[Row]:
+        """The same from many more samples, or the button that asks for them once these are all there."""
+        if not found.study.final:
+            return []
+        if self._settled is not None and self._settled[0] is found.study:
+            settled = self._settled[1]
+            words = f"… with {settled.more // settled.samples} times the samples"
+            return [Row([words, _value(readout, settled.many[0]), _value(readout, settled.many[-1])])]
+        ask = node(
+            "button", "link", text=f"… with {MORE} times the samples?", key="more", type="button",
+            on=lambda value: self._ask(found), title="Would many more samples say the same?",
+        )  # fmt: skip
+        how_far = progress(self.errand, lambda: self._ask(found), "Progress of the further samples")
+        return [Row([ask, how_far, None])]
+
+    def _ask(self, found: Survey) -> None:
+        scenario, study, key = self.session.solved, found.study, found.readout
+
+        def work(watch: Watch) -> Iterator[tuple[ToleranceStudy, Convergence]]:
+            yield study, convergence(scenario, [key], study.samples, study.seed, watch=watch)[key]
+
+        self.errand.start(work, self._take, rest=0.0)
+
+    def _take(self, settled: tuple[ToleranceStudy, Convergence]) -> None:
+        self._settled = settled
+        self.refresh()
 
     def _pair(self, readout: Readout, pair: tuple[Extreme, Extreme] | None, place: bool) -> list[str | Node]:
         if pair is None:

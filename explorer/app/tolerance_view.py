@@ -165,6 +165,7 @@ class ToleranceView(View):
         super().closed()
         self.errand.drop()
         self.allowed.drop()
+        self.figures.errand.drop()
 
     def again(self) -> None:
         """Begin the survey anew."""

@@ -4,7 +4,6 @@ from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
 from explorer.scenario.model import Scenario
-from explorer.studies.convergence import Convergence, convergence
 from explorer.studies.corners import Extreme, extremes, worst
 from explorer.studies.progress import UNWATCHED, Watch
 from explorer.studies.ranking import Ranking, ranking
@@ -13,16 +12,14 @@ from explorer.studies.tolerance import USUAL_SAMPLES, USUAL_SEED, ToleranceStudy
 POINTS = 61
 """Points of the fan along the sweep."""
 
-FAN_PART, HERE_PART, RANKING_PART, WORST_PART = 0.3, 0.4, 0.65, 0.95
-"""Part of the work that is done after the fan, the extremes at the operating point, the ranking, and the
-worst place."""
+FAN_PART, HERE_PART, RANKING_PART = 0.3, 0.4, 0.65
+"""Part of the work that is done after the fan, the extremes at the operating point, and the ranking."""
 
 
 @dataclass(frozen=True)
 class Survey:
     """What is known so far: ``study`` from the start and ever finer, then the extremes at the operating point
-    (``here``), the ``ranking`` of what may be off, the extremes ``anywhere`` on the sweep in all seasons, and
-    whether many more samples would say the same (``settled``).
+    (``here``), the ``ranking`` of what may be off, and the extremes ``anywhere`` on the sweep in all seasons.
     """
 
     readout: str
@@ -30,12 +27,11 @@ class Survey:
     here: tuple[Extreme, Extreme] | None = None
     ranking: Ranking | None = None
     anywhere: tuple[Extreme, Extreme] | None = None
-    settled: Convergence | None = None
 
     @property
     def final(self) -> bool:
         """Whether nothing more follows."""
-        return self.settled is not None
+        return self.anywhere is not None
 
 
 def survey(
@@ -59,8 +55,5 @@ def survey(
     ranks = ranking(scenario, readout, seed=seed, watch=watch.within(HERE_PART, RANKING_PART))
     found = replace(found, ranking=ranks)
     yield found
-    anywhere = worst(scenario, readout, watch=watch.within(RANKING_PART, WORST_PART))
-    found = replace(found, anywhere=anywhere)
-    yield found
-    last = watch.within(WORST_PART, 1)
-    yield replace(found, settled=convergence(scenario, [readout], samples, seed, watch=last)[readout])
+    anywhere = worst(scenario, readout, watch=watch.within(RANKING_PART, 1))
+    yield replace(found, anywhere=anywhere)

@@ -7,7 +7,10 @@ from explorer.app.files import Shelf
 from explorer.app.look import DARK
 from explorer.app.main import build
 from explorer.app.shell import Shell
+from explorer.app.state import Session
+from explorer.app.tolerance_table import ToleranceTable
 from explorer.app.tolerance_view import ToleranceView
+from explorer.scenario.files import open_scenario
 from explorer.scenario.model import DialHold
 from explorer.scenario.shipped import shipped
 from explorer.studies.ranking import allowed_tolerance
@@ -295,13 +298,16 @@ def test_shared_errors_say_what_they_move(shell: Shell, view: ToleranceView, tab
         assert "moves along: dose of Sodium hypochlorite" in table.shown(f"tolerance:{address}").words()
 
 
-def test_a_tolerance_of_a_held_dial_counts_for_nothing_and_says_why(shell: Shell, table) -> None:
+def test_a_tolerance_of_a_held_dial_counts_for_nothing_and_says_why() -> None:
     """Its controller makes up for it."""
+    session = Session(open_scenario(shipped()["amber"]))
 
     def change(scenario) -> None:
         scenario.holds = {HYPO: DialHold(readout="ph", value=7.6, high=5)}
 
-    assert shell.session.edit("Hold", change) == ""
+    assert session.edit("Hold", change) == ""
+    table = ToleranceTable(session)
+    table.refresh()
     assert "held: its controller makes up for it" in table.shown(f"tolerance:{HYPO}").words()
 
 
@@ -327,8 +333,9 @@ def test_a_distance_that_is_none_is_refused_beside_its_field(view: ToleranceView
 
 
 def test_many_more_samples_stand_beside_the_percentiles(view: ToleranceView) -> None:
-    """Sixteen times as many, and the ends from them."""
-    settled = view.found.settled
+    """When they are asked for: sixteen times as many, a power of two, and the ends from them."""
+    assert "… with 10 times the samples?" in view.figures.nodes[0].words()
+    view.figures.report("more")
     words = view.figures.nodes[0].words()
-    assert f"… with {settled.more // settled.samples} times the samples" in words
+    assert "… with 16 times the samples" in words and "samples?" not in words
     assert "What is off at the worst place" in words
