@@ -12,14 +12,14 @@ from .hostile import KINDS, mutant
 from .large import TOO_MUCH, full_plant
 from .mutations import NO_ANSWER, REFUSED, TAKEN, Desk, clear_sentence, mutants, sources, tried
 
-COUNT = 1_200
+COUNT = 500
 MOST_MEMORY = 30 * LARGEST_FILE
 """Bytes: what reading may take of memory, whatever the file."""
 
 
 @pytest.fixture(scope="module")
 def tally():
-    """1,200 mutants through ``blendwright check`` and the Open of the page."""
+    """500 mutants through ``blendwright check`` and the Open of the page."""
     return tried(mutants(COUNT, first=10_000_000))
 
 
