@@ -45,7 +45,7 @@ def test_titration_of_another_water_with_another_chemical(screen: Any) -> None:
     screen.until(lambda: screen.curves("titration-ph"), "a titration curve")
     (before,) = screen.curves("titration-ph")
     page.get_by_title("The water that is titrated").click()
-    page.get_by_placeholder("Search places").fill("granite")
+    page.get_by_placeholder("Search places").locator("visible=true").fill("granite")
     page.keyboard.press("Enter")
     screen.until(lambda: screen.curves("titration-ph")[0] != before, "another curve")
     page.get_by_title("What is added where the dose is positive").click()
