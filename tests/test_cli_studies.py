@@ -107,14 +107,18 @@ def test_quantities_are_those_of_the_study(run):
     data = json.loads(answered(run("quantities", MOSS, f"{asked} --json")))
     made = quantities(open_scenario(MOSS), tanks={"hypo": 5}, low_flow=250, high_flow=14 / 0.024)
     assert data == json.loads(json.dumps(made.to_dict()))
-    out = answered(run("quantities", MOSS, asked))
-    assert "Aluminium hydroxide" in out
-    assert " per ML" not in out
+    assert "Aluminium hydroxide" in answered(run("quantities", MOSS, asked))
 
 
-def test_costs_are_shown_where_there_are_prices(run):
-    """Amber has a price for its hypochlorite."""
-    assert "cost per day" in answered(run("quantities", AMBER))
+def test_costs_are_shown_where_there_are_prices(run, tmp_path):
+    """Amber has a price for its hypochlorite, in its own currency; without one there is nothing of cost."""
+    assert "credits per day" in answered(run("quantities", AMBER))
+    raw = open_scenario(AMBER).to_dict()
+    for step in raw["train"]:
+        step.pop("price", None)
+    path = tmp_path / "unpriced.json"
+    path.write_text(json.dumps(raw), encoding="utf-8")
+    assert " per ML" not in answered(run("quantities", str(path)))
 
 
 @pytest.mark.parametrize(
@@ -126,7 +130,7 @@ def test_costs_are_shown_where_there_are_prices(run):
         ("titrate", MOSS, "--chemical ammonia --from -2 --to 3", "start: -2 is negative"),
         ("quantities", MOSS, "--tank loft=3", 'tanks: "loft" is not a dose step in service'),
         ("quantities", MOSS, "--tank hypo", "argument --tank: 'hypo' is not of the form STEP=M3"),
-        ("quantities", MOSS, "--low-flow 60", "flow: 2500 to 416.7 m³/h does not hold the flow"),
+        ("quantities", MOSS, "--low-flow 60", "flow: 2500 to 541.7 m³/h does not hold the flow"),
         ("compare", MOSS, "--readouts taste", 'readouts: "taste" is not a readout'),
         ("ledger", "nowhere.json", "", "nowhere.json: cannot be opened: there is no such file"),
         ("ledger", MOSS, "--season spring", 'season: "spring" is not one of the seasons'),
