@@ -53,17 +53,22 @@ def dial_picker(
     return picker(key, shown, groups, choose, look="button", hint="Search dials", title=title)
 
 
-def readout_picker(
-    key: str, chosen: str, choose: Callable[[str], object], title: str, look: str = "button"
-) -> list[Node]:
-    """A button with the chosen readout on it, and the searchable list of all readouts."""
+def readout_choices() -> dict[str, list[Choice]]:
+    """All readouts under their headings, for a searchable list."""
     groups: dict[str, list[Choice]] = {}
     for readout in READOUTS.values():
         words = f"{readout.short} {readout.key}"
         line = Choice(readout.key, compact(readout.label), unit_text(readout.unit), words)
         groups.setdefault(readout.group, []).append(line)
+    return groups
+
+
+def readout_picker(
+    key: str, chosen: str, choose: Callable[[str], object], title: str, look: str = "button"
+) -> list[Node]:
+    """A button with the chosen readout on it, and the searchable list of all readouts."""
     label = f"{brief_label(READOUTS[chosen])} ▾"
-    return picker(key, label, groups, choose, look=look, hint="Search readouts", title=title)
+    return picker(key, label, readout_choices(), choose, look=look, hint="Search readouts", title=title)
 
 
 def stage_picker(

@@ -9,9 +9,10 @@ import math
 from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
+from explorer.app.choosers import readout_choices
 from explorer.app.entry import message, show_number
 from explorer.app.live_view import Node, node
-from explorer.app.pickers import Act, Choice, picker
+from explorer.app.pickers import Act, picker
 from explorer.app.text import compact, in_sentence, plain, unit_text
 from explorer.scenario.dials import Dial, fine_step
 from explorer.scenario.editing import tidy
@@ -190,13 +191,6 @@ def _form(desk: Desk, dial: Dial, held: Holding | None) -> Node:
 
 
 def _readout(desk: Desk, shown: Holding, key: str) -> list[Node]:
-    groups: dict[str, list[Choice]] = {}
-    for readout in READOUTS.values():
-        words = f"{readout.short} {readout.key}"
-        groups.setdefault(readout.group, []).append(
-            Choice(readout.key, compact(readout.label), unit_text(readout.unit), words)
-        )
-
     def take(name: str) -> None:
         # The old number means nothing in the new unit: start from the water as it is.
         value = _now(desk, replace(shown, readout=name, value=0.0))
@@ -204,7 +198,7 @@ def _readout(desk: Desk, shown: Holding, key: str) -> list[Node]:
         desk.entries.refuse(f"{key}:readout", refusal=_put(desk, shown, readout=name, value=value))
 
     label = compact(READOUTS[shown.readout].label)
-    chosen = picker(f"{key}:readout", label, groups, take, look="chosen", hint="Search readouts")
+    chosen = picker(f"{key}:readout", label, readout_choices(), take, look="chosen", hint="Search readouts")
     return [_caption("Readout"), node("div", "pair", *chosen), desk.refusal(f"{key}:readout")]
 
 

@@ -7,6 +7,7 @@ from explorer.app.state import Session
 from explorer.scenario.files import ScenarioError, dumps, open_scenario
 from explorer.scenario.model import Scenario
 from explorer.scenario.shipped import shipped
+from tests.app.later import Later
 
 WELL = "waters.well.share"
 
@@ -16,21 +17,6 @@ class Clock:
 
     def __call__(self) -> float:
         return self.now
-
-
-class Later:
-    """A runner that waits until it is told to work, as the page's does while a calculation runs."""
-
-    def __init__(self) -> None:
-        self.waiting = []
-
-    def submit(self, compute, apply) -> None:
-        self.waiting = [(compute, apply)]
-
-    def work(self) -> None:
-        for compute, apply in self.waiting:
-            apply(compute())
-        self.waiting = []
 
 
 @pytest.fixture

@@ -11,6 +11,7 @@ from explorer.app.state import Session
 from explorer.app.view_tabs import KINDS, ViewTabs
 from explorer.scenario.files import open_scenario
 from explorer.scenario.shipped import shipped
+from tests.app.later import Later
 
 KEYS = [kind.key for kind in KINDS]
 
@@ -78,21 +79,6 @@ def test_view_built_in_the_dark_is_dark(shell: Shell) -> None:
     """The palette reaches views that come later."""
     shell.views.restyle(DARK)
     assert shell.views["window"].palette is DARK
-
-
-class Later:
-    """A runner that waits until it is told to work, as the page's does while a calculation runs."""
-
-    def __init__(self) -> None:
-        self.waiting = []
-
-    def submit(self, compute, apply) -> None:
-        self.waiting = [(compute, apply)]
-
-    def work(self) -> None:
-        for compute, apply in self.waiting:
-            apply(compute())
-        self.waiting = []
 
 
 @pytest.mark.parametrize("key", KEYS)
